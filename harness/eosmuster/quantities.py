@@ -1,0 +1,234 @@
+"""The gas constant, the properties that are judged, and units.
+
+Inside the package every number is SI and densities are molar: K, Pa, mol/m3, J/mol, kg/mol.
+Units live only at the edges: plans, the command line and what people read.
+"""
+
+from __future__ import annotations
+
+import math
+import re
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from types import MappingProxyType
+
+from eosmuster.errors import InputError, suggestion
+
+GAS_CONSTANT = 8.31446261815324
+"""Molar gas constant R, J/(mol K), exact since 2019 (CODATA 2018, Rev. Mod. Phys. 93 (2021) 025010)."""
+
+STANDARD_ATMOSPHERE = 101325.0
+"""Pa (exact; 10th CGPM 1954, Resolution 4)."""
+
+
+@dataclass(frozen=True)
+class Property:
+    """One property that is predicted and judged.
+
+    Attributes
+    ----------
+    name : its name in plans, files and the Python interface
+    label : what people read
+    unit : the SI unit of every value in the files
+    dimension : key into the unit tables
+    phase : ``liquid``, ``vapor`` or ``two-phase``
+    """
+
+    name: str
+    label: str
+    unit: str
+    dimension: str
+    phase: str
+
+
+PROPERTIES: Mapping[str, Property] = MappingProxyType(
+    {
+        p.name: p
+        for p in (
+            Property("saturation_pressure", "saturation pressure", "Pa", "pressure", "two-phase"),
+            Property("boiling_temperature", "boiling temperature", "K", "temperature", "two-phase"),
+            Property("liquid_density", "saturated liquid density", "mol/m3", "density", "liquid"),
+            Property("vapor_density", "saturated vapor density", "mol/m3", "density", "vapor"),
+            Property("enthalpy_of_vaporization", "enthalpy of vaporization", "J/mol", "energy", "two-phase"),
+        )
+    }
+)
+
+# unit -> (factor, offset): SI value = (value + offset) * factor
+_TEMPERATURE = {
+    "K": (1.0, 0.0),
+    "degC": (1.0, 273.15),
+    "degF": (5.0 / 9.0, 459.67),
+    "degR": (5.0 / 9.0, 0.0),
+}
+_TEMPERATURE_DIFFERENCE = {unit: (factor, 0.0) for unit, (factor, _) in _TEMPERATURE.items()}
+_PRESSURE = {
+    "Pa": (1.0, 0.0),
+    "hPa": (1e2, 0.0),
+    "kPa": (1e3, 0.0),
+    "MPa": (1e6, 0.0),
+    "mbar": (1e2, 0.0),
+    "bar": (1e5, 0.0),
+    "atm": (STANDARD_ATMOSPHERE, 0.0),
+    "at": (98066.5, 0.0),
+    "psi": (6894.757293168361, 0.0),
+    "Torr": (STANDARD_ATMOSPHERE / 760.0, 0.0),
+    "mmHg": (133.322387415, 0.0),
+}
+_MOLAR_MASS = {"kg/mol": (1.0, 0.0), "g/mol": (1e-3, 0.0), "kg/kmol": (1e-3, 0.0)}
+_MOLAR_DENSITY = {"mol/m3": (1.0, 0.0), "kmol/m3": (1e3, 0.0), "mol/L": (1e3, 0.0)}
+_MASS_DENSITY = {"kg/m3": (1.0, 0.0), "g/cm3": (1e3, 0.0), "kg/L": (1e3, 0.0)}
+_MOLAR_ENERGY = {"J/mol": (1.0, 0.0), "kJ/mol": (1e3, 0.0)}
+_MOLAR_VOLUME = {"m3/mol": (1.0, 0.0), "cm3/mol": (1e-6, 0.0), "L/mol": (1e-3, 0.0)}
+_FRACTION = {"%": (0.01, 0.0)}
+
+UNITS: Mapping[str, Mapping[str, tuple[float, float]]] = MappingProxyType(
+    {
+        "temperature": _TEMPERATURE,
+        "temperature_difference": _TEMPERATURE_DIFFERENCE,
+        "pressure": _PRESSURE,
+        "molar_mass": _MOLAR_MASS,
+        "density": _MOLAR_DENSITY,
+        "mass_density": _MASS_DENSITY,
+        "energy": _MOLAR_ENERGY,
+        "molar_volume": _MOLAR_VOLUME,
+        "fraction": _FRACTION,
+    }
+)
+
+_LONGEST = 200  # characters; the pattern below takes its time over megabytes of blanks
+_QUANTITY = re.compile(r"\s*([+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?)\s*(\S.*?)?\s*\Z")
+_NUMBER_COMMA = re.compile(r"\s*[+-]?\d[\d.]*,\d")
+_GAUGE = re.compile(r"(Pa|[hkM]Pa|m?bar|atm?|psi|kg/cm2|Torr|mmHg)\s*(g|\(g\)|gauge)\Z", re.IGNORECASE)
+_SPELLINGS = {"bara": "bar", "bar(a)": "bar", "mbara": "mbar", "kPaa": "kPa", "kPa(a)": "kPa", "psia": "psi"}
+"""Absolute pressures that are written with their basis: the same unit, said twice."""
+
+
+def to_si(value: object, dimension: str, where: str) -> float:
+    """Read a quantity: ``"25 bar"``, ``"-40 degC"``, or a bare number that is SI already.
+
+    Parameters
+    ----------
+    value : number or text
+    dimension : a key of `UNITS`
+    where : what the value is, for the message (``"plan.toml: states.temperature"``)
+
+    Raises
+    ------
+    InputError : no number, an unknown unit, a gauge pressure, or a value that is not finite.
+
+    Examples
+    --------
+    >>> to_si("-40 degC", "temperature", "example")
+    233.14999999999998
+    >>> to_si(2.5e5, "pressure", "example")
+    250000.0
+    >>> to_si("3 barg", "pressure", "example")  # doctest: +ELLIPSIS
+    Traceback (most recent call last):
+    eosmuster.errors.InputError: example: '3 barg' is a gauge pressure; ...
+    """
+    number, unit = split_quantity(value, (dimension,), where)
+    factor, offset = UNITS[dimension][unit] if unit else (1.0, 0.0)
+    result = (number + offset) * factor
+    if not math.isfinite(result):
+        raise InputError(f"{where}: {shown(value)} is not a finite number")
+    return result
+
+
+def split_quantity(value: object, dimensions: Sequence[str], where: str) -> tuple[float, str]:
+    """Split a quantity into its number and its unit, unconverted.
+
+    Parameters
+    ----------
+    value, where : as in `to_si`
+    dimensions : keys of `UNITS`; the unit may be of any of them
+
+    Returns
+    -------
+    number : as written
+    unit : a unit of one of the dimensions, or "" for a bare number
+
+    Raises
+    ------
+    InputError : as `to_si`, but a number that is not finite passes
+
+    Examples
+    --------
+    >>> split_quantity("2.5 %", ("fraction", "pressure"), "example")
+    (2.5, '%')
+    >>> split_quantity("20 °C", ("temperature",), "example")
+    (20.0, 'degC')
+    """
+    if isinstance(value, str):
+        if _NUMBER_COMMA.match(value):
+            raise InputError(f"{where}: {shown(value)} has a comma in its number; write a decimal point")
+        match = _QUANTITY.match(value) if len(value) <= _LONGEST else None
+        if match is not None:
+            return float(match[1]), _known_unit(match[2], dimensions, f"{where}: {shown(value)}")
+    elif isinstance(value, (int, float)) and not isinstance(value, bool):
+        return _as_float(value), ""
+    plain = dimensions[0].replace("_", " ")
+    raise InputError(f"{where}: {shown(value)} is not a {plain}; write a number or e.g. {_example(dimensions[0])}")
+
+
+def _known_unit(unit: str | None, dimensions: Sequence[str], what: str) -> str:
+    if unit is None:
+        return ""
+    plain = unit.replace("°", "deg").replace("³", "3")
+    plain = _SPELLINGS.get(plain, plain)
+    valid = [u for d in dimensions for u in UNITS[d]]
+    if plain in valid:
+        return plain
+    if "pressure" in dimensions and _GAUGE.match(unit):
+        raise InputError(
+            f"{what} is a gauge pressure; the local atmospheric pressure is never guessed, "
+            "so add it and give the absolute pressure"
+        )
+    raise InputError(f"{what} has an unknown unit {shown(unit)}; {suggestion(plain[:40], valid, most=16)}")
+
+
+def _as_float(value: float) -> float:
+    try:
+        return float(value)
+    except OverflowError:  # an integer beyond 1.8e308
+        return math.inf
+
+
+def shown(value: object, most: int = 60) -> str:
+    """Quote an offending value for a one-sentence message: cut short when long, tables and lists only named.
+
+    Examples
+    --------
+    >>> shown("4 furlongs")
+    "'4 furlongs'"
+    >>> shown("x" * 1000, most=8)
+    "'xxxxxxx..."
+    >>> shown([1, 2, 3])
+    'a list'
+    """
+    if isinstance(value, Mapping):
+        return "a table"  # never quoted: a table may be nested deeper than repr can follow
+    if isinstance(value, (list, tuple)):
+        return "a list"
+    if isinstance(value, int) and abs(value) >= 10**most:
+        return f"an integer of more than {most} digits"  # Python refuses to print the longest
+    # the text is cut before it is quoted: quoting megabytes to show a line of them would be slow
+    text = repr(value[: most + 1] if isinstance(value, str) else value)
+    return text if len(text) <= most else text[:most] + "..."
+
+
+def from_si(value: float, unit: str, dimension: str) -> float:
+    """Give an SI value in `unit` of the same dimension.
+
+    Examples
+    --------
+    >>> round(from_si(300.0, "degC", "temperature"), 9)
+    26.85
+    """
+    factor, offset = UNITS[dimension][unit]
+    return value / factor - offset
+
+
+def _example(dimension: str) -> str:
+    units = list(UNITS[dimension])
+    return f'"20 {units[min(1, len(units) - 1)]}"'

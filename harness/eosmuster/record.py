@@ -1,0 +1,153 @@
+"""The run record: everything a sweep measured, held once and rendered many times."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+Floats = NDArray[np.float64]
+
+RECORD_VERSION = 1
+
+POINT_VERDICTS = ("inside", "outside", "undecided", "unfit_reference", "unsolved", "no_reference")
+"""Verdict codes of a point: `Block.verdict` holds the index into this tuple."""
+
+SUMMARY_VERDICTS = ("unavailable", "inside", "undecided", "outside", "partly")
+
+WINDOW_ENDS = (
+    "limit",
+    "limit_step",
+    "undecided",
+    "critical_point",
+    "reference_limit",
+    "no_reference",
+    "plan_limit",
+    "unsolved",
+)
+
+
+@dataclass(frozen=True)
+class Block:
+    """All candidates for one component, property and reference source, on the same n states.
+
+    Arrays over states have shape (n,), arrays over candidates and states (m, n). Unknown numbers are NaN
+    (an empty cell in the files).
+
+    Attributes
+    ----------
+    temperature : K; where the state was given by pressure, the reference's temperature at that pressure
+    pressure : Pa where the state was given by pressure, else NaN
+    reference : SI value in the property's unit
+    reference_uncertainty_pct : expanded uncertainty (plan's coverage factor), percent of the reference
+    limit_pct : tolerance limit, percent of the reference
+    predicted, deviation_pct, probability_inside : SI, %, 0..1
+    verdict : index into `POINT_VERDICTS`
+    note : index into `notes`; 0 is the empty note
+    independence : one of independent / constants / fitted for each candidate
+    """
+
+    component: str
+    cas: str
+    property: str
+    unit: str
+    phase: str
+    reference_source: str
+    candidates: tuple[str, ...]
+    independence: tuple[str, ...]
+    temperature: Floats
+    pressure: Floats
+    reduced_temperature: Floats
+    reference: Floats
+    reference_uncertainty_pct: Floats
+    limit_pct: Floats
+    predicted: Floats
+    deviation_pct: Floats
+    probability_inside: Floats
+    verdict: NDArray[np.int8]
+    note: NDArray[np.int16]
+    notes: tuple[str, ...]
+
+
+@dataclass(frozen=True)
+class SummaryRow:
+    """One component x candidate x property x reference source; field order is the file's column order."""
+
+    component: str
+    candidate: str
+    property: str
+    reference_source: str
+    points: int
+    from_K: float
+    to_K: float
+    aad_pct: float
+    bias_pct: float
+    rms_pct: float
+    median_pct: float
+    p95_pct: float
+    max_pct: float
+    max_at_K: float
+    inside: int
+    undecided: int
+    outside: int
+    unsolved: int
+    no_reference: int
+    share_inside: float
+    passing_limit_pct: float
+    false_acceptance_pct: float
+    contested: str
+    independence: str
+    verdict: str
+    note: str = ""
+
+
+@dataclass(frozen=True)
+class WindowRow:
+    """One maximal interval of temperature over which a candidate stays inside."""
+
+    component: str
+    candidate: str
+    property: str
+    reference_source: str
+    from_K: float
+    to_K: float
+    from_end: str
+    to_end: str
+
+
+@dataclass(frozen=True)
+class Record:
+    """One run: its plan, its points in blocks, and the views drawn from them.
+
+    Attributes
+    ----------
+    plan_name, plan_title, plan_text : the plan as it was given
+    blocks : the points
+    summary, windows : rows in the order of the files
+    left_out : (what, why) of components or references that were not used
+    decision : the decision rule in words and numbers
+    constants : component -> constant -> {"value", "unit", "source"}
+    citations : source key -> full reference
+    display : temperature / pressure / density -> unit of what people read
+    families : component -> chemical class
+    notes : component -> what a reader must know (a replaced constant, a spin isomer)
+    """
+
+    plan_name: str
+    plan_title: str
+    plan_text: str
+    blocks: tuple[Block, ...]
+    summary: tuple[SummaryRow, ...]
+    windows: tuple[WindowRow, ...]
+    left_out: tuple[tuple[str, str], ...] = ()
+    decision: Mapping[str, Any] = field(default_factory=dict)
+    constants: Mapping[str, Mapping[str, Any]] = field(default_factory=dict)
+    models: Mapping[str, Mapping[str, Any]] = field(default_factory=dict)
+    citations: Mapping[str, str] = field(default_factory=dict)
+    display: Mapping[str, str] = field(default_factory=dict)
+    version: int = RECORD_VERSION
+    families: Mapping[str, str] = field(default_factory=dict)
+    notes: Mapping[str, tuple[str, ...]] = field(default_factory=dict)

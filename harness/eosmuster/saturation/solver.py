@@ -1,0 +1,261 @@
+"""Saturated states of whole arrays: temperature given or pressure given, without iteration in the hot path.
+
+Near the critical point everything is formed from tau = (Tc - T)/Tc, so that no digit is lost there:
+q/q_c - 1 = (alpha - 1 + tau)/(1 - tau).
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+from functools import lru_cache
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from eosmuster.models.critical import critical_point
+from eosmuster.models.model import Parameters
+from eosmuster.quantities import GAS_CONSTANT
+from eosmuster.saturation import inverse, tables
+from eosmuster.saturation.nodes import LARGEST_U
+from eosmuster.saturation.reduced import mean_attraction
+
+Floats = NDArray[np.float64]
+
+STATUSES = ("solved", "above_critical", "no_two_phase", "too_cold", "invalid", "unavailable")
+"""Outcome of an element: `Saturation.status` holds the index into this tuple.
+
+above_critical : T > Tc or p > pc of the model; no_two_phase : the alpha function leaves no two phases below Tc;
+too_cold : q/q_c beyond the tables (18.6); invalid : not a positive finite number; unavailable : no parameters.
+"""
+SOLVED, ABOVE_CRITICAL, NO_TWO_PHASE, TOO_COLD, INVALID, UNAVAILABLE = range(6)
+
+_MANY = 50_000  # states a curve from which finer tables pay for their building
+
+
+@dataclass(frozen=True)
+class Saturation:
+    """Saturated states; all arrays have one shape, NaN where the status is not ``solved``.
+
+    Attributes
+    ----------
+    temperature, pressure : K, Pa
+    liquid_density, vapor_density : mol/m3, volume translation included
+    log_slope : d ln(p)/d ln(T) along the curve
+    tau : 1 - T/Tc of the model, free of cancellation
+    status : index into `STATUSES`
+    """
+
+    temperature: Floats
+    pressure: Floats
+    liquid_density: Floats
+    vapor_density: Floats
+    log_slope: Floats
+    tau: Floats
+    status: NDArray[np.int8]
+
+
+@dataclass(frozen=True)
+class Prepared:
+    """Parameters with their curves: what every block of states needs."""
+
+    parameters: Parameters
+    table: tables.Table
+    first_row: NDArray[np.intp] | int
+    density_scale: Floats  # 1/b, mol/m3
+    covolume: Floats  # c, m3/mol; 0 without translation
+
+    def part(self, piece: slice) -> Prepared:
+        """Give the parameters of one block of states."""
+        p = self.parameters
+        if p.critical_temperature.ndim == 0:
+            return self
+        first = self.first_row if isinstance(self.first_row, int) else self.first_row[piece]
+        return Prepared(p.take(piece), self.table, first, self.density_scale[piece], self.covolume[piece])
+
+
+def prepare(parameters: Parameters, count: int) -> Prepared:
+    """Find or build the curves of `parameters` for about `count` states."""
+    s, m = parameters.s, parameters.m
+    table = tables.shipped_table(float(s[0]), float(m[0])) if s.size == 1 else None
+    if table is None:
+        resolution = tables.FINE if count > _MANY * s.size else tables.COARSE
+        table = _built_table(s.tobytes(), m.tobytes(), resolution)
+    first: NDArray[np.intp] | int = 0 if s.size == 1 else parameters.form * table.resolution.intervals
+    omega_b = critical_point(s, m).omega_b[parameters.form]
+    molar = GAS_CONSTANT * parameters.critical_temperature / parameters.critical_pressure
+    shift = np.zeros_like(molar) if parameters.translation is None else parameters.translation * molar
+    return Prepared(parameters, table, first, np.asarray(1.0 / (omega_b * molar)), np.asarray(shift))
+
+
+@lru_cache(maxsize=32)
+def _built_table(s: bytes, m: bytes, resolution: tables.Resolution) -> tables.Table:
+    """Curves made on demand; forms that do not exist stand as Peng-Robinson's and are never asked for."""
+    s_all, m_all = np.frombuffer(s), np.frombuffer(m)
+    exists = np.isfinite(s_all) & np.isfinite(m_all)
+    return tables.build_for(np.where(exists, s_all, 2.0), np.where(exists, m_all, -1.0), resolution)
+
+
+def at_temperature(parameters: Parameters, temperature: ArrayLike, *, slope: bool = True) -> Saturation:
+    """Saturated states at given temperatures.
+
+    Parameters
+    ----------
+    parameters : arrays of shape () for one substance, or of the temperature's own flat shape
+    temperature : K, any shape for one substance, else shape (n,)
+    slope : whether `log_slope` is wanted (NaN otherwise)
+
+    Returns
+    -------
+    Saturation : of the temperature's shape
+    """
+    given = np.asarray(temperature, float)
+    flat = given.ravel()
+    prepared = prepare(parameters, flat.size)
+    result = _empty(flat.size)
+    work = tables.Workspace(min(tables.BLOCK, max(flat.size, 1)))
+    with np.errstate(all="ignore"):
+        for piece in _blocks(flat.size):
+            part = prepared.part(piece)
+            tc = part.parameters.critical_temperature
+            tau = (tc - flat[piece]) / tc
+            _fill(part, tau, result, piece, work, slope=slope)
+        _classify(result, prepared, ~((flat > 0.0) & np.isfinite(flat)))
+    result.temperature[:] = flat
+    return _shaped(result, given.shape)
+
+
+def at_pressure(parameters: Parameters, pressure: ArrayLike, *, slope: bool = True) -> Saturation:
+    """Saturated states at given pressures: the inverse of `at_temperature`, as exact.
+
+    Parameters as there, with the pressure in Pa. The result's pressure is the one given.
+    """
+    given = np.asarray(pressure, float)
+    flat = given.ravel()
+    prepared = prepare(parameters, flat.size)
+    result = _empty(flat.size)
+    work = tables.Workspace(min(tables.BLOCK, max(flat.size, 1)))
+    with np.errstate(all="ignore"):
+        guess = inverse.guess_for(prepared.parameters, flat, prepared, work)
+        for piece in _blocks(flat.size):
+            part = prepared.part(piece)
+            tau = inverse.refine(part, flat[piece], guess(piece), work)
+            _fill(part, tau, result, piece, work, slope=slope)
+            tc = part.parameters.critical_temperature
+            result.temperature[piece] = tc - tc * result.tau[piece]
+        _classify(result, prepared, ~((flat > 0.0) & np.isfinite(flat)))
+    result.pressure[:] = flat
+    return _shaped(result, given.shape)
+
+
+def enthalpy_of_vaporization(states: Saturation) -> Floats:
+    """Enthalpy of vaporization, J/mol, by Clapeyron's equation with the exact slope.
+
+    dh = T (V_V - V_L) dp/dT; a constant volume translation cancels in it.
+    """
+    with np.errstate(all="ignore"):
+        change = 1.0 / states.vapor_density - 1.0 / states.liquid_density
+        return np.asarray(states.pressure * states.log_slope * change)
+
+
+def reduced_volumes(parameters: Parameters, states: Saturation) -> tuple[Floats, Floats]:
+    """Volumes V/b of both phases, the translation taken off again."""
+    prepared = prepare(parameters, states.tau.size)
+    return tuple(  # type: ignore[return-value]
+        (1.0 / rho + prepared.covolume) * prepared.density_scale
+        for rho in (states.liquid_density, states.vapor_density)
+    )
+
+
+def log_fugacity_coefficients(parameters: Parameters, states: Saturation) -> tuple[Floats, Floats]:
+    """ln(phi) of liquid and vapor at the states' pressure, each from its own volume.
+
+    ln(phi) = Z - 1 - ln(Z (v - 1)/v) - q I(v), I the integral of 1/P from v to infinity, without translation.
+    """
+    with np.errstate(all="ignore"):
+        q, (s, m) = _attraction(parameters, states), _forms(parameters)
+        molar = GAS_CONSTANT * parameters.critical_temperature * (1.0 - states.tau)
+        per_volume = states.pressure / (molar * prepare(parameters, states.tau.size).density_scale)
+        found = []
+        for v in reduced_volumes(parameters, states):
+            z = per_volume * v  # p V/(R T): the form's own pressure would cancel to noise in a cold liquid
+            far = v * 1e9
+            rest = mean_attraction(v, far, s, m) * (far - v) + 1.0 / far
+            found.append(np.asarray(z - 1.0 - np.log(z * (v - 1.0) / v) - q * rest))
+    return found[0], found[1]
+
+
+def _attraction(parameters: Parameters, states: Saturation) -> Floats:
+    critical = critical_point(parameters.s, parameters.m).q[parameters.form]
+    excess = parameters.alpha.excess(states.tau, *parameters.alpha_parameters)
+    return np.asarray(critical * (1.0 + excess) / (1.0 - states.tau))
+
+
+def _forms(parameters: Parameters) -> tuple[Floats, Floats]:
+    return parameters.s[parameters.form], parameters.m[parameters.form]
+
+
+def _fill(
+    part: Prepared, tau: Floats, result: Saturation, piece: slice, work: tables.Workspace, *, slope: bool
+) -> None:
+    """Compute one block in place."""
+    p = part.parameters
+    tr = 1.0 - tau
+    ratio = p.alpha.excess(tau, *p.alpha_parameters)
+    ratio += tau
+    ratio /= tr
+    u = np.sqrt(ratio)
+    curve = part.table.evaluate(u, part.first_row, work)
+    pressure, liquid, vapor = result.pressure[piece], result.liquid_density[piece], result.vapor_density[piece]
+    np.exp(curve[:, 0], out=pressure)
+    pressure *= tr
+    pressure *= p.critical_pressure
+    np.multiply(curve[:, 1], part.density_scale, out=liquid)
+    tr *= p.critical_temperature * GAS_CONSTANT
+    tr *= curve[:, 2]
+    np.divide(pressure, tr, out=vapor)
+    if p.translation is not None:
+        liquid /= 1.0 - part.covolume * liquid
+        vapor /= 1.0 - part.covolume * vapor
+    if slope:
+        fall = 1.0 - p.alpha.log_slope(tau, *p.alpha_parameters)
+        result.log_slope[piece] = 1.0 - curve[:, 3] * (1.0 + ratio) * fall
+    result.tau[piece] = tau
+    fits = (u <= LARGEST_U) & (tau >= 0.0)  # False for NaN too
+    if not fits.all():
+        _mark(result, piece, fits, tau, ratio)
+
+
+def _mark(result: Saturation, piece: slice, fits: NDArray[np.bool_], tau: Floats, ratio: Floats) -> None:
+    """Say why states of a block are not solved, and leave no number there."""
+    status = np.where(tau < 0.0, ABOVE_CRITICAL, np.where(ratio > 0.0, TOO_COLD, NO_TWO_PHASE))
+    status = np.where(np.isfinite(tau), status, INVALID)
+    result.status[piece] = np.where(fits, SOLVED, status)
+    for values in (result.pressure, result.liquid_density, result.vapor_density, result.log_slope):
+        values[piece][~fits] = np.nan
+
+
+def _classify(result: Saturation, prepared: Prepared, bad: NDArray[np.bool_]) -> None:
+    """Statuses that do not depend on the curve: unusable input, and models without parameters."""
+    result.status[bad] = INVALID
+    missing = np.isnan(prepared.parameters.critical_temperature)
+    if missing.any():
+        result.status[np.broadcast_to(missing, bad.shape)] = UNAVAILABLE
+    wrong = result.status != SOLVED
+    if wrong.any():
+        for values in (result.pressure, result.liquid_density, result.vapor_density, result.log_slope):
+            values[wrong] = np.nan
+
+
+def _empty(n: int) -> Saturation:
+    t, p, liquid, vapor, slope, tau = (np.full(n, np.nan) if i == 4 else np.empty(n) for i in range(6))
+    return Saturation(t, p, liquid, vapor, slope, tau, np.zeros(n, np.int8))
+
+
+def _shaped(result: Saturation, shape: tuple[int, ...]) -> Saturation:
+    return Saturation(*(getattr(result, name).reshape(shape) for name in Saturation.__dataclass_fields__))
+
+
+def _blocks(n: int) -> Iterator[slice]:
+    for start in range(0, n, tables.BLOCK):
+        yield slice(start, min(start + tables.BLOCK, n))
