@@ -1,0 +1,1 @@
+"""Deviations, verdicts and windows: what the record says about predictions against references."""

@@ -1,0 +1,245 @@
+"""The frozen contracts of a plan. Everything in here is SI; units were read away in `reading`."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass, field
+from typing import TYPE_CHECKING
+
+import numpy as np
+from numpy.typing import NDArray
+
+from eosmuster.components import Component
+
+if TYPE_CHECKING:
+    from eosmuster.models.records import ModelRecord
+
+Floats = NDArray[np.float64]
+
+COORDINATES = ("temperature", "reduced_temperature", "pressure")
+"""The one degree of freedom of a saturated pure substance, in the three ways it can be given."""
+
+LOWEST_REDUCED_TEMPERATURE = 0.45
+HIGHEST_REDUCED_TEMPERATURE = 0.99
+"""Ends of the default grid; the triple point replaces the lower one where it is higher."""
+
+LEVELS = (
+    "default",
+    "property",
+    "property_range",
+    "class",
+    "class_range",
+    "component",
+    "component_range",
+)
+"""How specific a tolerance rule is, least specific first: the most specific rule that covers a state governs.
+
+A range of reduced temperatures makes a rule more specific than the same rule without one, never more
+specific than one that names a class or a component.
+"""
+
+LIMIT_KINDS = {
+    "percent": "%",
+    "kelvin": "K",
+    "pascal": "Pa",
+    "mol/m3": "mol/m3",
+    "kg/m3": "kg/m3",
+    "J/mol": "J/mol",
+}
+"""Kind of a limit -> the unit of its value."""
+
+DECISION_RULES = ("guarded", "simple")
+REFERENCES = ("coolprop", "handbook")
+GATE_REASONS = ("outside", "unsolved", "undecided", "unfit_reference", "no_reference", "unavailable")
+"""What a gate can fail on: every verdict but ``inside``, and what a model cannot do for a component."""
+
+
+@dataclass(frozen=True)
+class Grid:
+    """The saturated states of a plan: one coordinate, as the phase rule has it.
+
+    Attributes
+    ----------
+    coordinate : one of `COORDINATES`
+    values : strictly increasing, K, dimensionless or Pa; empty for the default range
+    default_range : from max(0.45 Tc, triple point) to 0.99 Tc of each component, evenly spaced
+    points : number of states of each component
+    """
+
+    coordinate: str = "reduced_temperature"
+    values: tuple[float, ...] = ()
+    default_range: bool = True
+    points: int = 41
+
+    def states_for(self, component: Component) -> Floats:
+        """Return the states of one component.
+
+        Returns
+        -------
+        array of shape (points,), strictly increasing: pressures in Pa if `coordinate` is ``pressure``,
+        else temperatures in K. Listed states are never cut to what the component can do.
+
+        Examples
+        --------
+        >>> c = Component("x", critical_temperature=400.0, critical_pressure=4e6, acentric_factor=0.1)
+        >>> Grid(points=3).states_for(c).tolist()
+        [180.0, 288.0, 396.0]
+        >>> Grid("temperature", (250.0, 300.0), False, 2).states_for(c).tolist()
+        [250.0, 300.0]
+        """
+        if self.default_range:
+            return default_temperatures(component, self.points)
+        values = np.array(self.values, dtype=np.float64)
+        return values * component.critical_temperature if self.coordinate == "reduced_temperature" else values
+
+
+def default_temperatures(component: Component, points: int) -> Floats:
+    """Space `points` temperatures (K) evenly from max(0.45 Tc, triple point) to 0.99 Tc, ends included."""
+    tc = component.critical_temperature
+    lowest = max(LOWEST_REDUCED_TEMPERATURE * tc, component.triple_temperature or 0.0)
+    return np.linspace(lowest, HIGHEST_REDUCED_TEMPERATURE * tc, points)
+
+
+@dataclass(frozen=True)
+class Limit:
+    """The largest deviation that is still inside: "2 %" means from -2 % to +2 %.
+
+    Attributes
+    ----------
+    value : positive, in the unit of its kind
+    kind : a key of `LIMIT_KINDS`
+    """
+
+    value: float
+    kind: str
+
+    def __str__(self) -> str:
+        return f"{self.value:g} {LIMIT_KINDS[self.kind]}"
+
+    def percent_of(self, reference: Floats) -> Floats:
+        """Express the limit in percent of the reference value at each point.
+
+        Parameters
+        ----------
+        reference : shape (n,), in the SI unit of the limit; NaN where there is none
+
+        Returns
+        -------
+        shape (n,): a relative limit as it is, an absolute one as 100 value / abs(reference)
+
+        Examples
+        --------
+        >>> Limit(0.5, "kelvin").percent_of(np.array([250.0])).tolist()
+        [0.2]
+        """
+        reference = np.asarray(reference, dtype=np.float64)
+        if self.kind == "percent":
+            return np.full_like(reference, self.value)
+        with np.errstate(divide="ignore"):
+            return 100.0 * self.value / np.abs(reference)
+
+    def molar(self, component: Component) -> Limit:
+        """Return a mass density limit as a molar one; every other limit as it is.
+
+        Raises
+        ------
+        ValueError : mass density, and the component has no molar mass (plans refuse that when they are read)
+        """
+        if self.kind != "kg/m3":
+            return self
+        if component.molar_mass is None:
+            raise ValueError(f"{component.name} has no molar mass, so {self} means nothing for it")
+        return Limit(self.value / component.molar_mass, "mol/m3")
+
+
+@dataclass(frozen=True)
+class ToleranceRule:
+    """One limit and where it applies.
+
+    Attributes
+    ----------
+    property : a key of `eosmuster.quantities.PROPERTIES`
+    limit : the limit
+    level : one of `LEVELS`
+    family : chemical class it is restricted to, or ""
+    component : name of the component it is restricted to, or ""
+    above_reduced_temperature, below_reduced_temperature : it covers above <= Tr < below, so a border
+        belongs to the band above it
+    rationale : why this limit, for the reader of the report
+    """
+
+    property: str
+    limit: Limit
+    level: str
+    family: str = ""
+    component: str = ""
+    above_reduced_temperature: float = 0.0
+    below_reduced_temperature: float = math.inf
+    rationale: str = ""
+
+
+@dataclass(frozen=True)
+class Decision:
+    """How the uncertainty of a reference enters a verdict.
+
+    Attributes
+    ----------
+    rule : ``guarded`` (the limit less the expanded uncertainty decides) or ``simple`` (shared risk)
+    coverage_factor : expanded = coverage_factor x standard uncertainty
+    unfit_ratio : a reference whose expanded uncertainty exceeds this share of the limit cannot decide
+    """
+
+    rule: str = "guarded"
+    coverage_factor: float = 2.0
+    unfit_ratio: float = 1.0 / 3.0
+
+
+@dataclass(frozen=True)
+class Display:
+    """Units of what people read; files stay SI."""
+
+    temperature: str = "degC"
+    pressure: str = "bar"
+    density: str = "kg/m3"
+
+
+@dataclass(frozen=True)
+class Plan:
+    """One sweep, completely said.
+
+    Attributes
+    ----------
+    name : file stem, or the name of a built-in plan
+    title : one line for the report
+    service : the duty the equation of state is chosen for, free text
+    path : file it was read from, "" for a built-in plan
+    text : the TOML as it was read
+    components : resolved, the plan's own included, in the order of the plan
+    models : names, the plan's own included, in the order of the plan
+    own_models : records of the models that the plan itself defines
+    properties : keys of `eosmuster.quantities.PROPERTIES`
+    grid : the saturated states
+    tolerances : the default rules, then the plan's: everything `tolerances.limit_pct` needs
+    references_use : subset of `REFERENCES`
+    reference_files : measured files (none in this version)
+    gate_fail_on : subset of `GATE_REASONS`
+    left_out : (what, why) of everything the plan names or selects that is not swept
+    """
+
+    name: str
+    title: str
+    service: str
+    path: str
+    text: str
+    components: tuple[Component, ...]
+    models: tuple[str, ...]
+    own_models: tuple[ModelRecord, ...]
+    properties: tuple[str, ...]
+    grid: Grid
+    tolerances: tuple[ToleranceRule, ...]
+    decision: Decision = field(default_factory=Decision)
+    references_use: tuple[str, ...] = REFERENCES
+    reference_files: tuple[str, ...] = ()
+    gate_fail_on: tuple[str, ...] = ("outside", "unsolved")
+    display: Display = field(default_factory=Display)
+    left_out: tuple[tuple[str, str], ...] = ()

@@ -1,0 +1,4 @@
+"""Renderings of one run record: the results folder, Markdown, and what a terminal shows.
+
+Nothing here predicts or judges; every rendering reads the record.
+"""

@@ -1,0 +1,58 @@
+"""Cells of the CSV files: numbers that round-trip, text that stays text.
+
+A spreadsheet runs a cell that begins with ``=``, ``+``, ``-`` or ``@`` as a formula. Text that comes from
+a plan or a data file and begins so (or with a tab or a line break, behind which some programs look) gets
+an apostrophe in front, the spreadsheets' own mark for text. Numbers are never touched: a cell ``-1.5`` of
+a number column stays a number. NUL characters are dropped.
+"""
+
+from __future__ import annotations
+
+import math
+
+_FORMULA = ("=", "+", "-", "@", "\t", "\r", "\n")
+_QUOTED = ',"\r\n'
+
+
+def text_cell(text: str) -> str:
+    r'''Write text as one CSV cell (RFC 4180 quoting), inert in a spreadsheet.
+
+    Examples
+    --------
+    >>> print(text_cell("propane"), text_cell("C4, mixed"), text_cell('say "x"'), text_cell("=1+1"))
+    propane "C4, mixed" "say ""x""" '=1+1
+    '''
+    text = text.replace("\0", "")
+    if text.startswith(_FORMULA):
+        text = "'" + text
+    if any(character in text for character in _QUOTED):
+        return '"' + text.replace('"', '""') + '"'
+    return text
+
+
+def cell(value: object) -> str:
+    """Write one CSV cell: text as `text_cell`, floats as `repr`, NaN and None as nothing.
+
+    Examples
+    --------
+    >>> [cell(value) for value in (0.1, float("nan"), 3, None, "PR")]
+    ['0.1', '', '3', '', 'PR']
+    """
+    if isinstance(value, str):
+        return text_cell(value)
+    if value is None:
+        return ""
+    if isinstance(value, float):
+        return "" if math.isnan(value) else repr(float(value))
+    return str(value)
+
+
+def encoded(text: str) -> bytes:
+    r"""Encode for a file; what UTF-8 cannot hold (a lone surrogate) is written as an escape.
+
+    Examples
+    --------
+    >>> encoded("n\u00b0"), encoded("\udc80")
+    (b'n\xc2\xb0', b'\\udc80')
+    """
+    return text.encode("utf-8", "backslashreplace")

@@ -1,0 +1,152 @@
+"""What a terminal shows: the answer, one table a property, what failed, where the folder is."""
+
+from __future__ import annotations
+
+import textwrap
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
+from pathlib import Path
+
+from eosmuster.record import Record
+from eosmuster.report import words
+from eosmuster.report.text import cells_of, list_within, number, one_line, plain_table, shortened, some
+from eosmuster.report.views import Overview, overviews, unavailable_reasons, unsolved_reasons
+
+_MOST_CANDIDATES = 40
+_MOST_REASONS = 5
+_LONGEST_NAME = 30
+
+
+@dataclass(frozen=True)
+class SaturationRow:
+    """One answer of the ``saturate`` command, every number in the unit its column is headed with.
+
+    Attributes
+    ----------
+    source : model, or reference
+    value : saturation pressure or boiling temperature
+    note : why a number is missing, or what a reader must know; "" for nothing
+    """
+
+    source: str
+    value: float
+    liquid_density: float
+    vapor_density: float
+    enthalpy_of_vaporization: float
+    fugacity: float
+    note: str = ""
+
+
+def terminal_summary(record: Record, folder: Path | None, width: int = 100) -> str:
+    """Sum up a run in lines of at most `width` columns (the path alone may be longer), without a last newline.
+
+    Parameters
+    ----------
+    record : the run
+    folder : where its files are; None if they were not written
+    width : columns of the terminal
+    """
+    views = overviews(record)
+    lines = [one_line(record.plan_title or record.plan_name), *_wrapped(words.counts(record), width), ""]
+    for view in views:
+        heading, *sentences = words.answer(record, view, width - 2)
+        lines += [heading, *(f"  {sentence}" for sentence in sentences)]
+    for view in views:
+        lines += ["", *_standings(view, width)]
+    lines += ["", *_failures(record, width)]
+    text = "\n".join(shortened(line, width) for line in "\n".join(lines).split("\n")).rstrip("\n")
+    return text if folder is None else f"{text}\n\n{_place(folder, width)}"
+
+
+def _place(folder: Path, width: int) -> str:
+    """Say where the folder is; a path is never cut, since it is there to be copied."""
+    here = Path.cwd()
+    path = str(folder.relative_to(here) if folder.is_relative_to(here) else folder)
+    return f"results: {path}" if cells_of(path) + 9 <= width else f"results:\n{path}"
+
+
+def saturation_table(rows: Sequence[SaturationRow], headers: Sequence[str], width: int = 100) -> str:
+    """Lay out the answers of the ``saturate`` command, notes as footnotes below.
+
+    Parameters
+    ----------
+    rows : one a model or reference
+    headers : of the six columns before the note, with units, e.g. ``"p_sat, bar"``
+    width : no line is longer
+
+    Examples
+    --------
+    >>> nan = float("nan")
+    >>> rows = [SaturationRow("PR", 9.98, 490.1, 21.6, 15.1, 8.4), SaturationRow("Antoine", *[nan] * 5, "no")]
+    >>> print(saturation_table(rows, ["", "p_sat, bar", "liquid", "vapor", "h_vap", "f, bar"]))
+             p_sat, bar  liquid  vapor  h_vap  f, bar
+    -------  ----------  ------  -----  -----  ------  ---
+    PR             9.98   490.1   21.6   15.1     8.4
+    Antoine           -       -      -      -       -  [1]
+    <BLANKLINE>
+    [1] no
+    """
+    notes = list(dict.fromkeys(one_line(row.note) for row in rows if row.note))
+    body = [
+        [
+            row.source,
+            *(number(v, 6) for v in _values(row)),
+            f"[{notes.index(one_line(row.note)) + 1}]" if row.note else "",
+        ]
+        for row in rows
+    ]
+    footnotes = [line for i, note in enumerate(notes, 1) for line in _wrapped(f"[{i}] {note}", width, "    ")]
+    return "\n".join([plain_table([*headers, ""], body, width), *([""] if notes else []), *footnotes])
+
+
+def _values(row: SaturationRow) -> tuple[float, ...]:
+    return row.value, row.liquid_density, row.vapor_density, row.enthalpy_of_vaporization, row.fugacity
+
+
+def _standings(view: Overview, width: int) -> Iterator[str]:
+    yield f"{view.label}: candidates, worst first"
+    shown = view.standings[-_MOST_CANDIDATES:]
+    verdicts = {"held": "inside", "undec": "undecided", "part": "partly", "out": "outside", "n/a": "unavailable"}
+    columns = {
+        "candidate": [shortened(one_line(s.candidate), _LONGEST_NAME) for s in shown],
+        **{head: [str(len(s.fluids[verdict])) for s in shown] for head, verdict in verdicts.items()},
+        "unsolved": [str(s.unsolved) for s in shown],
+        "inside": [words.percent(s.share) if s.points else "-" for s in shown],
+        "largest": [words.largest(s.worst) for s in shown],
+    }
+    # a count that is nought for every candidate says less than the names it makes room for
+    columns = {head: column for head, column in columns.items() if head == "held" or set(column) != {"0"}}
+    taken = sum(2 + max(map(cells_of, [head, *column])) for head, column in columns.items())
+    columns["not held, worst first"] = [list_within([one_line(f) for f in s.failing], width - taken) for s in shown]
+    yield plain_table(list(columns), list(zip(*columns.values(), strict=True)), width)
+    if len(shown) < len(view.standings):
+        yield f"{len(view.standings) - len(shown)} candidates that hold fewer fluids are left out; see summary.csv"
+
+
+def _failures(record: Record, width: int) -> Iterator[str]:
+    unsolved = unsolved_reasons(record)
+    if not unsolved:
+        yield "unsolved: none"
+    else:
+        yield f"unsolved: {some(sum(group[3] for group in unsolved), 'point')}"
+        for prop, candidate, note, points, fluids in unsolved[:_MOST_REASONS]:
+            names = list_within(fluids, 30)
+            yield f"  {candidate} {prop}: {points} ({names}) {one_line(note)}".rstrip()
+        yield from _more(len(unsolved), "points.csv")
+    unavailable = unavailable_reasons(record.summary)
+    if unavailable:
+        yield "unavailable, not judged:"
+        for candidate, why, fluids in unavailable[:_MOST_REASONS]:
+            yield f"  {candidate}: {some(len(fluids), 'fluid')} ({list_within(fluids, 30)}) {one_line(why)}".rstrip()
+        yield from _more(len(unavailable), "summary.csv")
+    if record.left_out:
+        yield f"left out: {list_within([what for what, _ in record.left_out], width - 30)} (why: manifest.json)"
+
+
+def _more(count: int, where: str) -> Iterator[str]:
+    if count > _MOST_REASONS:
+        yield f"  {count - _MOST_REASONS} more groups in {where}"
+
+
+def _wrapped(text: str, width: int, indent: str = "  ") -> list[str]:
+    return textwrap.wrap(text, width, subsequent_indent=indent)

@@ -1,0 +1,203 @@
+"""Sentences of a report: the answer, the decision rule, the cautions, units for people."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator, Mapping, Sequence
+from typing import Any
+
+import numpy as np
+
+from eosmuster.quantities import PROPERTIES, UNITS, from_si
+from eosmuster.record import POINT_VERDICTS, Block, Record, SummaryRow
+from eosmuster.report.text import list_within, number, shortened, some
+from eosmuster.report.views import Overview, is_temperature
+
+_BEST = 5  # candidates named in the answer
+
+_NEAR_CRITICAL = 0.95
+_ASSOCIATING = ("associat", "alcohol", "glycol", "water", "acid")
+
+
+def answer(record: Record, overview: Overview, width: int = 100) -> list[str]:
+    """Say which candidates hold the tolerance of a property, where the best fails, which fluids none holds.
+
+    Returns
+    -------
+    a heading and one to three sentences, each within `width`
+    """
+    count = some(len(overview.fluids), "fluid")
+    reduced = "" if np.isnan(overview.reduced[0]) else ", T/Tc {:.3g} to {:.3g}".format(*overview.reduced)
+    heading = f"{overview.label}, {overview.limit_text}{reduced}"
+    best = [s for s in reversed(overview.standings) if s.held][:_BEST]
+    if not best:
+        nearest = overview.standings[-1] if overview.standings else None
+        near = f"; nearest: {nearest.candidate}, {percent(nearest.share)} of its points inside" if nearest else ""
+        return [heading, shortened(f"no candidate holds it for any of {count}{near}", width)]
+    everywhere = [s.candidate for s in reversed(overview.standings) if s.held == len(overview.fluids)]
+    if everywhere:
+        return [
+            heading,
+            _listed(f"holds for {count}" if count == "1 fluid" else f"holds for all {count}", everywhere, width),
+        ]
+    sentences = [_listed(f"holds for most of {count}", [f"{s.candidate} {s.held}" for s in best], width)]
+    sentences.append(
+        _listed(f"{best[0].candidate} is inside, {temperature_unit(record)}", _where(record, overview), width)
+    )
+    if overview.unheld:
+        fluids = some(len(overview.unheld), "fluid")
+        sentences.append(_listed(f"no candidate holds {fluids}", overview.unheld, width))
+    return [heading, *sentences]
+
+
+def _listed(start: str, names: Sequence[str], width: int) -> str:
+    return f"{start}: {list_within(names, width - len(start) - 2)}"
+
+
+def _where(record: Record, overview: Overview) -> list[str]:
+    """Say for each fluid that the best candidate does not hold where it is inside all the same."""
+    best = overview.standings[-1]
+    windows: dict[str, list[str]] = {fluid: [] for fluid in best.failing}
+    for w in record.windows:
+        if w.property == overview.name and w.candidate == best.candidate and w.component in windows:
+            span = " to ".join(number(shown_temperature(record, t), 5) for t in (w.from_K, w.to_K))
+            source = f" ({w.reference_source})" if len(overview.sources) > 1 else ""
+            windows[w.component].append(span + source)
+    spans = [f"{fluid} {' and '.join(found) or 'nowhere'}" for fluid, found in windows.items()]
+    return [*spans, *(f"{fluid} unavailable" for fluid in best.fluids["unavailable"])]
+
+
+def percent(share: float) -> str:
+    """Write a share in whole percent; neither 0 nor 100 unless it is exactly that.
+
+    Examples
+    --------
+    >>> percent(0.999), percent(0.001), percent(1.0), percent(0.625)
+    ('99 %', '1 %', '100 %', '62 %')
+    """
+    whole = round(100.0 * share)
+    return f"{whole if share in (0.0, 1.0) else min(max(whole, 1), 99)} %"
+
+
+def largest(row: SummaryRow | None) -> str:
+    """Write the size of the largest deviation of a row; temperatures in K."""
+    if row is None:
+        return "-"
+    if is_temperature(row.property):
+        return f"{row.max_pct / 100.0 * row.max_at_K:.3g} K"
+    return f"{number(float(row.max_pct), 3)} %"
+
+
+def counts(record: Record) -> str:
+    """Count everything: fluids, candidates, points by verdict, and what is unavailable."""
+    total = np.zeros(len(POINT_VERDICTS), dtype=np.int64)
+    for block in record.blocks:
+        total += np.bincount(block.verdict.ravel(), minlength=len(POINT_VERDICTS))
+    fluids, candidates = ({getattr(row, name) for row in record.summary} for name in ("component", "candidate"))
+    each = ", ".join(f"{n} {v.replace('_', ' ')}" for v, n in zip(POINT_VERDICTS, total.tolist(), strict=True) if n)
+    unavailable = sum(row.verdict == "unavailable" for row in record.summary)
+    return (
+        f"{some(len(fluids), 'fluid')}, {some(len(candidates), 'candidate')}, {some(int(total.sum()), 'point')}"
+        + (f": {each}" if each else "")
+        + (f"; {some(unavailable, 'row')} unavailable" if unavailable else "")
+    )
+
+
+def decision(rule: Mapping[str, Any]) -> list[str]:
+    """Say the decision rule in words, then everything else the record says about it."""
+    k, ratio = (number(rule.get(name, "?")) for name in ("coverage_factor", "unfit_ratio"))
+    name = rule.get("rule", "?")
+    words = {
+        "guarded": f"Guarded rule: U is the expanded uncertainty of the reference (coverage factor {k}). A point is "
+        "inside if its deviation is smaller than the limit by U or more, outside if it is larger by U or more, and "
+        f"undecided between; where U is more than {ratio} of the limit the reference is unfit to decide that. "
+        "Where U is not known the deviation alone decides, and the point's note says so.",
+        "simple": "Simple rule (shared risk): the deviation alone decides, whatever the reference's uncertainty.",
+    }
+    rest = [f"{key}: {number(v)}" for key, v in rule.items() if key not in ("rule", "coverage_factor", "unfit_ratio")]
+    return [words.get(str(name), f"Rule: {name}."), *rest]
+
+
+def temperature_unit(record: Record) -> str:
+    """Give the unit in which people read temperatures."""
+    return record.display.get("temperature", "K")
+
+
+def shown_temperature(record: Record, kelvin: float) -> float:
+    """Give a temperature in the unit people read, rounded to 0.01."""
+    return round(from_si(kelvin, temperature_unit(record), "temperature"), 2)
+
+
+def point(record: Record, row: SummaryRow, place: tuple[Block, int, int] | None) -> list[str]:
+    """Write the point of a row's largest deviation as cells.
+
+    Temperature, reduced temperature, predicted, reference, their unit, deviation, limit, verdict; pressures
+    and temperatures in the units people read, a deviation of a temperature in K.
+    """
+    if place is None:  # the record holds no such point
+        at = number(shown_temperature(record, row.max_at_K), 5)
+        return [at, "-", "-", "-", "-", f"{number(float(row.max_pct), 3)} %", "-", "-"]
+    block, candidate, state = place
+    unit, shown = _for_people(record, row, block.unit)
+    deviation, limit = float(block.deviation_pct[candidate, state]), float(block.limit_pct[state])
+    if is_temperature(row.property):
+        deviation, limit = (x * float(block.reference[state]) / 100.0 for x in (deviation, limit))
+    per = "K" if is_temperature(row.property) else "%"
+    return [
+        number(shown_temperature(record, float(block.temperature[state])), 5),
+        number(float(block.reduced_temperature[state]), 3),
+        number(shown(float(block.predicted[candidate, state])), 6),
+        number(shown(float(block.reference[state])), 6),
+        unit,
+        f"{deviation:+.3g} {per}",
+        f"{limit:.3g} {per}",
+        POINT_VERDICTS[int(block.verdict[candidate, state])].replace("_", " "),
+    ]
+
+
+def _for_people(record: Record, row: SummaryRow, unit: str) -> tuple[str, Callable[[float], float]]:
+    """Choose the unit people read a property in, the file's own where there is no other, and how to get there."""
+    dimension = PROPERTIES[row.property].dimension if row.property in PROPERTIES else ""
+    wanted = record.display.get(dimension, unit)
+    if wanted in UNITS.get(dimension, {}):
+        return wanted, lambda value: from_si(value, wanted, dimension)
+    molar_mass = record.constants.get(row.component, {}).get("molar_mass", {}).get("value")
+    if dimension == "density" and wanted in UNITS["mass_density"] and molar_mass:
+        return wanted, lambda value: from_si(value * molar_mass, wanted, "mass_density")
+    return unit, lambda value: value
+
+
+def cautions(record: Record) -> Iterator[str]:
+    """Say what a reader must not read into the results, with the fluids concerned."""
+    yield (
+        "Pure components only, for now: nothing here says how a model does for mixtures, where the combining "
+        "and mixing rules decide."
+    )
+    if any(np.any(b.reduced_temperature > _NEAR_CRITICAL) for b in record.blocks):
+        yield (
+            "Near the critical point (T/Tc above 0.95) cubic equations and references are both at their weakest, "
+            "and densities change steeply with temperature."
+        )
+    yield (
+        "Nothing is judged below the triple point or outside the range of a reference; correlations are never "
+        "extrapolated."
+    )
+    for what, fluids in _families(record).items():
+        if fluids:
+            yield f"{what}: {list_within(fluids, 400)}."
+    yield "The AAD depends on the grid: read it together with the points and the temperatures printed beside it."
+    yield (
+        "Results support, and do not replace, the judgement of a licensed engineer; relief, safety and "
+        "custody-transfer calculations follow local codes."
+    )
+
+
+def _families(record: Record) -> dict[str, list[str]]:
+    quantum = "Quantum gases, for which alpha functions fitted to ordinary fluids are not made"
+    associating = "Associating fluids, whose hydrogen bonds a cubic equation does not know"
+    found: dict[str, list[str]] = {quantum: [], associating: []}
+    for component, family in record.families.items():
+        if "quantum" in family:
+            found[quantum].append(component)
+        elif any(word in family for word in _ASSOCIATING):
+            found[associating].append(component)
+    return found

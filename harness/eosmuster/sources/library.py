@@ -1,0 +1,343 @@
+"""The reference library, CoolProp, behind a gate: it answers only where its answer means something.
+
+By itself the library answers below the triple point and for blends, and its saturation pressures lose all
+digits where they get tiny. Here such a state has no answer, and a reason.
+"""
+
+from __future__ import annotations
+
+import csv
+import threading
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass
+from functools import cache, partial
+from typing import TYPE_CHECKING
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from eosmuster.components import Component, catalogue
+from eosmuster.errors import InputError, suggestion
+from eosmuster.paths import references_folder
+from eosmuster.quantities import PROPERTIES
+
+if TYPE_CHECKING:
+    from CoolProp.CoolProp import AbstractState
+
+Floats = NDArray[np.float64]
+
+LIBRARY = "coolprop"
+"""The name of this source in plans and files."""
+
+REASONS = (
+    "answered",
+    "not a pure fluid of the library",
+    "below the range of the reference equation",
+    "at or above the critical point, or above the range of the reference equation",
+    "the library found no solution",
+    "the library's vapour pressure contradicts its own equation of state",
+)
+"""Why there is no answer: `Answers.reason` holds the index into this tuple, 0 where there is one."""
+
+ANSWERED, NOT_IN_LIBRARY, BELOW_RANGE, ABOVE_RANGE, FAILED, INCONSISTENT = range(len(REASONS))
+
+CONSISTENCY = 1e-4
+"""Largest relative difference between psat and p(T, rho'') of the same equation: below any stated
+uncertainty of a vapour pressure. Ours. It is exceeded below about 0.1 Pa only (MD4M below 0.37 Tc)."""
+
+_ROUNDING = 1e-12
+_STATED_COVERAGE_FACTOR = 2.0
+_OUTPUTS = ("temperature", "saturation_pressure", "liquid_density", "vapor_density", "liquid_h", "vapor_h")
+
+
+@dataclass(frozen=True)
+class Limits:
+    """Where the library is asked: `from_K` <= T < `to_K`, both in K."""
+
+    from_K: float
+    to_K: float
+
+
+@dataclass(frozen=True)
+class Answers:
+    """Reference values, NaN where there is no answer.
+
+    Attributes
+    ----------
+    values : property -> SI values in the shape that was asked for
+    reason : the index into `REASONS` in the same shape
+    """
+
+    values: Mapping[str, Floats]
+    reason: NDArray[np.int8]
+
+
+def version() -> str:
+    """Give the version of the library, without importing it."""
+    from importlib.metadata import version as installed
+
+    return installed("CoolProp")
+
+
+def limits(component: Component) -> Limits | None:
+    """Give the range of temperatures in which the library is a reference for a component.
+
+    From the triple point, or the start of the equation where that is higher, to below the critical
+    temperature: the stored (published) or the equation's numerical one, whichever is lower, and not above
+    the equation's own end. None for a component of the user's own and for a blend.
+
+    Examples
+    --------
+    >>> from eosmuster.components import find
+    >>> limits(find("water"))
+    Limits(from_K=273.16, to_K=647.096)
+    """
+    return _limits(component.library_name) if component.library_name in catalogue() else None
+
+
+def saturation(component: Component, temperature: ArrayLike, properties: Sequence[str]) -> Answers:
+    """Give saturation properties at temperatures.
+
+    Parameters
+    ----------
+    temperature : K, any shape
+    properties : keys of `eosmuster.quantities.PROPERTIES`; densities are molar, the enthalpy of
+        vaporization is h'' - h' in J/mol
+
+    Raises
+    ------
+    InputError : a property the library is not asked for.
+
+    Examples
+    --------
+    >>> from eosmuster.components import find
+    >>> answers = saturation(find("water"), [273.0, 373.124], ["saturation_pressure"])
+    >>> [f"{p:.0f}" for p in answers.values["saturation_pressure"]]
+    ['nan', '101325']
+    >>> REASONS[answers.reason[0]]
+    'below the range of the reference equation'
+    """
+    return _answers(component, "T", temperature, properties)
+
+
+def at_pressure(component: Component, pressure: ArrayLike, properties: Sequence[str]) -> Answers:
+    """Give saturation properties at pressures: ``boiling_temperature`` and the others.
+
+    Parameters and errors as for `saturation`, with `pressure` in Pa. The boiling temperature has to lie
+    within the component's `limits`.
+
+    Examples
+    --------
+    >>> from eosmuster.components import find
+    >>> answers = at_pressure(find("water"), 101325.0, ["boiling_temperature"])
+    >>> f"{answers.values['boiling_temperature']:.3f}"
+    '373.124'
+    """
+    return _answers(component, "p", pressure, properties)
+
+
+def evaluate(name: str, given: str, value: Floats, outputs: Sequence[str], backend: str = "HEOS") -> Floats:
+    """Ask a back end of the library for saturated states, one after the other and without any gate.
+
+    Parameters
+    ----------
+    name : the library's name of the fluid
+    given : ``T`` (K) or ``p`` (Pa)
+    value : shape (n,)
+    outputs : ``temperature``, ``saturation_pressure``, ``liquid_density``, ``vapor_density``,
+        ``liquid_h``, ``vapor_h``
+    backend : ``HEOS``, the multiparameter equations, or ``IF97``
+
+    Returns
+    -------
+    shape (len(outputs), n), SI and molar; NaN where the library finds no solution
+    """
+    from CoolProp import CoolProp as lib
+
+    state = _state(name, backend, threading.get_ident())
+    read = [_getter(state, output) for output in outputs]
+    result = np.full((value.size, len(outputs)), np.nan)
+    for row, x in zip(result, value.tolist(), strict=True):
+        try:
+            if given == "T":
+                state.update(lib.QT_INPUTS, 0.0, x)
+            else:
+                state.update(lib.PQ_INPUTS, x, 0.0)
+            row[:] = [get() for get in read]
+        except ValueError:
+            row[:] = np.nan
+    return result.T
+
+
+def uncertainty_pct(component: Component, name: str, temperature: ArrayLike, coverage_factor: float = 2.0) -> Floats:
+    """Give the stated expanded uncertainty of the reference equation, in % of the value.
+
+    Parameters
+    ----------
+    name : a property
+    temperature : K, any shape
+    coverage_factor : of the result; stated values are taken as k = 2, also where their source names none
+
+    Returns
+    -------
+    shape of `temperature`; NaN where no uncertainty is stated in ``references/uncertainty/coolprop.csv``.
+    For the boiling temperature the one of the vapour pressure is propagated: U(T) = U(p) / (dln p/dln T).
+
+    Examples
+    --------
+    >>> from eosmuster.components import find
+    >>> uncertainty_pct(find("propane"), "saturation_pressure", [170.0, 300.0])
+    array([ nan, 0.02])
+    """
+    T = np.asarray(temperature, np.float64)
+    if name == "boiling_temperature":
+        stated = uncertainty_pct(component, "saturation_pressure", T, coverage_factor)
+        return np.asarray(stated / _steepness(component, T))
+    result = np.full(T.shape, np.nan)
+    for low, high, value in _stated().get((component.library_name, name), ()):
+        scaled = value * coverage_factor / _STATED_COVERAGE_FACTOR
+        result = np.where((low <= T) & (high >= T), np.fmax(result, scaled), result)
+    return result
+
+
+def uncertainty_borders(component: Component, name: str) -> tuple[float, ...]:
+    """Give the temperatures (K) at which the stated uncertainty begins, ends or changes.
+
+    Examples
+    --------
+    >>> from eosmuster.components import find
+    >>> uncertainty_borders(find("argon"), "liquid_density")
+    (83.806, 143.15)
+    """
+    stated = "saturation_pressure" if name == "boiling_temperature" else name
+    rows = _stated().get((component.library_name, stated), ())
+    return tuple(sorted({end for low, high, _ in rows for end in (low, high)}))
+
+
+def citation() -> str:
+    """Cite the library itself; the equation behind each fluid is cited with its constants."""
+    return (
+        f"CoolProp {version()}: Bell, Wronski, Quoilin and Lemort, Ind. Eng. Chem. Res. 53 (2014) 2498, "
+        "doi 10.1021/ie4033999"
+    )
+
+
+def _answers(component: Component, given: str, values: ArrayLike, properties: Sequence[str]) -> Answers:
+    """Evaluate the states that are within range, and withdraw what turns out not to be an answer."""
+    _check(properties)
+    x, name = np.asarray(values, np.float64), component.library_name
+    reason = _reason_before(component, given, x)
+    asked = reason == ANSWERED
+    solved = dict(zip(_OUTPUTS, evaluate(name, given, x[asked], _OUTPUTS) if asked.any() else [], strict=False))
+    if solved:
+        reason[asked] = _reason_after(name, solved)
+    result = {p: np.full(x.shape, np.nan) for p in properties}
+    for p in properties if solved else ():
+        result[p][asked] = np.where(reason[asked] == ANSWERED, _value(solved, p), np.nan)
+    return Answers(result, reason)
+
+
+def _check(properties: Sequence[str]) -> None:
+    for name in properties:
+        if name not in PROPERTIES:
+            raise InputError(f"{LIBRARY}: property {name!r} is unknown; {suggestion(name, PROPERTIES)}")
+
+
+def _value(solved: Mapping[str, Floats], name: str) -> Floats:
+    if name == "enthalpy_of_vaporization":
+        return solved["vapor_h"] - solved["liquid_h"]
+    return solved["temperature" if name == "boiling_temperature" else name]
+
+
+def _reason_before(component: Component, given: str, x: Floats) -> NDArray[np.int8]:
+    """Give the reason code that is known before the library is asked."""
+    within = limits(component)
+    if within is None:
+        return np.full(x.shape, NOT_IN_LIBRARY, np.int8)
+    if given == "T":
+        return _range_reason(x, within)
+    name = component.library_name
+    top = _state(name, "HEOS", threading.get_ident()).p_critical()
+    bottom = evaluate(name, "T", np.array([within.from_K]), ["saturation_pressure"])[0, 0]
+    return np.asarray(np.select([~(x >= bottom), x >= top], [BELOW_RANGE, ABOVE_RANGE], ANSWERED), np.int8)
+
+
+def _reason_after(name: str, solved: Mapping[str, Floats]) -> NDArray[np.int8]:
+    """Give the reason code of states the library was asked for."""
+    T, p, rho = solved["temperature"], solved["saturation_pressure"], solved["vapor_density"]
+    two_phases = (solved["liquid_density"] > rho) & (solved["vapor_h"] > solved["liquid_h"])
+    contradicts = ~(np.abs(p / _equation_pressure(name, T, rho) - 1.0) <= CONSISTENCY)
+    in_range = _range_reason(T, _limits(name))
+    codes = np.select([~two_phases, in_range != ANSWERED, contradicts], [FAILED, in_range, INCONSISTENT], ANSWERED)
+    return np.asarray(codes, np.int8)
+
+
+def _range_reason(T: Floats, within: Limits) -> NDArray[np.int8]:
+    # the lower end forgives the rounding of a unit conversion: 0.01 degC is 273.15999999999997 K
+    below = ~(within.from_K * (1.0 - _ROUNDING) <= T)
+    return np.asarray(np.select([below, within.to_K <= T], [BELOW_RANGE, ABOVE_RANGE], ANSWERED), np.int8)
+
+
+def _equation_pressure(name: str, T: Floats, rho: Floats) -> Floats:
+    """Give p(T, rho'') of the equation itself, Pa; NaN where the library fails."""
+    from CoolProp import CoolProp as lib
+
+    state = _state(name, "HEOS", threading.get_ident(), "gas")
+    result = np.full(T.shape, np.nan)
+    for i, (t, r) in enumerate(zip(T.tolist(), rho.tolist(), strict=True)):
+        try:
+            state.update(lib.DmolarT_INPUTS, r, t)
+            result[i] = state.p()
+        except ValueError:  # stays NaN: no consistent answer
+            continue
+    return result
+
+
+def _steepness(component: Component, T: Floats) -> Floats:
+    """Give dln p/dln T of the saturation curve by a central difference, good to 1e-6 away from Tc."""
+    step = 1e-4
+    up, down = (
+        saturation(component, T * (1.0 + sign * step), ["saturation_pressure"]).values["saturation_pressure"]
+        for sign in (1.0, -1.0)
+    )
+    return np.asarray(np.log(up / down) / np.log((1.0 + step) / (1.0 - step)))
+
+
+def _getter(state: AbstractState, output: str) -> Callable[[], float]:
+    from CoolProp import CoolProp as lib
+
+    if output in {"temperature", "saturation_pressure"}:
+        return state.T if output == "temperature" else state.p
+    phase, _, quantity = output.partition("_")
+    read = state.saturated_liquid_keyed_output if phase == "liquid" else state.saturated_vapor_keyed_output
+    return partial(read, lib.iDmolar if quantity == "density" else lib.iHmolar)
+
+
+@cache
+def _stated() -> Mapping[tuple[str, str], list[tuple[float, float, float]]]:
+    table: dict[tuple[str, str], list[tuple[float, float, float]]] = {}
+    with (references_folder() / "uncertainty" / "coolprop.csv").open(encoding="utf-8", newline="") as file:
+        for row in csv.DictReader(file):
+            key = (row["component"], row["property"])
+            table.setdefault(key, []).append(
+                (float(row["from_K"]), float(row["to_K"]), float(row["uncertainty_pct"]))
+            )
+    return table
+
+
+@cache
+def _limits(name: str) -> Limits:
+    stored, state = catalogue()[name], _state(name, "HEOS", threading.get_ident())
+    low = max(stored.triple_temperature or 0.0, state.Ttriple(), state.Tmin())
+    return Limits(round(low, 9), min(stored.critical_temperature, state.T_critical(), state.Tmax()))
+
+
+@cache
+def _state(name: str, backend: str, thread: int, phase: str = "") -> AbstractState:
+    """One state object a fluid and thread: two threads in one object would read each other's states."""
+    from CoolProp import CoolProp as lib
+
+    state = lib.AbstractState(backend, name)
+    if phase:
+        state.specify_phase(getattr(lib, f"iphase_{phase}"))
+    return state

@@ -1,0 +1,173 @@
+"""Judging: a series and its predictions become a block of points and its summary rows."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from eosmuster.compare import deviations, verdicts
+from eosmuster.components import Component
+from eosmuster.models.model import BoundModel
+from eosmuster.plan.schema import Plan
+from eosmuster.plan.tolerances import limit_pct
+from eosmuster.quantities import PROPERTIES
+from eosmuster.record import POINT_VERDICTS, Block, SummaryRow
+from eosmuster.saturation import solver
+from eosmuster.sweep.predictions import is_by_pressure
+from eosmuster.sweep.series import Series
+
+Floats = NDArray[np.float64]
+
+NOTES = (
+    "",
+    "simple rule: the reference's uncertainty is not stated",
+    "above the candidate's own critical point",
+    "the candidate has no two phases here",
+    "colder than the candidate's tabulated curve",
+    "no value could be computed",
+    "the reference has no value here",
+)
+"""Notes of points, by the number that `Block.note` holds."""
+
+_SIMPLE, _NO_REFERENCE = 1, 6
+_NOTE_OF_STATUS = np.array([0, 2, 3, 4, 5, 5], np.int16)  # in the order of solver.STATUSES
+_UNSOLVED, _NO_REFERENCE_VERDICT = POINT_VERDICTS.index("unsolved"), POINT_VERDICTS.index("no_reference")
+
+
+@dataclass(frozen=True)
+class Judged:
+    """A block, and what the search for windows needs of all its nodes.
+
+    Attributes
+    ----------
+    rows : numbers of the plan's models that are candidates of this block
+    predicted : (m, N) at all nodes
+    """
+
+    series: Series
+    block: Block
+    rows: tuple[int, ...]
+    predicted: Floats
+
+
+def independence(bound: BoundModel, component: Component, series: Series) -> str:
+    """Tell whether a candidate owes its constants, or its fit, to the reference it is judged against."""
+    if series.independent_of_library:
+        return "independent"
+    if series.property in bound.record.fitted:
+        return "fitted"
+    return "constants" if component.library_name and not bound.record.constants else "independent"
+
+
+def judge(
+    plan: Plan, series: Series, bound: Sequence[BoundModel], predicted: Floats, status: NDArray[np.int8]
+) -> Judged:
+    """Judge all available models against one series; `predicted` and `status` have shape (models, N)."""
+    component, nodes, state = series.component, series.nodes, series.nodes.state
+    rows = tuple(i for i, b in enumerate(bound) if not b.unavailable[series.row])
+    mine = predicted[list(rows)]
+    at_states, reference = mine[:, state], series.values[state]
+    temperature = nodes.temperature[state]
+    reduced = temperature / component.critical_temperature
+    limit = limit_pct(plan.tolerances, component, series.property, temperature, reduced, reference)
+    uncertainty = series.uncertainty(temperature)
+    deviation = deviations.deviation_pct(at_states, reference)
+    judgement = verdicts.judge(
+        deviation,
+        limit,
+        uncertainty,
+        verdicts.unsolved_mask(at_states, reference),
+        rule=plan.decision.rule,
+        coverage_factor=plan.decision.coverage_factor,
+        unfit_ratio=plan.decision.unfit_ratio,
+    )
+    note = np.where(judgement.simple_rule, _SIMPLE, 0).astype(np.int16)
+    unsolved = judgement.verdict == _UNSOLVED
+    note[unsolved] = _NOTE_OF_STATUS[status[list(rows)][:, state]][unsolved]
+    note[judgement.verdict == _NO_REFERENCE_VERDICT] = _NO_REFERENCE
+    about = PROPERTIES[series.property]
+    block = Block(
+        component=component.name,
+        cas=component.cas,
+        property=series.property,
+        unit=about.unit,
+        phase=about.phase,
+        reference_source=series.source,
+        candidates=tuple(bound[i].record.name for i in rows),
+        independence=tuple(independence(bound[i], component, series) for i in rows),
+        temperature=temperature,
+        pressure=nodes.pressure[state] if is_by_pressure(nodes) else np.full(state.shape, np.nan),
+        reduced_temperature=reduced,
+        reference=reference,
+        reference_uncertainty_pct=uncertainty,
+        limit_pct=limit,
+        predicted=at_states,
+        deviation_pct=deviation,
+        probability_inside=judgement.probability_inside,
+        verdict=judgement.verdict,
+        note=note,
+        notes=NOTES,
+    )
+    return Judged(series, block, rows, mine)
+
+
+def summarise(block: Block, rule: str) -> Iterator[SummaryRow]:
+    """Yield one row a candidate."""
+    found = deviations.statistics(block.deviation_pct, block.temperature)
+    counts = verdicts.tally(block.verdict)
+    passing = verdicts.passing_limit_pct(block.deviation_pct, block.reference_uncertainty_pct, block.verdict, rule)
+    false = verdicts.false_acceptance_pct(block.probability_inside, block.verdict)
+    columns = [a.tolist() for a in (found.aad, found.bias, found.rms, found.median, found.p95, found.maximum)]
+    at, counted, passing_list, false_list = found.max_at_K.tolist(), counts.tolist(), passing.tolist(), false.tolist()
+    ends = (float(block.temperature[0]), float(block.temperature[-1]))
+    for i, candidate in enumerate(block.candidates):
+        inside, outside, undecided, unfit, unsolved, no_reference = counted[i]
+        judged = inside + outside + undecided + unfit + unsolved
+        yield SummaryRow(
+            block.component,
+            candidate,
+            block.property,
+            block.reference_source,
+            block.temperature.size,
+            *ends,
+            *(column[i] for column in columns),
+            at[i],
+            inside,
+            undecided + unfit,
+            outside,
+            unsolved,
+            no_reference,
+            inside / judged if judged else float("nan"),
+            passing_list[i],
+            false_list[i],
+            "",
+            block.independence[i],
+            verdicts.summary_verdict(counts[i]),
+            _summary_note(block, i, unsolved, unfit),
+        )
+
+
+def _summary_note(block: Block, row: int, unsolved: int, unfit: int) -> str:
+    """Name the most frequent reason where points are unsolved, and points that the reference cannot decide."""
+    said = []
+    if unsolved:
+        notes = block.note[row][block.verdict[row] == _UNSOLVED]
+        said.append(block.notes[int(np.bincount(notes).argmax())])
+    if unfit:
+        said.append(f"{unfit} undecided because the reference is too uncertain")
+    return "; ".join(said)
+
+
+def unavailable_row(component: Component, candidate: str, name: str, reason: str) -> SummaryRow:
+    """Return the one row of a candidate that cannot be used for a component."""
+    nan = float("nan")
+    numbers = (0, *(nan,) * 9, 0, 0, 0, 0, 0, *(nan,) * 3)
+    return SummaryRow(component.name, candidate, name, "", *numbers, "", "", "unavailable", reason)
+
+
+def status_name(code: int) -> str:
+    """Name a solver status."""
+    return solver.STATUSES[code]

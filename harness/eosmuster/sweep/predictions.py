@@ -1,0 +1,115 @@
+"""What the candidates say: every model on every node of every series, a few large batches a model."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from eosmuster.components import Component
+from eosmuster.models.model import BoundModel, bind
+from eosmuster.models.records import ModelRecord
+from eosmuster.saturation import solver
+from eosmuster.sweep.series import Nodes, Series
+
+Floats = NDArray[np.float64]
+Ints = NDArray[np.intp]
+
+
+@dataclass(frozen=True)
+class Request:
+    """A stretch of states of one component: where it lies in the flat arrays of its kind."""
+
+    by_pressure: bool
+    start: int
+    stop: int
+
+
+@dataclass(frozen=True)
+class States:
+    """All states that are asked for, flat: the component's row, and its temperature or pressure."""
+
+    row: Ints
+    value: Floats
+
+
+class Predictions:
+    """Predictions of all models, kept per property as arrays of shape (models, states)."""
+
+    def __init__(self, records: Sequence[ModelRecord], components: Sequence[Component], series: Sequence[Series]) -> None:
+        self.bound: tuple[BoundModel, ...] = tuple(bind(record, components) for record in records)
+        self.requests, temperatures, pressures = _lay_out(series)
+        wanted = {s.property for s in series}
+        self._by_temperature = _solve_all(self.bound, temperatures, wanted, by_pressure=False)
+        self._by_pressure = _solve_all(self.bound, pressures, wanted, by_pressure=True)
+
+    def of(self, number: int, name: str) -> tuple[Floats, NDArray[np.int8]]:
+        """Predictions and solver statuses of the series with that number: shapes (models, N)."""
+        request = self.requests[number]
+        values, status = self._by_pressure if request.by_pressure else self._by_temperature
+        stretch = slice(request.start, request.stop)
+        return values[name][:, stretch], status[:, stretch]
+
+
+def predict(bound: BoundModel, states: States, names: set[str], *, by_pressure: bool) -> tuple[dict[str, Floats], NDArray[np.int8]]:
+    """Predict properties of one model at flat states; NaN where the status says why."""
+    parameters = bound.parameters.take(states.row)
+    solve = solver.at_pressure if by_pressure else solver.at_temperature
+    result = solve(parameters, states.value, slope="enthalpy_of_vaporization" in names)
+    found = {
+        "saturation_pressure": result.pressure,
+        "boiling_temperature": result.temperature,
+        "liquid_density": result.liquid_density,
+        "vapor_density": result.vapor_density,
+    }
+    if "enthalpy_of_vaporization" in names:
+        found["enthalpy_of_vaporization"] = solver.enthalpy_of_vaporization(result)
+    if by_pressure:
+        found["boiling_temperature"] = np.where(result.status == solver.SOLVED, result.temperature, np.nan)
+    return {name: found[name] for name in names}, result.status
+
+
+def _solve_all(
+    bound: Sequence[BoundModel], states: States, wanted: set[str], *, by_pressure: bool
+) -> tuple[dict[str, Floats], NDArray[np.int8]]:
+    names = wanted - ({"saturation_pressure"} if by_pressure else {"boiling_temperature"})
+    values = {name: np.empty((len(bound), states.value.size)) for name in names}
+    status = np.empty((len(bound), states.value.size), np.int8)
+    for i, model in enumerate(bound):
+        found, status[i] = predict(model, states, names, by_pressure=by_pressure)
+        for name in names:
+            values[name][i] = found[name]
+    return values, status
+
+
+def _lay_out(series: Sequence[Series]) -> tuple[list[Request], States, States]:
+    """Give each series its stretch of the flat states; series on the same nodes share one."""
+    flat: tuple[list[tuple[int, Floats]], list[tuple[int, Floats]]] = ([], [])
+    known: dict[tuple[bool, int, bytes], Request] = {}
+    sizes = [0, 0]
+    requests = []
+    for s in series:
+        by_pressure = is_by_pressure(s.nodes)
+        value = s.nodes.pressure if by_pressure else s.nodes.temperature
+        key = (by_pressure, s.row, value.tobytes())
+        if key not in known:
+            start = sizes[by_pressure]
+            sizes[by_pressure] = start + value.size
+            known[key] = Request(by_pressure, start, start + value.size)
+            flat[by_pressure].append((s.row, value))
+        requests.append(known[key])
+    return requests, _joined(flat[0]), _joined(flat[1])
+
+
+def is_by_pressure(nodes: Nodes) -> bool:
+    """Whether candidates are given the pressure on these nodes."""
+    return bool(np.isfinite(nodes.pressure).any())
+
+
+def _joined(parts: list[tuple[int, Floats]]) -> States:
+    if not parts:
+        return States(np.empty(0, np.intp), np.empty(0))
+    rows = np.repeat([row for row, _ in parts], [value.size for _, value in parts])
+    return States(rows.astype(np.intp), np.concatenate([value for _, value in parts]))

@@ -1,0 +1,150 @@
+"""Plan -> record."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable, Mapping, Sequence
+from typing import Any
+
+from eosmuster.components import Component
+from eosmuster.models.catalogue import CATALOGUE
+from eosmuster.models.model import BoundModel
+from eosmuster.models.records import ModelRecord
+from eosmuster.plan.schema import Plan
+from eosmuster.record import Record, SummaryRow
+from eosmuster.sources import handbook, library
+from eosmuster.sweep.judging import Judged, judge, summarise, unavailable_row
+from eosmuster.sweep.predictions import Predictions
+from eosmuster.sweep.refining import windows
+from eosmuster.sweep.series import Series, collect, refuse_empty
+
+Progress = Callable[[str, int, int], None]
+"""Called with what is being done, how much of it is done, and how much there is."""
+
+
+def silent(_what: str, _done: int, _of: int) -> None:
+    """Report nothing."""
+
+
+def run(plan: Plan, progress: Progress = silent) -> Record:
+    """Sweep a plan: every component x model x state x property, judged against every reference.
+
+    Raises
+    ------
+    InputError : no reference has anything to say about the plan
+    """
+    left_out = list(plan.left_out)
+    series = []
+    for found in collect(plan, left_out):
+        series.append(found)
+        progress("references", found.row + 1, len(plan.components))
+    refuse_empty(series)
+    records = model_records(plan)
+    progress("models", 0, 1)
+    predictions = Predictions(records, plan.components, series)
+    judged = []
+    for i, one in enumerate(series):
+        judged.append(judge(plan, one, predictions.bound, *predictions.of(i, one.property)))
+        progress("verdicts", i + 1, len(series))
+    progress("windows", 0, 1)
+    found_windows = windows(plan, judged, predictions.bound)
+    progress("windows", 1, 1)
+    return Record(
+        plan_name=plan.name,
+        plan_title=plan.title,
+        plan_text=plan.text,
+        blocks=tuple(j.block for j in judged),
+        summary=tuple(_summary(plan, judged, predictions.bound)),
+        windows=tuple(found_windows),
+        left_out=tuple(left_out),
+        decision=_decision(plan),
+        constants={c.name: _constants(c) for c in plan.components},
+        models={r.name: _model(r) for r in records},
+        citations=_citations(series),
+        display={
+            "temperature": plan.display.temperature,
+            "pressure": plan.display.pressure,
+            "density": plan.display.density,
+        },
+    )
+
+
+def model_records(plan: Plan) -> tuple[ModelRecord, ...]:
+    """Return the records of a plan's models, in its order."""
+    own = {record.name: record for record in plan.own_models}
+    return tuple(own[name] if name in own else CATALOGUE[name] for name in plan.models)
+
+
+def _summary(plan: Plan, judged: Sequence[Judged], bound: Sequence[BoundModel]) -> list[SummaryRow]:
+    rows = [row for j in judged for row in summarise(j.block, plan.decision.rule)]
+    seen = dict.fromkeys((j.series.row, j.series.property) for j in judged)
+    for component, name in seen:
+        for model in bound:
+            if model.unavailable[component]:
+                reason = model.unavailable[component]
+                rows.append(unavailable_row(plan.components[component], model.record.name, name, reason))
+    return rows
+
+
+def _decision(plan: Plan) -> dict[str, Any]:
+    return {
+        "rule": plan.decision.rule,
+        "coverage_factor": plan.decision.coverage_factor,
+        "unfit_ratio": plan.decision.unfit_ratio,
+        "tolerances": [
+            {
+                "property": r.property,
+                "limit": str(r.limit),
+                "level": r.level,
+                "class": r.family,
+                "component": r.component,
+                "above_reduced_temperature": r.above_reduced_temperature,
+                "below_reduced_temperature": None
+                if math.isinf(r.below_reduced_temperature)
+                else r.below_reduced_temperature,
+                "rationale": r.rationale,
+            }
+            for r in plan.tolerances
+            if r.property in plan.properties
+        ],
+    }
+
+
+_CONSTANTS = {
+    "critical_temperature": "K",
+    "critical_pressure": "Pa",
+    "critical_density": "mol/m3",
+    "acentric_factor": "1",
+    "molar_mass": "kg/mol",
+    "triple_temperature": "K",
+}
+
+
+def _constants(component: Component) -> dict[str, Any]:
+    values: dict[str, Any] = {
+        name: {"value": getattr(component, name), "unit": unit, "source": component.sources.get(name, "")}
+        for name, unit in _CONSTANTS.items()
+        if getattr(component, name) is not None
+    }
+    return values | {"cas": component.cas, "class": component.family, "notes": list(component.notes)}
+
+
+def _model(record: ModelRecord) -> dict[str, Any]:
+    return {
+        "form": record.form.name,
+        "alpha": record.alpha,
+        "source": record.source,
+        "status": record.status,
+        "constants": record.constants or "the component's own",
+        "translated": record.translation is not None,
+        "note": record.note,
+    }
+
+
+def _citations(series: Sequence[Series]) -> Mapping[str, str]:
+    bibliography = handbook.bibliography()
+    used = {s.citation for s in series if s.citation}
+    cited = {key: bibliography[key] for key in sorted(used)}
+    if any(not s.independent_of_library for s in series):
+        cited["coolprop"] = library.citation()
+    return cited

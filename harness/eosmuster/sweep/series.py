@@ -1,0 +1,226 @@
+"""References as series: one component, property and source on the states of a plan, ready to be judged against."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterable, Iterator
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from eosmuster.components import Component
+from eosmuster.errors import InputError
+from eosmuster.plan.schema import Plan
+from eosmuster.plan.tolerances import limit_steps
+from eosmuster.sources import handbook, library
+
+Floats = NDArray[np.float64]
+Step = tuple[float, str]
+
+BY_TEMPERATURE = ("saturation_pressure", "liquid_density", "vapor_density", "enthalpy_of_vaporization")
+"""Properties asked for at a temperature; the boiling temperature is always asked for at a pressure."""
+
+
+@dataclass(frozen=True)
+class Nodes:
+    """Temperatures of one component at which references and candidates are evaluated together.
+
+    Attributes
+    ----------
+    temperature : (N,), K, strictly rising: the plan's states, and the steps of limits and ranges between them
+    pressure : (N,), Pa: what a candidate is given; NaN where it is given the temperature
+    state : (n,), numbers of the nodes that are states of the plan
+    """
+
+    temperature: Floats
+    pressure: Floats
+    state: NDArray[np.intp]
+
+
+@dataclass(frozen=True)
+class Series:
+    """One property of one component from one source.
+
+    Attributes
+    ----------
+    row : number of the component in the plan
+    source, citation : key people see, and key into the bibliography ("" for the reference library)
+    nodes : where it was evaluated
+    values : (N,), SI; NaN where the source has none
+    uncertainty : temperature (K) -> expanded uncertainty, %; NaN where it is not stated
+    evaluate : temperature -> (value, pressure to give or NaN) for a source with a value everywhere in its range;
+        None for tabulated values, which have no windows
+    steps : temperatures at which limit, uncertainty or reference change by a jump, and what each is
+    """
+
+    component: Component
+    row: int
+    property: str
+    source: str
+    citation: str
+    nodes: Nodes
+    values: Floats
+    uncertainty: Callable[[Floats], Floats]
+    evaluate: Callable[[Floats], tuple[Floats, Floats]] | None
+    steps: tuple[Step, ...] = ()
+    independent_of_library: bool = True
+
+
+def unknown(temperature: Floats) -> Floats:
+    """Uncertainty that is not stated."""
+    return np.full(np.shape(temperature), np.nan)
+
+
+def collect(plan: Plan, left_out: list[tuple[str, str]]) -> Iterator[Series]:
+    """Yield every series of a plan, component by component; what a source cannot give is said in `left_out`."""
+    for row, component in enumerate(plan.components):
+        if "coolprop" in plan.references_use:
+            yield from _library_series(plan, row, component, left_out)
+        if "handbook" in plan.references_use and component.cas:
+            yield from _correlation_series(plan, row, component)
+            yield from _table_series(plan, row, component)
+
+
+def _library_series(
+    plan: Plan, row: int, component: Component, left_out: list[tuple[str, str]]
+) -> Iterator[Series]:
+    limits = library.limits(component)
+    if limits is None:
+        left_out.append((component.name, "the reference library has no equation for it"))
+        return
+    ends = [(limits.from_K, "reference_limit"), (limits.to_K, "reference_limit")]
+    steps = {p: tuple([*_tolerance_steps(plan, component, p), *_uncertainty_steps(component, p), *ends])
+             for p in plan.properties}
+    grid = plan.grid.states_for(component)
+    by_pressure = plan.grid.coordinate == "pressure"
+    if by_pressure:
+        answers = library.at_pressure(component, grid, ["boiling_temperature"]).values["boiling_temperature"]
+        known = np.isfinite(answers)
+        if not known.all():
+            why = f"{int((~known).sum())} of {grid.size} pressures lie outside the reference library's range"
+            left_out.append((component.name, why))
+        grid, given = answers[known], grid[known]
+    nodes = _nodes(grid, (t for p in plan.properties for t, _ in steps[p]))
+    wanted = sorted({"saturation_pressure", *plan.properties} - {"boiling_temperature"})
+    values = dict(library.saturation(component, nodes.temperature, wanted).values)
+    values["boiling_temperature"] = np.where(np.isfinite(values["saturation_pressure"]), nodes.temperature, np.nan)
+    pressure = values["saturation_pressure"].copy()
+    if by_pressure:
+        pressure[nodes.state] = given
+    for name in plan.properties:
+        at_pressure = name == "boiling_temperature" or (by_pressure and name != "saturation_pressure")
+        placed = Nodes(nodes.temperature, pressure if at_pressure else _none(nodes), nodes.state)
+        yield Series(
+            component, row, name, library.LIBRARY, "", placed, values[name],
+            _library_uncertainty(component, name, plan.decision.coverage_factor),
+            _library_evaluator(component, name, at_pressure), steps[name], independent_of_library=False,
+        )
+
+
+def _library_uncertainty(component: Component, name: str, factor: float) -> Callable[[Floats], Floats]:
+    return lambda t: library.uncertainty_pct(component, name, t, factor)
+
+
+def _library_evaluator(
+    component: Component, name: str, at_pressure: bool
+) -> Callable[[Floats], tuple[Floats, Floats]]:
+    def evaluate(temperature: Floats) -> tuple[Floats, Floats]:
+        wanted = [p for p in BY_TEMPERATURE if p == name or (at_pressure and p == "saturation_pressure")]
+        values = library.saturation(component, temperature, wanted).values
+        pressure = values["saturation_pressure"] if at_pressure else np.full(temperature.shape, np.nan)
+        if name == "boiling_temperature":
+            return np.where(np.isfinite(pressure), temperature, np.nan), pressure
+        return values[name], pressure
+
+    return evaluate
+
+
+def _correlation_series(plan: Plan, row: int, component: Component) -> Iterator[Series]:
+    """Series of the handbook correlations, only where the plan's states lie in their range."""
+    by_pressure = plan.grid.coordinate == "pressure"
+    for name in plan.properties:
+        needs_vapor_pressure = name in {"saturation_pressure", "boiling_temperature"}
+        if by_pressure and not needs_vapor_pressure:
+            continue  # at a given pressure its temperature would have to come from another source
+        asked = "saturation_pressure" if needs_vapor_pressure else name
+        for correlation in handbook.correlations(component.cas, asked):
+            grid = plan.grid.states_for(component)
+            given = grid
+            if by_pressure:
+                grid = correlation.temperatures_at(given)
+            inside = (grid >= correlation.from_K) & (grid <= correlation.to_K)
+            if not inside.any():
+                continue
+            ends = ((correlation.from_K, "reference_limit"), (correlation.to_K, "reference_limit"))
+            steps = (*_tolerance_steps(plan, component, name), *ends)
+            nodes = _nodes(grid[np.isfinite(grid)], (t for t, _ in steps))
+            reach = (nodes.temperature >= correlation.from_K) & (nodes.temperature <= correlation.to_K)
+            values = correlation(nodes.temperature)
+            pressure = _none(nodes)
+            if name == "boiling_temperature":
+                pressure = values.copy()
+                if by_pressure:
+                    pressure[nodes.state] = given[np.isfinite(grid)]
+                values = np.where(reach, nodes.temperature, np.nan)
+            state = nodes.state[reach[nodes.state]]
+            yield Series(
+                component, row, name, correlation.source, correlation.citation,
+                Nodes(nodes.temperature, pressure, state), values, unknown,
+                _correlation_evaluator(correlation, name), steps,
+            )
+
+
+def _correlation_evaluator(
+    correlation: handbook.Correlation, name: str
+) -> Callable[[Floats], tuple[Floats, Floats]]:
+    def evaluate(temperature: Floats) -> tuple[Floats, Floats]:
+        values = correlation(temperature)
+        if name == "boiling_temperature":
+            return np.where(np.isfinite(values), temperature, np.nan), values
+        return values, np.full(temperature.shape, np.nan)
+
+    return evaluate
+
+
+def _table_series(plan: Plan, row: int, component: Component) -> Iterator[Series]:
+    """Series of tabulated values inside the plan's own range; they bring their own states."""
+    grid = plan.grid.states_for(component)
+    for name in plan.properties:
+        for table in handbook.tables(component.cas, name):
+            along = table.pressure if plan.grid.coordinate == "pressure" else table.temperature
+            inside = (along >= grid[0]) & (along <= grid[-1]) & (table.temperature < component.critical_temperature)
+            if not inside.any():
+                continue
+            pressure = table.pressure[inside] if name == "boiling_temperature" else np.full(int(inside.sum()), np.nan)
+            nodes = Nodes(table.temperature[inside], pressure, np.arange(int(inside.sum())))
+            yield Series(
+                component, row, name, table.source, table.citation, nodes, table.values[inside], unknown, None
+            )
+
+
+def _tolerance_steps(plan: Plan, component: Component, name: str) -> list[Step]:
+    at = limit_steps(plan.tolerances, component, name)
+    return [(tr * component.critical_temperature, "limit_step") for tr in at]
+
+
+def _uncertainty_steps(component: Component, name: str) -> list[Step]:
+    return [(t, "undecided") for t in library.uncertainty_borders(component, name)]
+
+
+def _nodes(grid: Floats, steps: Iterable[float]) -> Nodes:
+    """Join states and the steps between them."""
+    if grid.size == 0:
+        return Nodes(grid, grid.copy(), np.empty(0, np.intp))
+    between = np.array([t for t in steps if grid[0] <= t <= grid[-1]], float)
+    temperature = np.unique(np.concatenate([grid, between]))
+    return Nodes(temperature, np.full(temperature.shape, np.nan), np.searchsorted(temperature, grid))
+
+
+def _none(nodes: Nodes) -> Floats:
+    return np.full(nodes.temperature.shape, np.nan)
+
+
+def refuse_empty(series: list[Series]) -> None:
+    """Raise InputError if no reference has anything to say about the plan."""
+    if not series:
+        raise InputError("an empty sweep: no reference has a value for any component, property and state of this plan")
