@@ -8,6 +8,7 @@ from collections import Counter
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 from functools import cache
+from numbers import Real
 from types import MappingProxyType
 
 from eosmuster.errors import InputError, suggestion
@@ -76,7 +77,7 @@ class Component:
     --------
     >>> Component("x", critical_temperature=-5.0, critical_pressure=4e6, acentric_factor=0.1)
     Traceback (most recent call last):
-    eosmuster.errors.InputError: component 'x': critical_temperature is -5.0; valid is a finite number ...
+    eosmuster.errors.InputError: component 'x': critical_temperature is -5.0; valid is a finite number above 0 K
     """
 
     name: str
@@ -109,7 +110,7 @@ class Component:
         value = getattr(self, key)
         if value is None and optional:
             return
-        number = isinstance(value, (int, float)) and not isinstance(value, bool)
+        number = isinstance(value, Real) and not isinstance(value, bool)
         if number and math.isfinite(value) and low < value < high:
             return
         ends = f"above {low:g}" + (f" and below {high:g}" if high < math.inf else "") + (f" {unit}" if unit else "")
@@ -119,15 +120,8 @@ class Component:
 def acentric_from_saturation(saturation_pressure: float, critical_pressure: float) -> float:
     """Give the acentric factor of its definition, omega = -1 - log10(psat(0.7 Tc)/pc).
 
-    Parameters
-    ----------
-    saturation_pressure : at 0.7 Tc, Pa
-    critical_pressure : Pa
+    Both pressures in Pa, the first at 0.7 Tc. Source: K. S. Pitzer et al., J. Am. Chem. Soc. 77 (1955) 3433.
 
-    Source: K. S. Pitzer et al., J. Am. Chem. Soc. 77 (1955) 3433.
-
-    Examples
-    --------
     >>> acentric_from_saturation(0.05e6, 5e6)
     1.0
     """
@@ -141,8 +135,6 @@ def catalogue() -> Mapping[str, Component]:
     Constants come from ``references/components.csv``, written by ``references/generators/components.py``
     from the library's own records; the library is not imported.
 
-    Examples
-    --------
     >>> len(catalogue()), catalogue()["n-Propane"].critical_temperature
     (130, 369.89)
     """
@@ -153,8 +145,6 @@ def catalogue() -> Mapping[str, Component]:
 def left_out() -> Mapping[str, str]:
     """Give the library's fluids that are no pure substances, each with the reason it is left out.
 
-    Examples
-    --------
     >>> "R410A" in left_out()
     True
     """
@@ -165,8 +155,6 @@ def left_out() -> Mapping[str, str]:
 def equation_citations() -> Mapping[str, str]:
     """Give the citation of each reference equation of state, by the key the library files it under.
 
-    Examples
-    --------
     >>> print(equation_citations()[find("propane").sources["equation"]])
     E. W. Lemmon, M. O. McLinden, W. Wagner, J. Chem. Eng. Data 54 (2009) 3141, doi:10.1021/je900217v
     """
@@ -179,37 +167,29 @@ def find(name: str) -> Component:
 
     Case, spaces, hyphens and underscores do not matter in names: ``R-134a`` is ``r134a``.
 
-    Raises
-    ------
-    InputError : no such component (the nearest names are offered), or a blend (the reason is given).
+    Raises `InputError` if there is none (the nearest names are offered), or for a blend (with the reason).
 
-    Examples
-    --------
     >>> find("propane").name, find("R-290").name, find("74-98-6").name
     ('n-Propane', 'n-Propane', 'n-Propane')
-    >>> find("R410A")
+    >>> find("propanol")  # doctest: +ELLIPSIS
     Traceback (most recent call last):
-    eosmuster.errors.InputError: component 'R410A' is left out: ...
+    eosmuster.errors.InputError: component 'propanol' is unknown; nearest: ...
     """
     if not isinstance(name, str):
         raise InputError(f"component {name!r} is not a text; valid is a name, an alias or a CAS number")
     found = _index().get(_folded(name))
-    if found in left_out():
-        raise InputError(f"component {name!r} is left out: {left_out()[found]}")
     if found is None:
         raise InputError(f"component {name!r} is unknown; {_nearest(name)}")
+    if found in left_out():
+        raise InputError(f"component {name!r} is left out: {left_out()[found]}")
     return catalogue()[found]
 
 
 def family(name: str) -> tuple[Component, ...]:
     """Give the components of a chemical class, named in the singular or the plural.
 
-    Raises
-    ------
-    InputError : no such class.
+    Raises `InputError` if there is no such class.
 
-    Examples
-    --------
     >>> [c.name for c in family("noble gases")]
     ['Argon', 'Krypton', 'Xenon']
     """
@@ -222,16 +202,11 @@ def family(name: str) -> tuple[Component, ...]:
 def resolve(selection: Iterable[str]) -> tuple[Component, ...]:
     """Turn a plan's list of components into components, in the order given.
 
-    Parameters
-    ----------
-    selection : names, aliases, CAS numbers, ``family:...`` or ``all``
+    Entries are names, aliases, CAS numbers, ``family:...`` or ``all``.
 
-    Raises
-    ------
-    InputError : an unknown or left-out entry, a component that is named twice, or a text instead of a list.
+    Raises `InputError` on an unknown or left-out entry, a component that is named twice, or a text instead
+    of a list.
 
-    Examples
-    --------
     >>> [c.name for c in resolve(["water", "family:alkynes"])]
     ['Water', 'Propyne']
     >>> resolve(["propane", "R290"])
@@ -286,19 +261,14 @@ def _component(row: Mapping[str, str]) -> Component:
 
 def _sources(row: Mapping[str, str]) -> dict[str, str]:
     keys = row["source"].replace("|", ", ")
-    critical = f"critical state stored in the record of CoolProp 8 ({keys})"
-    replaced = row["acentric_note"].startswith("replaced")
-    return {
-        "critical_temperature": critical,
-        "critical_pressure": critical,
-        "critical_density": critical,
-        "acentric_factor": "-1 - log10(psat(0.7 Tc)/pc) of the equation " + keys
-        if replaced
-        else f"stored in the record of CoolProp 8 ({keys})",
-        "molar_mass": f"stored in the record of CoolProp 8 ({keys})",
-        "triple_temperature": f"stored in the record of CoolProp 8 ({keys})",
-        "equation": keys,
-    }
+    stored = f"stored in the record of CoolProp 8 ({keys})"
+    sources = dict.fromkeys(("molar_mass", "triple_temperature", "acentric_factor"), stored)
+    sources |= dict.fromkeys(
+        ("critical_temperature", "critical_pressure", "critical_density"), f"critical state {stored}"
+    )
+    if row["acentric_note"].startswith("replaced"):
+        sources["acentric_factor"] = f"-1 - log10(psat(0.7 Tc)/pc) of the equation in CoolProp 8 ({keys})"
+    return sources | {"equation": keys}
 
 
 def _folded(name: str) -> str:

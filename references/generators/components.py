@@ -1,6 +1,6 @@
 """Write references/components.csv and references/equations.csv again from the records of CoolProp 8.
 
-Usage: python references/generators/components.py   (in an environment with CoolProp)
+Usage: python references/generators/components.py   (in an environment with eosmuster)
 
 Decisions made here, each once:
 
@@ -22,7 +22,6 @@ from __future__ import annotations
 
 import csv
 import json
-import math
 import re
 import unicodedata
 from collections.abc import Iterator, Mapping
@@ -31,6 +30,8 @@ from typing import Any
 
 import CoolProp
 from CoolProp.CoolProp import QT_INPUTS, AbstractState, get_fluid_param_string, get_global_param_string
+
+from eosmuster.components import acentric_from_saturation
 
 HERE = Path(__file__).resolve().parents[1]
 
@@ -272,7 +273,7 @@ def acentric(state: Any, stored: float, critical: Mapping[str, float], triple: f
     """Give the acentric factor that is used, and what there is to say about it."""
     T = 0.7 * critical["T"]
     state.update(QT_INPUTS, 0.0, T)
-    own = -1.0 - math.log10(state.p() / critical["p"])
+    own = acentric_from_saturation(state.p(), critical["p"])
     below = "" if triple <= T else f" (extrapolated: 0.7 Tc is below the triple point, {triple:g} K)"
     if abs(own - stored) > 0.1:
         return (

@@ -1,7 +1,7 @@
 """Probability of conformance and acceptance limits against the examples of JCGM 106:2012 and ILAC-G8:09/2019.
 
 The standards were not at hand: data and stated results are recalled (the resistor's data read in a script that
-transcribes the example), and each result was recomputed independently before it was written down here. Digits
+reworks the example), and each result was recomputed independently before it was written down here. Digits
 beyond the stated ones are calculated, not published.
 """
 

@@ -290,6 +290,15 @@ def test_rows_come_in_the_order_of_traces_candidates_and_temperature():
     assert (rows[0].component, rows[0].property, rows[0].reference_source) == ("x", "liquid_density", "own")
 
 
+def test_traces_of_any_length_in_any_number_of_stacks(monkeypatch):
+    world = World(lambda t: 2 * np.sin(t / 10), lambda t: 0.02 * (t - 340.0), limit=step_at(352.0, 0.7, 1.0))
+    all_traces = [world.trace(GRID[:n], [(352.0, "limit_step")]) for n in (21, 1, 8, 21, 2, 13)]
+    together = find_windows(all_traces, world.evaluate)
+    monkeypatch.setattr("eosmuster.compare.traces.STACK_SIZE", 50)
+    assert find_windows(all_traces, world.evaluate) == together
+    assert [w for trace in all_traces for w in find_windows([trace], world.evaluate)] == together
+
+
 def test_no_traces_no_windows():
     assert find_windows([], lambda *a: pytest.fail("nothing to evaluate")) == []
 

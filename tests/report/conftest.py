@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import replace
+from pathlib import Path
 
 import numpy as np
 import pytest
@@ -162,6 +162,17 @@ def invented_record(blocks: Sequence[Block], title: str = "An invented run") -> 
     )
 
 
+@pytest.fixture(autouse=True)
+def references(tmp_path_factory: pytest.TempPathFactory, monkeypatch: pytest.MonkeyPatch) -> Path:
+    """Give the reference data a small folder of their own."""
+    folder = tmp_path_factory.mktemp("references")
+    (folder / "handbook").mkdir()
+    (folder / "handbook" / "points.csv").write_bytes(b"invented\n")
+    (folder / ".hidden").write_bytes(b"not data\n")
+    monkeypatch.setattr("eosmuster.paths.references_folder", lambda: folder)
+    return folder
+
+
 @pytest.fixture
 def block() -> Callable[..., Block]:
     return invented_block
@@ -186,15 +197,4 @@ def record() -> Record:
         for i, fluid in enumerate(("alphane", "betane", "gammol"))
         for j, (name, unit) in enumerate((("saturation_pressure", "Pa"), ("boiling_temperature", "K")))
     ]
-    return invented_record(blocks)
-
-
-@pytest.fixture
-def good_record(record: Record) -> Record:
-    """The last candidate holds everything."""
-    blocks = []
-    for each in record.blocks:
-        verdict = each.verdict.copy()
-        verdict[-1] = 0
-        blocks.append(replace(each, verdict=verdict))
     return invented_record(blocks)

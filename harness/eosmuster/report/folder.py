@@ -158,9 +158,9 @@ def _parents(target: Path) -> Iterator[None]:
 def _beside(target: Path) -> Iterator[Path]:
     """Give an empty folder beside the target; whatever happens, it is gone afterwards."""
     _recover(target)
-    part = target.with_name(f".{target.name}.{os.getpid()}.part")
-    part.mkdir()
+    part = _sibling(target, "part")
     try:
+        part.mkdir()
         yield part
     finally:
         shutil.rmtree(part, ignore_errors=True)
@@ -180,9 +180,7 @@ def _write(record: Record, part: Path, points: bool, started: datetime | None) -
 
 def _swap(part: Path, target: Path) -> None:
     """Rename `part` to `target`; a folder there steps aside and comes back if that fails."""
-    old = target.with_name(f".{target.name}.{os.getpid()}.old")
-    if old.exists():
-        raise FileExistsError(errno.EEXIST, f"{old.name} is in the way")
+    old = _sibling(target, "old")
     try:
         if target.exists():
             target.rename(old)
@@ -195,6 +193,14 @@ def _swap(part: Path, target: Path) -> None:
     finally:
         if target.exists():
             shutil.rmtree(old, ignore_errors=True)
+
+
+def _sibling(target: Path, kind: str) -> Path:
+    """Name a folder beside the target that is this process's alone; what is there already is not touched."""
+    place = target.with_name(f".{target.name}.{os.getpid()}.{kind}")
+    if place.exists():
+        raise FileExistsError(errno.EEXIST, f"{place.name} is in the way")
+    return place
 
 
 def _recover(target: Path) -> None:

@@ -117,7 +117,7 @@ def _standings(view: Overview, width: int) -> Iterator[str]:
     # a count that is nought for every candidate says less than the names it makes room for
     columns = {head: column for head, column in columns.items() if head == "held" or set(column) != {"0"}}
     taken = sum(2 + max(map(cells_of, [head, *column])) for head, column in columns.items())
-    columns["not held, worst first"] = [list_within([one_line(f) for f in s.failing], width - taken) for s in shown]
+    columns["not held, worst first"] = [list_within(s.failing, width - taken) for s in shown]
     yield plain_table(list(columns), list(zip(*columns.values(), strict=True)), width)
     if len(shown) < len(view.standings):
         yield f"{len(view.standings) - len(shown)} candidates that hold fewer fluids are left out; see summary.csv"
@@ -131,13 +131,13 @@ def _failures(record: Record, width: int) -> Iterator[str]:
         yield f"unsolved: {some(sum(group[3] for group in unsolved), 'point')}"
         for prop, candidate, note, points, fluids in unsolved[:_MOST_REASONS]:
             names = list_within(fluids, 30)
-            yield f"  {candidate} {prop}: {points} ({names}) {one_line(note)}".rstrip()
+            yield "  " + one_line(f"{candidate} {prop}: {points} ({names}) {note}")
         yield from _more(len(unsolved), "points.csv")
     unavailable = unavailable_reasons(record.summary)
     if unavailable:
         yield "unavailable, not judged:"
         for candidate, why, fluids in unavailable[:_MOST_REASONS]:
-            yield f"  {candidate}: {some(len(fluids), 'fluid')} ({list_within(fluids, 30)}) {one_line(why)}".rstrip()
+            yield "  " + one_line(f"{candidate}: {some(len(fluids), 'fluid')} ({list_within(fluids, 30)}) {why}")
         yield from _more(len(unavailable), "summary.csv")
     if record.left_out:
         yield f"left out: {list_within([what for what, _ in record.left_out], width - 30)} (why: manifest.json)"

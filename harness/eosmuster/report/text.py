@@ -20,8 +20,11 @@ def one_line(text: object) -> str:
     >>> one_line("cut\n7 \x1b[31mred")
     'cut 7 [31mred'
     """
+    text = str(text)
+    if text.isascii() and text.isprintable():
+        return " ".join(text.split())
     kept = []
-    for character in str(text):
+    for character in text:
         category = unicodedata.category(character)
         if category in ("Cc", "Zl", "Zp"):
             kept.append(" ")
@@ -59,7 +62,7 @@ def shortened(text: str, width: int) -> str:
 
 
 def list_within(names: Sequence[str], width: int) -> str:
-    """Join names with commas; what does not fit is counted.
+    """Join names with commas, each made safe by `one_line`; what does not fit is counted.
 
     Examples
     --------
@@ -67,18 +70,19 @@ def list_within(names: Sequence[str], width: int) -> str:
     ('ethane, propane +1', '')
     """
     text = ""
-    for done, name in enumerate(names):
-        longer = f"{text}, {name}" if text else name
+    for done, name in enumerate(map(one_line, names)):
         left = len(names) - done - 1
+        longer = f"{text}, {name}" if done else name
         if cells_of(longer) + (len(f" +{left}") if left else 0) > width:
-            rest = len(names) - done
-            return (
-                f"{text} +{rest}"
-                if text
-                else shortened(name, width - len(f" +{left}")) + (f" +{left}" if left else "")
-            )
+            return f"{text} +{left + 1}" if done else _first_alone(name, left, width)
         text = longer
     return text
+
+
+def _first_alone(name: str, left: int, width: int) -> str:
+    count = f" +{left}" if left else ""
+    room = width - len(count)
+    return shortened(name, room) + count if room > 1 else f"+{left + 1}"
 
 
 def some(count: int, what: str) -> str:

@@ -172,8 +172,9 @@ def unsolved_reasons(record: Record) -> list[tuple[str, str, str, int, tuple[str
     found: dict[tuple[str, str, str], dict[str, int]] = {}
     for block in record.blocks:
         candidate, state = np.nonzero(block.verdict == UNSOLVED)
-        pairs, counts = np.unique(np.stack([candidate, block.note[candidate, state]]), axis=1, return_counts=True)
-        for c, n, count in zip(*pairs.tolist(), counts.tolist(), strict=True):
+        counts = np.bincount(candidate * len(block.notes) + block.note[candidate, state])
+        for key in np.flatnonzero(counts).tolist():
+            (c, n), count = divmod(key, len(block.notes)), int(counts[key])
             fluids = found.setdefault((block.property, block.candidates[c], block.notes[n]), {})
             fluids[block.component] = fluids.get(block.component, 0) + count
     groups = [(*key, sum(fluids.values()), tuple(fluids)) for key, fluids in found.items()]

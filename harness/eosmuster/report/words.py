@@ -9,7 +9,7 @@ import numpy as np
 
 from eosmuster.quantities import PROPERTIES, UNITS, from_si
 from eosmuster.record import POINT_VERDICTS, Block, Record, SummaryRow
-from eosmuster.report.text import list_within, number, shortened, some
+from eosmuster.report.text import list_within, number, one_line, shortened, some
 from eosmuster.report.views import Overview, is_temperature
 
 _BEST = 5  # candidates named in the answer
@@ -31,7 +31,11 @@ def answer(record: Record, overview: Overview, width: int = 100) -> list[str]:
     best = [s for s in reversed(overview.standings) if s.held][:_BEST]
     if not best:
         nearest = overview.standings[-1] if overview.standings else None
-        near = f"; nearest: {nearest.candidate}, {percent(nearest.share)} of its points inside" if nearest else ""
+        near = (
+            f"; nearest: {one_line(nearest.candidate)}, {percent(nearest.share)} of its points inside"
+            if nearest
+            else ""
+        )
         return [heading, shortened(f"no candidate holds it for any of {count}{near}", width)]
     everywhere = [s.candidate for s in reversed(overview.standings) if s.held == len(overview.fluids)]
     if everywhere:
@@ -41,7 +45,11 @@ def answer(record: Record, overview: Overview, width: int = 100) -> list[str]:
         ]
     sentences = [_listed(f"holds for most of {count}", [f"{s.candidate} {s.held}" for s in best], width)]
     sentences.append(
-        _listed(f"{best[0].candidate} is inside, {temperature_unit(record)}", _where(record, overview), width)
+        _listed(
+            f"where {one_line(best[0].candidate)} is inside, {temperature_unit(record)}",
+            _where(record, overview),
+            width,
+        )
     )
     if overview.unheld:
         fluids = some(len(overview.unheld), "fluid")

@@ -69,8 +69,8 @@ class Correlation:
     property: str
     source: str
     citation: str
-    from_K: float  # noqa: N815
-    to_K: float  # noqa: N815
+    from_K: float
+    to_K: float
     form: str
     coefficients: Coefficients
     note: str = ""

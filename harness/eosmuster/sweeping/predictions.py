@@ -12,7 +12,7 @@ from eosmuster.components import Component
 from eosmuster.models.model import BoundModel, bind
 from eosmuster.models.records import ModelRecord
 from eosmuster.saturation import solver
-from eosmuster.sweep.series import Nodes, Series
+from eosmuster.sweeping.series import Nodes, Series
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.intp]
@@ -38,7 +38,9 @@ class States:
 class Predictions:
     """Predictions of all models, kept per property as arrays of shape (models, states)."""
 
-    def __init__(self, records: Sequence[ModelRecord], components: Sequence[Component], series: Sequence[Series]) -> None:
+    def __init__(
+        self, records: Sequence[ModelRecord], components: Sequence[Component], series: Sequence[Series]
+    ) -> None:
         self.bound: tuple[BoundModel, ...] = tuple(bind(record, components) for record in records)
         self.requests, temperatures, pressures = _lay_out(series)
         wanted = {s.property for s in series}
@@ -53,7 +55,9 @@ class Predictions:
         return values[name][:, stretch], status[:, stretch]
 
 
-def predict(bound: BoundModel, states: States, names: set[str], *, by_pressure: bool) -> tuple[dict[str, Floats], NDArray[np.int8]]:
+def predict(
+    bound: BoundModel, states: States, names: set[str], *, by_pressure: bool
+) -> tuple[dict[str, Floats], NDArray[np.int8]]:
     """Predict properties of one model at flat states; NaN where the status says why."""
     parameters = bound.parameters.take(states.row)
     solve = solver.at_pressure if by_pressure else solver.at_temperature

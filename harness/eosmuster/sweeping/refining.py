@@ -17,9 +17,9 @@ from eosmuster.models.model import BoundModel
 from eosmuster.plan.schema import Plan
 from eosmuster.plan.tolerances import limit_pct
 from eosmuster.record import WindowRow
-from eosmuster.sweep.judging import Judged
-from eosmuster.sweep.predictions import States, is_by_pressure, predict
-from eosmuster.sweep.series import Series
+from eosmuster.sweeping.judging import Judged
+from eosmuster.sweeping.predictions import States, is_by_pressure, predict
+from eosmuster.sweeping.series import Series
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.intp]
@@ -39,8 +39,7 @@ def _acceptance(plan: Plan, series: Series, temperature: Floats, reference: Floa
 
 def _trace(plan: Plan, judged: Judged, bound: Sequence[BoundModel]) -> Trace:
     series, block = judged.series, judged.block
-    states = block.temperature[np.isfinite(block.reference)]
-    axis = Axis.of(block.temperature if states.size == 0 else block.temperature, series.steps)
+    axis = Axis.of(block.temperature, series.steps)
     at = np.searchsorted(series.nodes.temperature, axis.temperature)
     ranges = [t for t, kind in series.steps if kind == "reference_limit"]
     outside = (axis.lookup < min(ranges, default=-np.inf)) | (axis.lookup > max(ranges, default=np.inf))
@@ -72,7 +71,7 @@ class _Evaluator:
         given = np.empty(block.shape)
         for number, index in _groups(block):
             series = self.judged[number].series
-            assert series.evaluate is not None  # noqa: S101 - only continuous series become traces
+            assert series.evaluate is not None
             t = temperature[index]
             reference[index], given[index] = series.evaluate(t)
             acceptance[index] = _acceptance(self.plan, series, t, reference[index])

@@ -13,10 +13,10 @@ from eosmuster.models.records import ModelRecord
 from eosmuster.plan.schema import Plan
 from eosmuster.record import Record, SummaryRow
 from eosmuster.sources import handbook, library
-from eosmuster.sweep.judging import Judged, judge, summarise, unavailable_row
-from eosmuster.sweep.predictions import Predictions
-from eosmuster.sweep.refining import windows
-from eosmuster.sweep.series import Series, collect, refuse_empty
+from eosmuster.sweeping.judging import Judged, judge, summarise, unavailable_row
+from eosmuster.sweeping.predictions import Predictions
+from eosmuster.sweeping.refining import windows
+from eosmuster.sweeping.series import Series, collect, refuse_empty
 
 Progress = Callable[[str, int, int], None]
 """Called with what is being done, how much of it is done, and how much there is."""

@@ -81,16 +81,16 @@ def collect(plan: Plan, left_out: list[tuple[str, str]]) -> Iterator[Series]:
             yield from _table_series(plan, row, component)
 
 
-def _library_series(
-    plan: Plan, row: int, component: Component, left_out: list[tuple[str, str]]
-) -> Iterator[Series]:
+def _library_series(plan: Plan, row: int, component: Component, left_out: list[tuple[str, str]]) -> Iterator[Series]:
     limits = library.limits(component)
     if limits is None:
         left_out.append((component.name, "the reference library has no equation for it"))
         return
     ends = [(limits.from_K, "reference_limit"), (limits.to_K, "reference_limit")]
-    steps = {p: tuple([*_tolerance_steps(plan, component, p), *_uncertainty_steps(component, p), *ends])
-             for p in plan.properties}
+    steps = {
+        p: tuple([*_tolerance_steps(plan, component, p), *_uncertainty_steps(component, p), *ends])
+        for p in plan.properties
+    }
     grid = plan.grid.states_for(component)
     by_pressure = plan.grid.coordinate == "pressure"
     if by_pressure:
@@ -111,9 +111,17 @@ def _library_series(
         at_pressure = name == "boiling_temperature" or (by_pressure and name != "saturation_pressure")
         placed = Nodes(nodes.temperature, pressure if at_pressure else _none(nodes), nodes.state)
         yield Series(
-            component, row, name, library.LIBRARY, "", placed, values[name],
+            component,
+            row,
+            name,
+            library.LIBRARY,
+            "",
+            placed,
+            values[name],
             _library_uncertainty(component, name, plan.decision.coverage_factor),
-            _library_evaluator(component, name, at_pressure), steps[name], independent_of_library=False,
+            _library_evaluator(component, name, at_pressure),
+            steps[name],
+            independent_of_library=False,
         )
 
 
@@ -164,15 +172,20 @@ def _correlation_series(plan: Plan, row: int, component: Component) -> Iterator[
                 values = np.where(reach, nodes.temperature, np.nan)
             state = nodes.state[reach[nodes.state]]
             yield Series(
-                component, row, name, correlation.source, correlation.citation,
-                Nodes(nodes.temperature, pressure, state), values, unknown,
-                _correlation_evaluator(correlation, name), steps,
+                component,
+                row,
+                name,
+                correlation.source,
+                correlation.citation,
+                Nodes(nodes.temperature, pressure, state),
+                values,
+                unknown,
+                _correlation_evaluator(correlation, name),
+                steps,
             )
 
 
-def _correlation_evaluator(
-    correlation: handbook.Correlation, name: str
-) -> Callable[[Floats], tuple[Floats, Floats]]:
+def _correlation_evaluator(correlation: handbook.Correlation, name: str) -> Callable[[Floats], tuple[Floats, Floats]]:
     def evaluate(temperature: Floats) -> tuple[Floats, Floats]:
         values = correlation(temperature)
         if name == "boiling_temperature":
@@ -223,4 +236,6 @@ def _none(nodes: Nodes) -> Floats:
 def refuse_empty(series: list[Series]) -> None:
     """Raise InputError if no reference has anything to say about the plan."""
     if not series:
-        raise InputError("an empty sweep: no reference has a value for any component, property and state of this plan")
+        raise InputError(
+            "an empty sweep: no reference has a value for any component, property and state of this plan"
+        )

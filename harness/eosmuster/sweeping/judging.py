@@ -15,9 +15,8 @@ from eosmuster.plan.schema import Plan
 from eosmuster.plan.tolerances import limit_pct
 from eosmuster.quantities import PROPERTIES
 from eosmuster.record import POINT_VERDICTS, Block, SummaryRow
-from eosmuster.saturation import solver
-from eosmuster.sweep.predictions import is_by_pressure
-from eosmuster.sweep.series import Series
+from eosmuster.sweeping.predictions import is_by_pressure
+from eosmuster.sweeping.series import Series
 
 Floats = NDArray[np.float64]
 
@@ -32,6 +31,7 @@ NOTES = (
 )
 """Notes of points, by the number that `Block.note` holds."""
 
+_NUMBERS = tuple(name for name, kind in SummaryRow.__annotations__.items() if kind == "float")
 _SIMPLE, _NO_REFERENCE = 1, 6
 _NOTE_OF_STATUS = np.array([0, 2, 3, 4, 5, 5], np.int16)  # in the order of solver.STATUSES
 _UNSOLVED, _NO_REFERENCE_VERDICT = POINT_VERDICTS.index("unsolved"), POINT_VERDICTS.index("no_reference")
@@ -118,35 +118,42 @@ def summarise(block: Block, rule: str) -> Iterator[SummaryRow]:
     """Yield one row a candidate."""
     found = deviations.statistics(block.deviation_pct, block.temperature)
     counts = verdicts.tally(block.verdict)
-    passing = verdicts.passing_limit_pct(block.deviation_pct, block.reference_uncertainty_pct, block.verdict, rule)
-    false = verdicts.false_acceptance_pct(block.probability_inside, block.verdict)
-    columns = [a.tolist() for a in (found.aad, found.bias, found.rms, found.median, found.p95, found.maximum)]
-    at, counted, passing_list, false_list = found.max_at_K.tolist(), counts.tolist(), passing.tolist(), false.tolist()
-    ends = (float(block.temperature[0]), float(block.temperature[-1]))
-    for i, candidate in enumerate(block.candidates):
-        inside, outside, undecided, unfit, unsolved, no_reference = counted[i]
+    numbers = {
+        "aad_pct": found.aad,
+        "bias_pct": found.bias,
+        "rms_pct": found.rms,
+        "median_pct": found.median,
+        "p95_pct": found.p95,
+        "max_pct": found.maximum,
+        "max_at_K": found.max_at_K,
+        "passing_limit_pct": verdicts.passing_limit_pct(
+            block.deviation_pct, block.reference_uncertainty_pct, block.verdict, rule
+        ),
+        "false_acceptance_pct": verdicts.false_acceptance_pct(block.probability_inside, block.verdict),
+    }
+    by_candidate = zip(*(values.tolist() for values in numbers.values()), strict=True)
+    for i, (candidate, row) in enumerate(zip(block.candidates, by_candidate, strict=True)):
+        inside, outside, undecided, unfit, unsolved, no_reference = counts[i].tolist()
         judged = inside + outside + undecided + unfit + unsolved
         yield SummaryRow(
-            block.component,
-            candidate,
-            block.property,
-            block.reference_source,
-            block.temperature.size,
-            *ends,
-            *(column[i] for column in columns),
-            at[i],
-            inside,
-            undecided + unfit,
-            outside,
-            unsolved,
-            no_reference,
-            inside / judged if judged else float("nan"),
-            passing_list[i],
-            false_list[i],
-            "",
-            block.independence[i],
-            verdicts.summary_verdict(counts[i]),
-            _summary_note(block, i, unsolved, unfit),
+            component=block.component,
+            candidate=candidate,
+            property=block.property,
+            reference_source=block.reference_source,
+            points=block.temperature.size,
+            from_K=float(block.temperature[0]),
+            to_K=float(block.temperature[-1]),
+            inside=inside,
+            undecided=undecided + unfit,
+            outside=outside,
+            unsolved=unsolved,
+            no_reference=no_reference,
+            share_inside=inside / judged if judged else float("nan"),
+            contested="",
+            independence=block.independence[i],
+            verdict=verdicts.summary_verdict(counts[i]),
+            note=_summary_note(block, i, unsolved, unfit),
+            **dict(zip(numbers, row, strict=True)),
         )
 
 
@@ -163,11 +170,8 @@ def _summary_note(block: Block, row: int, unsolved: int, unfit: int) -> str:
 
 def unavailable_row(component: Component, candidate: str, name: str, reason: str) -> SummaryRow:
     """Return the one row of a candidate that cannot be used for a component."""
-    nan = float("nan")
-    numbers = (0, *(nan,) * 9, 0, 0, 0, 0, 0, *(nan,) * 3)
-    return SummaryRow(component.name, candidate, name, "", *numbers, "", "", "unavailable", reason)
-
-
-def status_name(code: int) -> str:
-    """Name a solver status."""
-    return solver.STATUSES[code]
+    missing = dict.fromkeys(_NUMBERS, float("nan"))
+    none = dict.fromkeys(("points", "inside", "undecided", "outside", "unsolved", "no_reference"), 0)
+    about = {"component": component.name, "candidate": candidate, "property": name, "reference_source": ""}
+    verdict = {"contested": "", "independence": "", "verdict": "unavailable", "note": reason}
+    return SummaryRow(**about, **none, **missing, **verdict)  # type: ignore[arg-type]

@@ -1,0 +1,1 @@
+"""Readers of reference data: one module a source, one table out."""
