@@ -6,6 +6,7 @@ import json
 import math
 import pickle
 import re
+import runpy
 import subprocess
 import sys
 from collections import Counter
@@ -25,6 +26,7 @@ from eosmuster.components import (
     resolve,
 )
 from eosmuster.errors import InputError
+from eosmuster.paths import references_folder
 
 NAMES = list(catalogue())
 
@@ -101,6 +103,15 @@ def test_all_fluids_of_the_library_are_catalogued_or_left_out():
     assert set(NAMES) | set(left_out()) == listed
     assert not set(NAMES) & set(left_out())
     assert sorted(NAMES, key=str.casefold) == NAMES
+
+
+def test_the_generator_writes_the_committed_tables(tmp_path):
+    folder = references_folder()
+    generator = runpy.run_path(str(folder / "generators" / "components.py"))
+    generator["main"].__globals__["HERE"] = tmp_path
+    generator["main"]()
+    for name in ("components.csv", "equations.csv"):
+        assert (tmp_path / name).read_bytes() == (folder / name).read_bytes(), name
 
 
 def test_exactly_the_pseudo_pure_fluids_are_left_out():

@@ -100,7 +100,7 @@ def saturate(
         states.liquid_density,
         states.vapor_density,
         solver.enthalpy_of_vaporization(states),
-        states.log_slope,
+        np.asarray(states.log_slope),
         np.asarray(solver.STATUSES)[states.status],
     )
 

@@ -129,11 +129,10 @@ class Record:
     summary, windows : rows in the order of the files
     left_out : (what, why) of components or references that were not used
     decision : the decision rule in words and numbers
-    constants : component -> constant -> {"value", "unit", "source"}
+    constants : component -> constant -> {"value", "unit", "source"}; besides "cas", "class" and "notes", a list
+        of what a reader must know (a replaced constant, a spin isomer)
     citations : source key -> full reference
     display : temperature / pressure / density -> unit of what people read
-    families : component -> chemical class
-    notes : component -> what a reader must know (a replaced constant, a spin isomer)
     """
 
     plan_name: str
@@ -149,5 +148,3 @@ class Record:
     citations: Mapping[str, str] = field(default_factory=dict)
     display: Mapping[str, str] = field(default_factory=dict)
     version: int = RECORD_VERSION
-    families: Mapping[str, str] = field(default_factory=dict)
-    notes: Mapping[str, tuple[str, ...]] = field(default_factory=dict)

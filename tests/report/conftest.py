@@ -134,6 +134,16 @@ def unavailable_row(component: str, candidate: str, name: str, why: str) -> Summ
     return SummaryRow(component, candidate, name, "coolprop", *numbers, "", "independent", "unavailable", why)
 
 
+def constants_of(family: str, *notes: str) -> dict[str, object]:
+    """Give invented constants of one component, laid out as a sweep does."""
+    return {
+        "critical_temperature": {"value": 375.0, "unit": "K", "source": "invented"},
+        "molar_mass": {"value": 0.1, "unit": "kg/mol", "source": "invented"},
+        "class": family,
+        "notes": list(notes),
+    }
+
+
 def invented_record(blocks: Sequence[Block], title: str = "An invented run") -> Record:
     """Bundle blocks with everything else a record holds."""
     summary = [summary_of(block, i) for block in blocks for i in range(len(block.candidates))]
@@ -153,12 +163,10 @@ def invented_record(blocks: Sequence[Block], title: str = "An invented run") -> 
         windows=tuple(windows),
         left_out=(("Air", "a blend: two saturation pressures at one temperature"),),
         decision={"rule": "guarded", "coverage_factor": 2.0, "unfit_ratio": 1.0 / 3.0},
-        constants={first: {"critical_temperature": {"value": 375.0, "unit": "K", "source": "invented"}}},
+        constants={first: constants_of("quantum gas", "acentric factor replaced: invented")},
         models={"PR": {"source": "invented"}},
         citations={"invented": "nobody, nowhere"},
         display={"temperature": "degC", "pressure": "bar"},
-        families={first: "quantum gas"},
-        notes={first: ("acentric factor replaced: invented",)},
     )
 
 
@@ -176,6 +184,11 @@ def references(tmp_path_factory: pytest.TempPathFactory, monkeypatch: pytest.Mon
 @pytest.fixture
 def block() -> Callable[..., Block]:
     return invented_block
+
+
+@pytest.fixture
+def constants() -> Callable[..., dict[str, object]]:
+    return constants_of
 
 
 @pytest.fixture

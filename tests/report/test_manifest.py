@@ -24,7 +24,7 @@ def test_says_what_the_results_were_made_from(record):
     assert content["models"] == {"PR": {"source": "invented"}}
     assert content["citations"] == {"invented": "nobody, nowhere"}
     assert content["left_out"][0]["what"] == "Air"
-    assert content["notes"] == {"alphane": ["acentric factor replaced: invented"]}
+    assert content["constants"]["alphane"]["notes"] == ["acentric factor replaced: invented"]
     assert list(content["outputs"]) == ["points.csv", "summary.csv"]
     assert content["record_version"] == record.version
     assert content["points"] == {"rows": 216, "written": True}
@@ -58,9 +58,9 @@ def test_numbers_json_cannot_hold_are_null(record):
 
 
 def test_names_are_written_in_unicode_and_stay_data(record, nasty_names):
-    content = manifest(replace(record, notes={name: (name,) for name in nasty_names}), {})
+    content = manifest(replace(record, citations={name: name for name in nasty_names}), {})
     assert "水とアンモニア" in manifest_text(content)
-    assert json.loads(manifest_text(content))["notes"] == {name: [name] for name in nasty_names}
+    assert json.loads(manifest_text(content))["citations"] == {name: name for name in nasty_names}
 
 
 @pytest.mark.parametrize("text", ["", "{", "[1]", '{"format": "x"}', "\xff"])

@@ -72,7 +72,10 @@ def test_failures_have_a_mark_of_their_own(block, record_of):
         ({"decision": {"rule": "simple"}}, "Simple rule"),
         ({"decision": {"rule": "own", "note": "x"}}, "- Rule: own."),
         ({"decision": {}}, "- Rule: ?."),
-        ({"families": {"alphane": "associating"}}, "hydrogen bonds a cubic equation does not know: alphane."),
+        (
+            {"constants": {"alphane": {"class": "associating"}}},
+            "hydrogen bonds a cubic equation does not know: alphane.",
+        ),
         ({"left_out": ()}, "Nothing."),
         ({"display": {}}, "from, K"),
     ],
@@ -85,19 +88,18 @@ def test_temperatures_deviate_in_kelvin_and_densities_read_in_the_display_unit(b
     boiling = block("alphane", name="boiling_temperature", unit="K", states=3, seed=4)
     density = block("alphane", name="liquid_density", unit="mol/m3", states=3, seed=4)
     record = record_of([boiling, density])
-    constants = {"alphane": {"molar_mass": {"value": 0.1, "unit": "kg/mol", "source": "invented"}}}
-    text = summary_markdown(replace(record, constants=constants, display={"density": "kg/m3"}))
+    text = summary_markdown(replace(record, display={"density": "kg/m3"}))
     assert re.search(r"\| boiling_temperature \| alphane .* \| [+-][\d.]+ K \| [\d.]+ K \|", text)
     assert re.search(r"\| liquid_density \| alphane .* \| kg/m3 \| [+-][\d.]+ % \|", text)
     assert "| mol/m3 |" in summary_markdown(replace(record, display={"density": "kg/m3"}, constants={}))
 
 
-def test_names_of_users_cannot_break_a_table_or_run(block, record_of, nasty_names):
+def test_names_of_users_cannot_break_a_table_or_run(block, record_of, nasty_names, constants):
     blocks = [block(name, (name, "PR"), 3, source=name, seed=i) for i, name in enumerate(nasty_names)]
     record = replace(
         record_of(blocks, title="<script>\n# title"),
         left_out=tuple((name, name) for name in nasty_names),
-        notes={name: (name,) for name in nasty_names},
+        constants={name: constants(name, name) for name in nasty_names},
     )
     text = summary_markdown(record)
     assert_tables_are_whole(text)
@@ -107,13 +109,13 @@ def test_names_of_users_cannot_break_a_table_or_run(block, record_of, nasty_name
 
 
 def test_a_record_with_nothing_in_it(record_of):
-    record = replace(record_of([]), summary=(), windows=(), plan_title="", notes={})
+    record = replace(record_of([]), summary=(), windows=(), plan_title="", constants={})
     text = summary_markdown(record)
     assert text.startswith("# invented\n")
     assert "0 points" in text
 
 
-def test_a_huge_record_stays_below_what_ci_takes(record):
+def test_a_huge_record_stays_below_what_ci_takes(record, constants):
     names = [f"component with a very long name and a number {i:05d}" for i in range(400)]
     models = [f"model with quite a long name as well {i:03d}" for i in range(30)]
     properties = ("saturation_pressure", "liquid_density", "vapor_density", "enthalpy_of_vaporization")
@@ -129,7 +131,7 @@ def test_a_huge_record_stays_below_what_ci_takes(record):
         summary=summary,
         windows=windows,
         left_out=tuple((n * 10, n * 100) for n in names),
-        notes={n: (n * 20,) * 10 for n in names},
+        constants={n: constants(n, *[n * 20] * 10) for n in names},
     )
     text = summary_markdown(huge)
     assert len(text.encode()) < LIMIT == 2**20

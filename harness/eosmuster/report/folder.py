@@ -145,7 +145,8 @@ def _parents(target: Path) -> Iterator[None]:
     """Make missing parents; take those away again if the work inside fails."""
     missing = [p for p in target.parents if not p.exists()]
     try:
-        target.parent.mkdir(parents=True, exist_ok=True)
+        if missing:
+            target.parent.mkdir(parents=True, exist_ok=True)
         yield
     except BaseException:
         for folder in missing:

@@ -11,6 +11,7 @@ import json
 import math
 import os
 import platform
+import sys
 from collections.abc import Mapping
 from datetime import UTC, datetime
 from pathlib import Path
@@ -55,7 +56,6 @@ def manifest(
         "summary": {"rows": len(record.summary)},
         "windows": {"rows": len(record.windows)},
         "left_out": [{"what": what, "why": why} for what, why in record.left_out],
-        "notes": jsonable(record.notes),
         "constants": jsonable(record.constants),
         "models": jsonable(record.models),
         "citations": jsonable(record.citations),
@@ -141,6 +141,10 @@ def _volatile(started: datetime | None) -> dict[str, Any]:
 
 
 def _version(distribution: str) -> str:
+    """Return the version of a package: its own word if it is loaded, else what its installer wrote down."""
+    loaded = getattr(sys.modules.get(distribution), "__version__", None)
+    if loaded is not None:
+        return str(loaded)
     from importlib import metadata
 
     try:

@@ -26,7 +26,6 @@ LIMIT = 2**20
 _ROOMS = (Room(400, 32, 80), Room(100, 24, 60), Room(25, 12, 40), Room(5, 6, 30))
 _MOST_PROPERTIES = 40
 _MARKS = {"inside": "ok", "outside": "OUT", "undecided": "?", "unavailable": "n/a"}
-_WORST_POINTS = 10
 _BEST = 3  # candidates whose windows are shown
 
 
@@ -51,6 +50,7 @@ def _sections(record: Record, room: Room) -> Iterator[str]:
         yield from _answer(record, view)
     yield "**Decision rule**\n"
     yield from (f"- {escaped(line, 600)}" for line in words.decision(record.decision)[: room.rows])
+    yield from _tolerances(record, room)
     for view in views:
         yield from _coverage(view, room)
         yield from _matrix(view, room)
@@ -68,14 +68,35 @@ def _answer(record: Record, view: Overview) -> Iterator[str]:
     yield ""
 
 
+def _tolerances(record: Record, room: Room) -> Iterator[str]:
+    rows = [[escaped(text, 3 * room.text) for text in row] for row in words.tolerances(record.decision)]
+    if rows:
+        yield "\n**Tolerances**, the last that applies decides\n"
+        yield from table(["property", "limit", "where", "why"], rows, room.rows, "manifest.json", numbers_from=4)
+
+
 def _coverage(view: Overview, room: Room) -> Iterator[str]:
     yield f"\n## {escaped(view.label)}: candidates, worst first\n"
     sources = escaped(list_within(view.sources, 400) or "none")
     yield f"References: {sources}; {view.limit_text}. A fluid is *held* if every one of its points is inside.\n"
-    headers = ["candidate", "held", "undecided", "partly", "outside", "unavailable", "points inside", "unsolved"]
+    headers = [
+        "candidate",
+        "held",
+        "undecided",
+        "partly",
+        "outside",
+        "unavailable",
+        "points",
+        "points inside",
+        "unsolved",
+    ]
     rows = [_coverage_row(standing, room) for standing in view.standings]
     yield from table(
-        [*headers, "largest deviation", "in", "not held, worst first"], rows, room.rows, "summary.csv", keep_last=True
+        [*headers, "largest deviation", "in", "which are held", "not held, worst first"],
+        rows,
+        room.rows,
+        "summary.csv",
+        keep_last=True,
     )
 
 
@@ -84,10 +105,12 @@ def _coverage_row(standing: Standing, room: Room) -> list[str]:
     return [
         escaped(standing.candidate, room.text),
         *(str(len(standing.fluids[verdict])) for verdict in verdicts),
+        str(standing.points),
         words.percent(standing.share) if standing.points else "-",
         str(standing.unsolved),
         words.largest(standing.worst),
         escaped(standing.worst.component if standing.worst else "-", room.text),
+        escaped(list_within(standing.fluids["inside"], room.text)),
         escaped(list_within(standing.failing, 2 * room.text)),
     ]
 
@@ -116,14 +139,15 @@ def _mark(cell: Cell | None) -> str:
 
 def _largest_deviations(record: Record, views: Sequence[Overview], room: Room) -> Iterator[str]:
     yield "## Largest deviations\n"
-    yield "The worst point of each fluid and candidate, the largest of each property.\n"
+    yield "The worst point of each candidate over all fluids.\n"
     blocks = blocks_by_key(record)
-    rows = []
+    rows: list[list[str]] = []
     for view in views:
-        of_view = (row for row in record.summary if row.property == view.name and row.max_pct == row.max_pct)
-        for row in sorted(of_view, key=lambda row: -abs(row.max_pct))[:_WORST_POINTS]:
-            place = signed_maximum(blocks, row)
-            rows.append([*_names(row, room), *words.point(record, row, place)])
+        worst = [standing.worst for standing in view.standings if standing.worst is not None]
+        rows += [
+            [*_names(row, room), *words.point(record, row, signed_maximum(blocks, row))]
+            for row in sorted(worst, key=lambda row: -abs(row.max_pct))
+        ]
     unit = words.temperature_unit(record)
     headers = ["property", "fluid", "candidate", "reference", f"at, {unit}", "T/Tc", "predicted", "reference value"]
     headers += ["unit", "deviation", "limit", "verdict"]
@@ -225,8 +249,8 @@ def _remarks(record: Record, room: Room) -> Iterator[str]:
         yield "Nothing.\n"
     notes = [
         [escaped(component, room.text), escaped(note, 3 * room.text)]
-        for component, of_one in record.notes.items()
-        for note in of_one
+        for component, constants in record.constants.items()
+        for note in constants.get("notes", ())
     ]
     if notes:
         yield "## Notes on constants\n"

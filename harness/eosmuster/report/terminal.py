@@ -10,7 +10,7 @@ from pathlib import Path
 from eosmuster.record import Record
 from eosmuster.report import words
 from eosmuster.report.text import cells_of, list_within, number, one_line, plain_table, shortened, some
-from eosmuster.report.views import Overview, overviews, unavailable_reasons, unsolved_reasons
+from eosmuster.report.views import Overview, Standing, overviews, unavailable_reasons, unsolved_reasons
 
 _MOST_CANDIDATES = 40
 _MOST_REASONS = 5
@@ -117,10 +117,21 @@ def _standings(view: Overview, width: int) -> Iterator[str]:
     # a count that is nought for every candidate says less than the names it makes room for
     columns = {head: column for head, column in columns.items() if head == "held" or set(column) != {"0"}}
     taken = sum(2 + max(map(cells_of, [head, *column])) for head, column in columns.items())
-    columns["not held, worst first"] = [list_within(s.failing, width - taken) for s in shown]
+    columns["which fluids (not: worst first)"] = [_which(s, width - taken) for s in shown]
     yield plain_table(list(columns), list(zip(*columns.values(), strict=True)), width)
     if len(shown) < len(view.standings):
         yield f"{len(view.standings) - len(shown)} candidates that hold fewer fluids are left out; see summary.csv"
+
+
+def _which(standing: Standing, width: int) -> str:
+    """Name the fluids that are held, or those that are not, whichever are fewer."""
+    held, failing = standing.fluids["inside"], standing.failing
+    if not held:
+        return "none"
+    if not failing:
+        return "all" if not standing.fluids["unavailable"] else "all but n/a"
+    start, names = ("only", held) if len(held) <= len(failing) else ("not", failing)
+    return f"{start} {list_within(names, width - len(start) - 1)}"
 
 
 def _failures(record: Record, width: int) -> Iterator[str]:

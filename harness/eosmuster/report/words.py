@@ -13,6 +13,7 @@ from eosmuster.report.text import list_within, number, one_line, shortened, some
 from eosmuster.report.views import Overview, is_temperature
 
 _BEST = 5  # candidates named in the answer
+_FEW = 6  # fluids whose windows are named there
 
 _NEAR_CRITICAL = 0.95
 _ASSOCIATING = ("associat", "alcohol", "glycol", "water", "acid")
@@ -43,14 +44,10 @@ def answer(record: Record, overview: Overview, width: int = 100) -> list[str]:
             heading,
             _listed(f"holds for {count}" if count == "1 fluid" else f"holds for all {count}", everywhere, width),
         ]
-    sentences = [_listed(f"holds for most of {count}", [f"{s.candidate} {s.held}" for s in best], width)]
-    sentences.append(
-        _listed(
-            f"where {one_line(best[0].candidate)} is inside, {temperature_unit(record)}",
-            _where(record, overview),
-            width,
-        )
-    )
+    sentences = [_listed(f"fluids held, of {len(overview.fluids)}", [f"{s.candidate} {s.held}" for s in best], width)]
+    if len(best[0].failing) <= _FEW:
+        start = f"where {one_line(best[0].candidate)} is inside, {temperature_unit(record)}"
+        sentences.append(_listed(start, _where(record, overview), width))
     if overview.unheld:
         fluids = some(len(overview.unheld), "fluid")
         sentences.append(_listed(f"no candidate holds {fluids}", overview.unheld, width))
@@ -111,7 +108,7 @@ def counts(record: Record) -> str:
 
 
 def decision(rule: Mapping[str, Any]) -> list[str]:
-    """Say the decision rule in words, then everything else the record says about it."""
+    """Say the decision rule in words, then everything else the record says about it but the tolerances."""
     k, ratio = (number(rule.get(name, "?")) for name in ("coverage_factor", "unfit_ratio"))
     name = rule.get("rule", "?")
     words = {
@@ -121,8 +118,20 @@ def decision(rule: Mapping[str, Any]) -> list[str]:
         "Where U is not known the deviation alone decides, and the point's note says so.",
         "simple": "Simple rule (shared risk): the deviation alone decides, whatever the reference's uncertainty.",
     }
-    rest = [f"{key}: {number(v)}" for key, v in rule.items() if key not in ("rule", "coverage_factor", "unfit_ratio")]
-    return [words.get(str(name), f"Rule: {name}."), *rest]
+    told = ("rule", "coverage_factor", "unfit_ratio", "tolerances")
+    return [words.get(str(name), f"Rule: {name}."), *(f"{k}: {number(v)}" for k, v in rule.items() if k not in told)]
+
+
+def tolerances(rule: Mapping[str, Any]) -> list[tuple[str, str, str, str]]:
+    """Give the tolerances of a decision rule: property, limit, where it applies, why."""
+    rows = []
+    for tolerance in rule.get("tolerances", ()):
+        above, below = (tolerance.get(f"{end}_reduced_temperature") for end in ("above", "below"))
+        where = [tolerance.get("component", ""), tolerance.get("class", "")]
+        where += [f"T/Tc from {above:g}" if above else "", "" if below is None else f"T/Tc below {below:g}"]
+        applies = ", ".join(part for part in where if part) or "everywhere"
+        rows.append((tolerance["property"], tolerance["limit"], applies, tolerance.get("rationale", "")))
+    return rows
 
 
 def temperature_unit(record: Record) -> str:
@@ -203,7 +212,8 @@ def _families(record: Record) -> dict[str, list[str]]:
     quantum = "Quantum gases, for which alpha functions fitted to ordinary fluids are not made"
     associating = "Associating fluids, whose hydrogen bonds a cubic equation does not know"
     found: dict[str, list[str]] = {quantum: [], associating: []}
-    for component, family in record.families.items():
+    for component, constants in record.constants.items():
+        family = str(constants.get("class", ""))
         if "quantum" in family:
             found[quantum].append(component)
         elif any(word in family for word in _ASSOCIATING):

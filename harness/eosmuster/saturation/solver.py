@@ -7,7 +7,7 @@ q/q_c - 1 = (alpha - 1 + tau)/(1 - tau).
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import lru_cache
 
 import numpy as np
@@ -41,18 +41,18 @@ class Saturation:
     ----------
     temperature, pressure : K, Pa
     liquid_density, vapor_density : mol/m3, volume translation included
-    log_slope : d ln(p)/d ln(T) along the curve
-    tau : 1 - T/Tc of the model, free of cancellation
     status : index into `STATUSES`
+    tau : 1 - T/Tc of the model, free of cancellation
+    log_slope : d ln(p)/d ln(T) along the curve; None where it was not asked for
     """
 
     temperature: Floats
     pressure: Floats
     liquid_density: Floats
     vapor_density: Floats
-    log_slope: Floats
-    tau: Floats
     status: NDArray[np.int8]
+    tau: Floats
+    log_slope: Floats | None
 
 
 @dataclass(frozen=True)
@@ -103,7 +103,7 @@ def at_temperature(parameters: Parameters, temperature: ArrayLike, *, slope: boo
     ----------
     parameters : arrays of shape () for one substance, or of the temperature's own flat shape
     temperature : K, any shape for one substance, else shape (n,)
-    slope : whether `log_slope` is wanted (NaN otherwise)
+    slope : whether `log_slope` is wanted
 
     Returns
     -------
@@ -112,17 +112,18 @@ def at_temperature(parameters: Parameters, temperature: ArrayLike, *, slope: boo
     given = np.asarray(temperature, float)
     flat = given.ravel()
     prepared = prepare(parameters, flat.size)
-    result = _empty(flat.size)
-    work = tables.Workspace(min(tables.BLOCK, max(flat.size, 1)))
+    result = _empty(flat.size, slope=slope)
+    work = tables.WORKSPACE
     with np.errstate(all="ignore"):
         for piece in _blocks(flat.size):
             part = prepared.part(piece)
             tc = part.parameters.critical_temperature
-            tau = (tc - flat[piece]) / tc
-            _fill(part, tau, result, piece, work, slope=slope)
-        _classify(result, prepared, ~((flat > 0.0) & np.isfinite(flat)))
-    result.temperature[:] = flat
-    return _shaped(result, given.shape)
+            tau = result.tau[piece]
+            np.subtract(tc, flat[piece], out=tau)
+            tau /= tc
+            _fill(part, tau, result, piece, work)
+        _classify(result, prepared, flat)
+    return _shaped(replace(result, temperature=flat), given.shape)
 
 
 def at_pressure(parameters: Parameters, pressure: ArrayLike, *, slope: bool = True) -> Saturation:
@@ -133,19 +134,20 @@ def at_pressure(parameters: Parameters, pressure: ArrayLike, *, slope: bool = Tr
     given = np.asarray(pressure, float)
     flat = given.ravel()
     prepared = prepare(parameters, flat.size)
-    result = _empty(flat.size)
-    work = tables.Workspace(min(tables.BLOCK, max(flat.size, 1)))
+    result = replace(_empty(flat.size, slope=slope), temperature=np.empty(flat.size))
+    work = tables.WORKSPACE
     with np.errstate(all="ignore"):
-        guess = inverse.guess_for(prepared.parameters, flat, prepared, work)
+        invert = inverse.inverter(prepared, flat, work)
         for piece in _blocks(flat.size):
             part = prepared.part(piece)
-            tau = inverse.refine(part, flat[piece], guess(piece), work)
-            _fill(part, tau, result, piece, work, slope=slope)
-            tc = part.parameters.critical_temperature
-            result.temperature[piece] = tc - tc * result.tau[piece]
-        _classify(result, prepared, ~((flat > 0.0) & np.isfinite(flat)))
-    result.pressure[:] = flat
-    return _shaped(result, given.shape)
+            tau = result.tau[piece]
+            tau[:] = invert(part, flat[piece])
+            _fill(part, tau, result, piece, work)
+            tc, temperature = part.parameters.critical_temperature, result.temperature[piece]
+            np.multiply(tau, tc, out=temperature)
+            np.subtract(tc, temperature, out=temperature)
+        _classify(result, prepared, flat)
+    return _shaped(replace(result, pressure=flat), given.shape)
 
 
 def enthalpy_of_vaporization(states: Saturation) -> Floats:
@@ -153,6 +155,8 @@ def enthalpy_of_vaporization(states: Saturation) -> Floats:
 
     dh = T (V_V - V_L) dp/dT; a constant volume translation cancels in it.
     """
+    if states.log_slope is None:
+        raise ValueError("the states were solved without their slope")
     with np.errstate(all="ignore"):
         change = 1.0 / states.vapor_density - 1.0 / states.liquid_density
         return np.asarray(states.pressure * states.log_slope * change)
@@ -195,9 +199,7 @@ def _forms(parameters: Parameters) -> tuple[Floats, Floats]:
     return parameters.s[parameters.form], parameters.m[parameters.form]
 
 
-def _fill(
-    part: Prepared, tau: Floats, result: Saturation, piece: slice, work: tables.Workspace, *, slope: bool
-) -> None:
+def _fill(part: Prepared, tau: Floats, result: Saturation, piece: slice, work: tables.Workspace) -> None:
     """Compute one block in place."""
     p = part.parameters
     tr = 1.0 - tau
@@ -205,55 +207,60 @@ def _fill(
     ratio += tau
     ratio /= tr
     u = np.sqrt(ratio)
-    curve = part.table.evaluate(u, part.first_row, work)
+    log_pressure, liquid_curve, vapor_z, slope = part.table.evaluate(u, part.first_row, work)
     pressure, liquid, vapor = result.pressure[piece], result.liquid_density[piece], result.vapor_density[piece]
-    np.exp(curve[:, 0], out=pressure)
+    np.exp(log_pressure, out=pressure)
     pressure *= tr
     pressure *= p.critical_pressure
-    np.multiply(curve[:, 1], part.density_scale, out=liquid)
+    np.multiply(liquid_curve, part.density_scale, out=liquid)
     tr *= p.critical_temperature * GAS_CONSTANT
-    tr *= curve[:, 2]
+    tr *= vapor_z
     np.divide(pressure, tr, out=vapor)
     if p.translation is not None:
         liquid /= 1.0 - part.covolume * liquid
         vapor /= 1.0 - part.covolume * vapor
-    if slope:
+    if result.log_slope is not None:
         fall = 1.0 - p.alpha.log_slope(tau, *p.alpha_parameters)
-        result.log_slope[piece] = 1.0 - curve[:, 3] * (1.0 + ratio) * fall
-    result.tau[piece] = tau
-    fits = (u <= LARGEST_U) & (tau >= 0.0)  # False for NaN too
-    if not fits.all():
-        _mark(result, piece, fits, tau, ratio)
+        result.log_slope[piece] = 1.0 - slope * (1.0 + ratio) * fall
+    # u is NaN above Tc, unless the alpha function rises there
+    if not (u.max() <= LARGEST_U and tau.min() >= 0.0):
+        _mark(result, piece, (u <= LARGEST_U) & (tau >= 0.0), tau, ratio)
 
 
 def _mark(result: Saturation, piece: slice, fits: NDArray[np.bool_], tau: Floats, ratio: Floats) -> None:
-    """Say why states of a block are not solved, and leave no number there."""
+    """Say why states of a block are not solved."""
     status = np.where(tau < 0.0, ABOVE_CRITICAL, np.where(ratio > 0.0, TOO_COLD, NO_TWO_PHASE))
     status = np.where(np.isfinite(tau), status, INVALID)
     result.status[piece] = np.where(fits, SOLVED, status)
-    for values in (result.pressure, result.liquid_density, result.vapor_density, result.log_slope):
-        values[piece][~fits] = np.nan
 
 
-def _classify(result: Saturation, prepared: Prepared, bad: NDArray[np.bool_]) -> None:
-    """Statuses that do not depend on the curve: unusable input, and models without parameters."""
-    result.status[bad] = INVALID
+def _classify(result: Saturation, prepared: Prepared, given: Floats) -> None:
+    """Statuses that do not depend on the curve, and no number where a state is not solved."""
+    usable = bool(given.size) and given.min() > 0.0 and given.max() < np.inf  # False for NaN
+    if not usable:
+        result.status[~((given > 0.0) & np.isfinite(given))] = INVALID
     missing = np.isnan(prepared.parameters.critical_temperature)
     if missing.any():
-        result.status[np.broadcast_to(missing, bad.shape)] = UNAVAILABLE
-    wrong = result.status != SOLVED
-    if wrong.any():
+        result.status[np.broadcast_to(missing, given.shape)] = UNAVAILABLE
+    if result.status.any():
+        wrong = result.status != SOLVED
         for values in (result.pressure, result.liquid_density, result.vapor_density, result.log_slope):
-            values[wrong] = np.nan
+            if values is not None:
+                values[wrong] = np.nan
 
 
-def _empty(n: int) -> Saturation:
-    t, p, liquid, vapor, slope, tau = (np.full(n, np.nan) if i == 4 else np.empty(n) for i in range(6))
-    return Saturation(t, p, liquid, vapor, slope, tau, np.zeros(n, np.int8))
+def _empty(n: int, *, slope: bool) -> Saturation:
+    pressure, liquid, vapor, tau = (np.empty(n) for _ in range(4))
+    return Saturation(tau, pressure, liquid, vapor, np.zeros(n, np.int8), tau, np.empty(n) if slope else None)
 
 
 def _shaped(result: Saturation, shape: tuple[int, ...]) -> Saturation:
-    return Saturation(*(getattr(result, name).reshape(shape) for name in Saturation.__dataclass_fields__))
+    if result.tau.shape == shape:
+        return result
+    r = result
+    slope = None if r.log_slope is None else r.log_slope.reshape(shape)
+    t, p, liquid, vapor = (a.reshape(shape) for a in (r.temperature, r.pressure, r.liquid_density, r.vapor_density))
+    return Saturation(t, p, liquid, vapor, r.status.reshape(shape), r.tau.reshape(shape), slope)
 
 
 def _blocks(n: int) -> Iterator[slice]:
