@@ -77,7 +77,7 @@ def saturate(
     >>> r.status.tolist()
     ['solved', 'solved', 'above_critical']
     >>> [round(p) for p in r.pressure[:2].tolist()]
-    [217931, 997430]
+    [217673, 997430]
     """
     if (temperature is None) == (pressure is None):
         raise InputError(

@@ -142,6 +142,14 @@ class TestRefused:
         monkeypatch.setattr(os, "mkdir", denied)
         assert "Permission denied" in self.refused(record, tmp_path / "results")
 
+    def test_a_folder_that_cannot_be_read(self, record, tmp_path, monkeypatch):
+        def denied(path):
+            raise PermissionError(errno.EACCES, "Permission denied", str(path))
+
+        (tmp_path / "results").mkdir()
+        monkeypatch.setattr(Path, "iterdir", denied)
+        assert "cannot be read: Permission denied" in self.refused(record, tmp_path / "results")
+
     def test_checking_touches_nothing(self, tmp_path):
         assert checked(tmp_path / "a" / "b", overwrite=False) == tmp_path.resolve() / "a" / "b"
         assert list(tmp_path.iterdir()) == []

@@ -142,3 +142,19 @@ def test_a_huge_record_stays_below_what_ci_takes(record, constants):
 def test_too_many_candidates_side_by_side_are_left_out_with_a_sentence(block, record_of):
     text = summary_markdown(record_of([block("alphane", [f"m{i}" for i in range(40)], 2)]))
     assert "The 9 candidates that hold the fewest fluids are left out; all are in summary.csv." in text
+
+
+def test_tolerances_are_told_with_their_reasons(record):
+    tolerance = {
+        "property": "liquid_density",
+        "limit": "6 %",
+        "class": "associating",
+        "rationale": "invented | reason",
+    }
+    band = {"above_reduced_temperature": 0.7, "below_reduced_temperature": 0.9}
+    plain = {"property": "boiling_temperature", "limit": "0.5 K", "below_reduced_temperature": None}
+    text = summary_markdown(replace(record, decision={"rule": "simple", "tolerances": [tolerance | band, plain]}))
+    row = r"| liquid_density | 6 % | associating, T/Tc from 0.7, T/Tc below 0.9 | invented \| reason |"
+    assert row in text
+    assert "| boiling_temperature | 0.5 K | everywhere |  |" in text
+    assert_tables_are_whole(text)

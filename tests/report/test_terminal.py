@@ -31,7 +31,7 @@ def test_says_what_holds_in_the_first_lines(block, record_of):
     ]
     table = [line for line in lines if line.startswith(("vdW", "SRK", "PR"))]
     assert [line.split()[0] for line in table] == ["vdW", "SRK", "PR"]  # worst first
-    assert [line.split("  ")[-1] for line in table] == ["none", "only alphane", "all"]
+    assert [line.split("  ")[-1].strip() for line in table] == ["none", "only alphane", "all"]
     assert "unsolved: 9 points" in lines
 
 

@@ -6,6 +6,7 @@ default < property < property and range < class < class and range < component < 
 
 from __future__ import annotations
 
+import itertools
 import math
 from collections.abc import Iterable, Sequence
 from itertools import pairwise
@@ -93,6 +94,29 @@ def limit_steps(
     between = _midpoints(borders)
     limits = [_limit_of(governing_rule(mine, component, property, tr)) for tr in between]
     return tuple(b for b, lower, upper in zip(borders, limits, limits[1:], strict=False) if lower != upper)
+
+
+def rules_in_use(
+    rules: Iterable[ToleranceRule], components: Iterable[Component], properties: Iterable[str]
+) -> tuple[ToleranceRule, ...]:
+    """Return the rules that govern some state of some component and property, in the order given.
+
+    Examples
+    --------
+    >>> from eosmuster.plan.limits import DEFAULT_RULES
+    >>> c = Component("x", critical_temperature=400.0, critical_pressure=4e6, acentric_factor=0.1)
+    >>> own = ToleranceRule("liquid_density", Limit(2.0, "percent"), "property")
+    >>> [str(r.limit) for r in rules_in_use([*DEFAULT_RULES, own], [c], ["liquid_density"])]
+    ['2 %']
+    """
+    rules = tuple(rules)
+    used: set[int] = set()
+    for component, name in itertools.product(tuple(components), tuple(properties)):
+        mine = _least_specific_first(rules, component, name)
+        for tr in _midpoints(sorted({b for r in mine for b in _borders(r)})) or [0.5]:
+            governing = governing_rule(mine, component, name, tr)
+            used |= {i for i, rule in enumerate(rules) if rule is governing}
+    return tuple(rule for i, rule in enumerate(rules) if i in used)
 
 
 def _least_specific_first(rules: Iterable[ToleranceRule], component: Component, name: str) -> list[ToleranceRule]:

@@ -8,12 +8,13 @@ a number column stays a number. NUL characters are dropped.
 
 from __future__ import annotations
 
-import math
+from functools import lru_cache
 
 _FORMULA = ("=", "+", "-", "@", "\t", "\r", "\n")
 _QUOTED = ',"\r\n'
 
 
+@lru_cache(maxsize=4096)  # names come again and again
 def text_cell(text: str) -> str:
     r'''Write text as one CSV cell (RFC 4180 quoting), inert in a spreadsheet.
 
@@ -28,23 +29,6 @@ def text_cell(text: str) -> str:
     if any(character in text for character in _QUOTED):
         return '"' + text.replace('"', '""') + '"'
     return text
-
-
-def cell(value: object) -> str:
-    """Write one CSV cell: text as `text_cell`, floats as `repr`, NaN and None as nothing.
-
-    Examples
-    --------
-    >>> [cell(value) for value in (0.1, float("nan"), 3, None, "PR")]
-    ['0.1', '', '3', '', 'PR']
-    """
-    if isinstance(value, str):
-        return text_cell(value)
-    if value is None:
-        return ""
-    if isinstance(value, float):
-        return "" if math.isnan(value) else repr(float(value))
-    return str(value)
 
 
 def encoded(text: str) -> bytes:

@@ -71,7 +71,7 @@ def _answer(record: Record, view: Overview) -> Iterator[str]:
 def _tolerances(record: Record, room: Room) -> Iterator[str]:
     rows = [[escaped(text, 3 * room.text) for text in row] for row in words.tolerances(record.decision)]
     if rows:
-        yield "\n**Tolerances**, the last that applies decides\n"
+        yield "\n**Tolerances**: the most specific that applies decides, of equals the later one\n"
         yield from table(["property", "limit", "where", "why"], rows, room.rows, "manifest.json", numbers_from=4)
 
 

@@ -117,7 +117,7 @@ def _standings(view: Overview, width: int) -> Iterator[str]:
     # a count that is nought for every candidate says less than the names it makes room for
     columns = {head: column for head, column in columns.items() if head == "held" or set(column) != {"0"}}
     taken = sum(2 + max(map(cells_of, [head, *column])) for head, column in columns.items())
-    columns["which fluids (not: worst first)"] = [_which(s, width - taken) for s in shown]
+    columns["fluids held"] = [_which(s, width - taken) for s in shown]
     yield plain_table(list(columns), list(zip(*columns.values(), strict=True)), width)
     if len(shown) < len(view.standings):
         yield f"{len(view.standings) - len(shown)} candidates that hold fewer fluids are left out; see summary.csv"

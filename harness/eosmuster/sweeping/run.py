@@ -11,6 +11,7 @@ from eosmuster.models.catalogue import CATALOGUE
 from eosmuster.models.model import BoundModel
 from eosmuster.models.records import ModelRecord
 from eosmuster.plan.schema import Plan
+from eosmuster.plan.tolerances import rules_in_use
 from eosmuster.record import Record, SummaryRow
 from eosmuster.sources import handbook, library
 from eosmuster.sweeping.judging import Judged, judge, summarise, unavailable_row
@@ -104,8 +105,7 @@ def _decision(plan: Plan) -> dict[str, Any]:
                 else r.below_reduced_temperature,
                 "rationale": r.rationale,
             }
-            for r in plan.tolerances
-            if r.property in plan.properties
+            for r in rules_in_use(plan.tolerances, plan.components, plan.properties)
         ],
     }
 
