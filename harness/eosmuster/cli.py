@@ -107,8 +107,9 @@ def _width() -> int:
 
 def _show(text: str) -> None:
     """Print text, replacing what the terminal's encoding cannot show."""
-    encoding = sys.stdout.encoding or "utf-8"
-    print(text.encode(encoding, "replace").decode(encoding))
+    from eosmuster.report.text import for_encoding
+
+    print(for_encoding(text, sys.stdout.encoding or "utf-8"))
 
 
 def _sweep(options: argparse.Namespace) -> int:

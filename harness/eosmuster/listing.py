@@ -106,7 +106,8 @@ def references_text(width: int) -> str:
     rows = [[p.name, f"{library.LIBRARY} {library.version()}", fluids, "", ""] for p in PROPERTIES.values()]
     rows += [[c.property, c.source, str(c.components), str(c.rows), str(c.excluded)] for c in handbook.counts()]
     table = plain_table(["property", "source", "components", "rows", "excluded"], sorted(rows), width)
-    return f"{table}\n\nRows are correlations or tabulated values; excluded ones are kept with the evidence, and not used."
+    legend = "Rows are correlations or tabulated values; excluded ones are kept with the evidence, and not used."
+    return f"{table}\n\n{legend}"
 
 
 def properties_text(width: int) -> str:

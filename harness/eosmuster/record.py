@@ -132,6 +132,7 @@ class Record:
     constants : component -> constant -> {"value", "unit", "source"}; besides "cas", "class" and "notes", a list
         of what a reader must know (a replaced constant, a spin isomer)
     citations : source key -> full reference
+    references : the plan's references in its order: the first that knows a fluid is the one the answer is given by
     display : temperature / pressure / density -> unit of what people read
     """
 
@@ -147,4 +148,5 @@ class Record:
     models: Mapping[str, Mapping[str, Any]] = field(default_factory=dict)
     citations: Mapping[str, str] = field(default_factory=dict)
     display: Mapping[str, str] = field(default_factory=dict)
+    references: tuple[str, ...] = ()
     version: int = RECORD_VERSION

@@ -120,6 +120,20 @@ def test_steps_are_bounded_for_hostile_functions():
         assert counted.count <= 20 + np.log2(40.0 / TOLERANCE_K) + 1
 
 
+def test_bisection_alone_gets_there(monkeypatch):
+    """What is left after the interpolations halves the bracket each time."""
+    monkeypatch.setattr("eosmuster.compare.roots._INTERPOLATIONS", 0)
+    r, counted = closed_in(lambda i, t: np.expm1(301.0 - t), 300.0, 340.0, guess=np.array([320.0]))
+    assert abs(r.inside[0] - 301.0) <= TOLERANCE_K
+    assert counted.count == np.ceil(np.log2(40.0 / TOLERANCE_K))
+
+
+def test_too_few_steps_leave_a_true_bracket():
+    r, counted = closed_in(lambda i, t: np.expm1(301.0 - t), 300.0, 340.0, max_iterations=2)
+    assert counted.count == 2
+    assert r.inside[0] <= 301.0 < r.outside[0]
+
+
 def test_only_open_brackets_are_evaluated():
     seen = []
 

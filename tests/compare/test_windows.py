@@ -139,6 +139,30 @@ def test_an_excursion_beside_a_state():
         assert got[1][0] == pytest.approx(centre + 0.02, abs=1e-4)
 
 
+def test_an_excursion_that_the_parabolas_place_in_the_segment_beside():
+    def f(t):
+        x = t - 355.0086
+        return 1.0 + 1.2e-7 - (x / 16.765) ** 2 - 0.396 * (x / 40) ** 3 + 0.516 * (x / 30) ** 4
+
+    got = World(f).windows(np.arange(340.0, 371.0, 5.0))
+    assert len(got) == 2
+    half = 16.765 * np.sqrt(1.2e-7)
+    assert (got[0][1], got[1][0]) == pytest.approx((355.0086 - half, 355.0086 + half), abs=1e-5)
+
+
+def test_an_excursion_sharper_than_the_states_can_tell():
+    """The parabola through the states stays 6 % below the limit that the peak exceeds by 2 %."""
+    world = World(lambda t: 1.02 * np.exp(-(((t - 352.5) / 6.0) ** 2)))
+    half = 6.0 * np.sqrt(np.log(1.02))
+    check(world.windows(GRID), [(300.0, 352.5 - half, PLAN, LIMIT), (352.5 + half, 400.0, LIMIT, PLAN)])
+
+
+def test_touching_the_limit_from_outside_between_two_states():
+    """Both ends fall on one temperature: it is a window all the same."""
+    got = World(lambda t: 1.0 + ((t - 352.5) / 10.0) ** 2).windows(GRID)
+    check(got, [(352.5, 352.5, LIMIT, LIMIT)])
+
+
 def test_extrema_far_from_the_limit_cost_nothing():
     world = World(lambda t: 0.5 * np.sin(t / 8.0), lambda t: 5.0 + np.sin(t / 8.0))
     check(world.windows(GRID), [(300.0, 400.0, PLAN, PLAN)])

@@ -52,7 +52,7 @@ def _sections(record: Record, room: Room) -> Iterator[str]:
     yield from (f"- {escaped(line, 600)}" for line in words.decision(record.decision)[: room.rows])
     yield from _tolerances(record, room)
     for view in views:
-        yield from _coverage(view, room)
+        yield from _coverage(record, view, room)
         yield from _matrix(view, room)
     yield from _largest_deviations(record, views, room)
     yield from _not_held(record, views, room)
@@ -75,13 +75,14 @@ def _tolerances(record: Record, room: Room) -> Iterator[str]:
         yield from table(["property", "limit", "where", "why"], rows, room.rows, "manifest.json", numbers_from=4)
 
 
-def _coverage(view: Overview, room: Room) -> Iterator[str]:
+def _coverage(record: Record, view: Overview, room: Room) -> Iterator[str]:
     yield f"\n## {escaped(view.label)}: candidates, worst first\n"
     sources = escaped(list_within(view.sources, 400) or "none")
-    yield f"References: {sources}; {view.limit_text}. A fluid is *held* if every one of its points is inside.\n"
+    yield f"References: {sources}; {view.limit_text}. {words.legend(record)}.\n"
     headers = [
         "candidate",
         "held",
+        "by all",
         "undecided",
         "partly",
         "outside",
@@ -101,9 +102,11 @@ def _coverage(view: Overview, room: Room) -> Iterator[str]:
 
 
 def _coverage_row(standing: Standing, room: Room) -> list[str]:
-    verdicts = ("inside", "undecided", "partly", "outside", "unavailable")
+    verdicts = ("undecided", "partly", "outside", "unavailable")
     return [
         escaped(standing.candidate, room.text),
+        str(standing.held),
+        str(standing.held_by_all),
         *(str(len(standing.fluids[verdict])) for verdict in verdicts),
         str(standing.points),
         words.percent(standing.share) if standing.points else "-",

@@ -53,7 +53,7 @@ def terminal_summary(record: Record, folder: Path | None, width: int = 100) -> s
         lines += [heading, *(f"  {sentence}" for sentence in sentences)]
     for view in views:
         lines += ["", *_standings(view, width)]
-    lines += ["", *_failures(record, width)]
+    lines += ["", *_wrapped(words.legend(record), width), "", *_failures(record, width)]
     text = "\n".join(shortened(line, width) for line in "\n".join(lines).split("\n")).rstrip("\n")
     return text if folder is None else f"{text}\n\n{_place(folder, width)}"
 
@@ -106,9 +106,11 @@ def _values(row: SaturationRow) -> tuple[float, ...]:
 def _standings(view: Overview, width: int) -> Iterator[str]:
     yield f"{view.label}: candidates, worst first"
     shown = view.standings[-_MOST_CANDIDATES:]
-    verdicts = {"held": "inside", "undec": "undecided", "part": "partly", "out": "outside", "n/a": "unavailable"}
+    verdicts = {"undec": "undecided", "part": "partly", "out": "outside", "n/a": "unavailable"}
     columns = {
         "candidate": [shortened(one_line(s.candidate), _LONGEST_NAME) for s in shown],
+        "held": [str(s.held) for s in shown],
+        **({"by all": [str(s.held_by_all) for s in shown]} if len(view.sources) > 1 else {}),
         **{head: [str(len(s.fluids[verdict])) for s in shown] for head, verdict in verdicts.items()},
         "unsolved": [str(s.unsolved) for s in shown],
         "inside": [words.percent(s.share) if s.points else "-" for s in shown],

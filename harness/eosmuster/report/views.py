@@ -1,7 +1,7 @@
 """What the summary rows of a record say together, for every rendering of it.
 
-Nothing is predicted or judged here: verdicts and counts are those of the record, several reference
-sources of one fluid being taken together by the rule for a summary row.
+Nothing is predicted or judged here: verdicts and counts are those of the record. The answer for a fluid is given by
+the plan's first reference that knows it; what holds against every reference as well is counted beside.
 """
 
 from __future__ import annotations
@@ -21,12 +21,18 @@ UNSOLVED = POINT_VERDICTS.index("unsolved")
 
 
 class Cell(NamedTuple):
-    """One candidate for one fluid, all reference sources together."""
+    """One candidate for one fluid, by the plan's first reference that knows it.
+
+    `by_all` tells whether every point is inside against every other reference source as well; `sources` are those
+    of the first reference, which the verdict is given by.
+    """
 
     verdict: str
     points: int
     inside: int
     unsolved: int
+    by_all: bool = False
+    sources: tuple[str, ...] = ()
 
     @property
     def share(self) -> float:
@@ -43,6 +49,7 @@ class Standing:
     fluids : summary verdict -> fluids of it, worst first
     points, inside, unsolved : counts of points
     worst : the row with the largest deviation, None if there is no deviation at all
+    held_by_all : fluids for which every point is inside against every reference source
     """
 
     candidate: str
@@ -51,6 +58,7 @@ class Standing:
     inside: int
     unsolved: int
     worst: SummaryRow | None
+    held_by_all: int = 0
 
     @property
     def held(self) -> int:
@@ -122,7 +130,20 @@ def overviews(record: Record) -> tuple[Overview, ...]:
     """Sum up a record property by property, in the order of its rows."""
     blocks = _grouped(record.blocks, "property")
     rows = _grouped(record.summary, "property")
-    return tuple(_overview(name, rows.get(name, []), blocks.get(name, [])) for name in {**rows, **blocks})
+    return tuple(
+        _overview(name, rows.get(name, []), blocks.get(name, []), record.references) for name in {**rows, **blocks}
+    )
+
+
+def first_reference(rows: Sequence[SummaryRow], references: Sequence[str]) -> list[SummaryRow]:
+    """Pick the rows of the plan's first reference that has any, e.g. all handbook sources; all without such an order."""
+    for reference in references:
+        of_one = [
+            r for r in rows if r.reference_source == reference or r.reference_source.startswith(f"{reference}:")
+        ]
+        if of_one:
+            return of_one
+    return list(rows)
 
 
 def together(rows: Sequence[SummaryRow]) -> Cell:
@@ -190,17 +211,24 @@ def unavailable_reasons(rows: Iterable[SummaryRow]) -> list[tuple[str, str, tupl
     return sorted(((*key, tuple(fluids)) for key, fluids in found.items()), key=lambda group: -len(group[2]))
 
 
-def _overview(name: str, rows: Sequence[SummaryRow], blocks: Sequence[Block]) -> Overview:
+def _overview(name: str, rows: Sequence[SummaryRow], blocks: Sequence[Block], references: Sequence[str]) -> Overview:
     pairs: dict[tuple[str, str], list[SummaryRow]] = {}
     for row in rows:
         pairs.setdefault((row.component, row.candidate), []).append(row)
-    cells = {pair: together(of_pair) for pair, of_pair in pairs.items()}
+    firsts = {pair: first_reference(of_pair, references) for pair, of_pair in pairs.items()}
+    cells = {
+        pair: together(firsts[pair])._replace(
+            by_all=together(of_pair).verdict == "inside", sources=tuple(row.reference_source for row in firsts[pair])
+        )
+        for pair, of_pair in pairs.items()
+    }
+    rows_of_answer = [row for of_pair in firsts.values() for row in of_pair]
     of_fluid: dict[str, list[Cell]] = {}
     for (fluid, _), cell in cells.items():
         of_fluid.setdefault(fluid, []).append(cell)
     fluids = _by_severity(of_fluid)
     place = {fluid: i for i, fluid in enumerate(fluids)}
-    standings = [_standing(c, of_one, cells, place) for c, of_one in _grouped(rows, "candidate").items()]
+    standings = [_standing(c, of_one, cells, place) for c, of_one in _grouped(rows_of_answer, "candidate").items()]
     # stable: of equals the plan's first comes last, where the best are
     standings.reverse()
     standings.sort(key=lambda s: (s.held, s.share, -s.unsolved))
@@ -224,7 +252,8 @@ def _standing(
     fluids = {verdict: tuple(f for f in ordered if mine[f].verdict == verdict) for verdict in SUMMARY_VERDICTS}
     worst = max(rows, key=_size)
     points, inside, unsolved = (sum(getattr(c, n) for c in mine.values()) for n in ("points", "inside", "unsolved"))
-    return Standing(candidate, fluids, points, inside, unsolved, worst if _size(worst) >= 0 else None)
+    by_all = sum(cell.by_all for cell in mine.values())
+    return Standing(candidate, fluids, points, inside, unsolved, worst if _size(worst) >= 0 else None, by_all)
 
 
 def _size(row: SummaryRow) -> float:

@@ -63,12 +63,22 @@ def _where(record: Record, overview: Overview) -> list[str]:
     best = overview.standings[-1]
     windows: dict[str, list[str]] = {fluid: [] for fluid in best.failing}
     for w in record.windows:
-        if w.property == overview.name and w.candidate == best.candidate and w.component in windows:
+        if w.property != overview.name or w.candidate != best.candidate or w.component not in windows:
+            continue
+        answering = overview.cells[w.component, w.candidate].sources
+        if w.reference_source in answering:
             span = " to ".join(number(shown_temperature(record, t), 5) for t in (w.from_K, w.to_K))
-            source = f" ({w.reference_source})" if len(overview.sources) > 1 else ""
+            source = f" ({w.reference_source})" if len(answering) > 1 else ""
             windows[w.component].append(span + source)
     spans = [f"{fluid} {' and '.join(found) or 'nowhere'}" for fluid, found in windows.items()]
     return [*spans, *(f"{fluid} unavailable" for fluid in best.fluids["unavailable"])]
+
+
+def legend(record: Record) -> str:
+    """Say what it takes to be held."""
+    first, *others = record.references or ("the reference",)
+    also = f"; by all: against {', '.join(others)} as well" if others else ""
+    return f"held: every point inside, against {first}{also}"
 
 
 def percent(share: float) -> str:

@@ -15,7 +15,6 @@ from eosmuster.plan.schema import Plan
 from eosmuster.plan.tolerances import limit_pct
 from eosmuster.quantities import PROPERTIES
 from eosmuster.record import POINT_VERDICTS, Block, SummaryRow
-from eosmuster.sweeping.predictions import is_by_pressure
 from eosmuster.sweeping.series import Series
 
 Floats = NDArray[np.float64]
@@ -99,7 +98,7 @@ def judge(
         candidates=tuple(bound[i].record.name for i in rows),
         independence=tuple(independence(bound[i], component, series) for i in rows),
         temperature=temperature,
-        pressure=nodes.pressure[state] if is_by_pressure(nodes) else np.full(state.shape, np.nan),
+        pressure=nodes.pressure[state],
         reduced_temperature=reduced,
         reference=reference,
         reference_uncertainty_pct=uncertainty,

@@ -12,7 +12,7 @@ from eosmuster.components import Component
 from eosmuster.models.model import BoundModel, bind
 from eosmuster.models.records import ModelRecord
 from eosmuster.saturation import solver
-from eosmuster.sweeping.series import Nodes, Series
+from eosmuster.sweeping.series import Series
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.intp]
@@ -95,7 +95,7 @@ def _lay_out(series: Sequence[Series]) -> tuple[list[Request], States, States]:
     sizes = [0, 0]
     requests = []
     for s in series:
-        by_pressure = is_by_pressure(s.nodes)
+        by_pressure = s.nodes.by_pressure
         value = s.nodes.pressure if by_pressure else s.nodes.temperature
         key = (by_pressure, s.row, value.tobytes())
         if key not in known:
@@ -105,11 +105,6 @@ def _lay_out(series: Sequence[Series]) -> tuple[list[Request], States, States]:
             flat[by_pressure].append((s.row, value))
         requests.append(known[key])
     return requests, _joined(flat[0]), _joined(flat[1])
-
-
-def is_by_pressure(nodes: Nodes) -> bool:
-    """Whether candidates are given the pressure on these nodes."""
-    return bool(np.isfinite(nodes.pressure).any())
 
 
 def _joined(parts: list[tuple[int, Floats]]) -> States:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 from eosmuster.compare import verdicts
 from eosmuster.compare.axis import Axis
 from eosmuster.compare.deviations import deviation_pct
+from eosmuster.compare.roots import TOLERANCE_K
 from eosmuster.compare.traces import Trace
 from eosmuster.compare.windows import find_windows
 from eosmuster.models.model import BoundModel
@@ -18,7 +19,7 @@ from eosmuster.plan.schema import Plan
 from eosmuster.plan.tolerances import limit_pct
 from eosmuster.record import WindowRow
 from eosmuster.sweeping.judging import Judged
-from eosmuster.sweeping.predictions import States, is_by_pressure, predict
+from eosmuster.sweeping.predictions import States, predict
 from eosmuster.sweeping.series import Series
 
 Floats = NDArray[np.float64]
@@ -28,7 +29,21 @@ Ints = NDArray[np.intp]
 def windows(plan: Plan, judged: Sequence[Judged], bound: Sequence[BoundModel]) -> list[WindowRow]:
     """Find the windows of all blocks whose reference has a value everywhere in its range."""
     continuous = [j for j in judged if j.series.evaluate is not None and j.rows and j.block.temperature.size]
-    return find_windows([_trace(plan, j, bound) for j in continuous], _Evaluator(plan, continuous, bound))
+    found = find_windows([_trace(plan, j, bound) for j in continuous], _Evaluator(plan, continuous, bound))
+    ends = {(j.series.component.name, j.series.property, j.series.source): _range_ends(j.series) for j in continuous}
+    return [_said_by_range(w, ends[w.component, w.property, w.reference_source]) for w in found]
+
+
+def _range_ends(series: Series) -> list[float]:
+    return [t for t, kind in series.steps if kind == "reference_limit"]
+
+
+def _said_by_range(window: WindowRow, ends: Sequence[float]) -> WindowRow:
+    """Name the end of a reference's range, where a search that only sees values stop says that there are none."""
+    for t, kind in ((window.from_K, "from_end"), (window.to_K, "to_end")):
+        if getattr(window, kind) == "no_reference" and any(abs(t - end) <= TOLERANCE_K for end in ends):
+            window = replace(window, **{kind: "reference_limit"})
+    return window
 
 
 def _acceptance(plan: Plan, series: Series, temperature: Floats, reference: Floats) -> Floats:
@@ -39,10 +54,12 @@ def _acceptance(plan: Plan, series: Series, temperature: Floats, reference: Floa
 
 def _trace(plan: Plan, judged: Judged, bound: Sequence[BoundModel]) -> Trace:
     series, block = judged.series, judged.block
-    axis = Axis.of(block.temperature, series.steps)
-    at = np.searchsorted(series.nodes.temperature, axis.temperature)
-    ranges = [t for t, kind in series.steps if kind == "reference_limit"]
-    outside = (axis.lookup < min(ranges, default=-np.inf)) | (axis.lookup > max(ranges, default=np.inf))
+    nodes, ends = series.nodes.temperature, _range_ends(series)
+    # a reference that ends between two states is searched up to its end
+    states = np.unique([*block.temperature, *(t for t in ends if nodes[0] <= t <= nodes[-1])])
+    axis = Axis.of(states, series.steps)
+    at = np.searchsorted(nodes, axis.temperature)
+    outside = (axis.lookup < min(ends, default=-np.inf)) | (axis.lookup > max(ends, default=np.inf))
     reference = np.where(outside, np.nan, series.values[at])
     predicted = judged.predicted[:, at]
     return Trace(
@@ -55,7 +72,14 @@ def _trace(plan: Plan, judged: Judged, bound: Sequence[BoundModel]) -> Trace:
         _acceptance(plan, series, axis.lookup, reference),
         verdicts.unsolved_mask(predicted, reference),
         np.array([bound[i].parameters.critical_temperature[series.row] for i in judged.rows]),
+        low_end=_axis_end(states[0], block.temperature[0], nodes[0]),
+        high_end=_axis_end(states[-1], block.temperature[-1], nodes[-1]),
     )
+
+
+def _axis_end(end: float, state: float, plan_end: float) -> str:
+    """Say whether an axis ends with the plan's states, or because its reference does while the plan goes on."""
+    return "plan_limit" if end == state == plan_end else "reference_limit"
 
 
 @dataclass(frozen=True)
@@ -84,7 +108,7 @@ class _Evaluator:
         model = np.array([rows[b][r] for b, r in zip(block.tolist(), row.tolist(), strict=True)], np.intp)
         names = sorted({j.block.property for j in self.judged})
         name = np.array([names.index(j.block.property) for j in self.judged], np.intp)[block]
-        by_pressure = np.array([is_by_pressure(j.series.nodes) for j in self.judged])[block]
+        by_pressure = np.array([j.series.nodes.by_pressure for j in self.judged])[block]
         component = np.array([j.series.row for j in self.judged], np.intp)[block]
         result = np.empty(block.shape)
         for key, index in _groups((model * 2 + by_pressure) * len(names) + name):

@@ -32,7 +32,7 @@ def run(plan: Plan, progress: Progress = silent) -> Record:
 
     Raises
     ------
-    InputError : no reference has anything to say about the plan
+    NothingJudged : no reference has anything to say about the plan
     """
     left_out = list(plan.left_out)
     series = []
@@ -67,6 +67,7 @@ def run(plan: Plan, progress: Progress = silent) -> Record:
             "pressure": plan.display.pressure,
             "density": plan.display.density,
         },
+        references=plan.references_use,
     )
 
 

@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from eosmuster.components import Component
-from eosmuster.errors import InputError
+from eosmuster.errors import NothingJudged
 from eosmuster.plan.schema import Plan
 from eosmuster.plan.tolerances import limit_steps
 from eosmuster.sources import handbook, library
@@ -28,13 +28,15 @@ class Nodes:
     Attributes
     ----------
     temperature : (N,), K, strictly rising: the plan's states, and the steps of limits and ranges between them
-    pressure : (N,), Pa: what a candidate is given; NaN where it is given the temperature
+    pressure : (N,), Pa, where the states are given by pressure or candidates are; else NaN
     state : (n,), numbers of the nodes that are states of the plan
+    by_pressure : whether candidates are given the pressure (else the temperature)
     """
 
     temperature: Floats
     pressure: Floats
     state: NDArray[np.intp]
+    by_pressure: bool = False
 
 
 @dataclass(frozen=True)
@@ -88,19 +90,21 @@ def _library_series(plan: Plan, row: int, component: Component, left_out: list[t
         return
     ends = [(limits.from_K, "reference_limit"), (limits.to_K, "reference_limit")]
     steps = {
-        p: tuple([*_tolerance_steps(plan, component, p), *_uncertainty_steps(component, p), *ends])
-        for p in plan.properties
+        p: (*_tolerance_steps(plan, component, p), *_uncertainty_steps(component, p), *ends) for p in plan.properties
     }
     grid = plan.grid.states_for(component)
     by_pressure = plan.grid.coordinate == "pressure"
+    given = grid
     if by_pressure:
-        answers = library.at_pressure(component, grid, ["boiling_temperature"]).values["boiling_temperature"]
-        known = np.isfinite(answers)
+        grid = library.at_pressure(component, given, ["boiling_temperature"]).values["boiling_temperature"]
+        known = np.isfinite(grid)
         if not known.all():
             why = f"{int((~known).sum())} of {grid.size} pressures lie outside the reference library's range"
             left_out.append((component.name, why))
-        grid, given = answers[known], grid[known]
-    nodes = _nodes(grid, (t for p in plan.properties for t, _ in steps[p]))
+        if not known.any():
+            return
+        given = given[known]
+    nodes = _nodes(grid, (t for p in plan.properties for t, _ in steps[p]), (limits.from_K, limits.to_K))
     wanted = sorted({"saturation_pressure", *plan.properties} - {"boiling_temperature"})
     values = dict(library.saturation(component, nodes.temperature, wanted).values)
     values["boiling_temperature"] = np.where(np.isfinite(values["saturation_pressure"]), nodes.temperature, np.nan)
@@ -109,7 +113,8 @@ def _library_series(plan: Plan, row: int, component: Component, left_out: list[t
         pressure[nodes.state] = given
     for name in plan.properties:
         at_pressure = name == "boiling_temperature" or (by_pressure and name != "saturation_pressure")
-        placed = Nodes(nodes.temperature, pressure if at_pressure else _none(nodes), nodes.state)
+        stated = pressure if by_pressure or at_pressure else nodes.pressure
+        placed = Nodes(nodes.temperature, stated, nodes.state, at_pressure)
         yield Series(
             component,
             row,
@@ -161,14 +166,14 @@ def _correlation_series(plan: Plan, row: int, component: Component) -> Iterator[
                 continue
             ends = ((correlation.from_K, "reference_limit"), (correlation.to_K, "reference_limit"))
             steps = (*_tolerance_steps(plan, component, name), *ends)
-            nodes = _nodes(grid[np.isfinite(grid)], (t for t, _ in steps))
+            nodes = _nodes(grid, (t for t, _ in steps), (correlation.from_K, correlation.to_K))
             reach = (nodes.temperature >= correlation.from_K) & (nodes.temperature <= correlation.to_K)
             values = correlation(nodes.temperature)
-            pressure = _none(nodes)
-            if name == "boiling_temperature":
-                pressure = values.copy()
-                if by_pressure:
-                    pressure[nodes.state] = given[np.isfinite(grid)]
+            at_pressure = name == "boiling_temperature"
+            pressure = values.copy() if by_pressure or at_pressure else nodes.pressure
+            if by_pressure:
+                pressure[nodes.state] = given[np.isfinite(grid)]
+            if at_pressure:
                 values = np.where(reach, nodes.temperature, np.nan)
             state = nodes.state[reach[nodes.state]]
             yield Series(
@@ -177,7 +182,7 @@ def _correlation_series(plan: Plan, row: int, component: Component) -> Iterator[
                 name,
                 correlation.source,
                 correlation.citation,
-                Nodes(nodes.temperature, pressure, state),
+                Nodes(nodes.temperature, pressure, state, at_pressure),
                 values,
                 unknown,
                 _correlation_evaluator(correlation, name),
@@ -204,8 +209,9 @@ def _table_series(plan: Plan, row: int, component: Component) -> Iterator[Series
             inside = (along >= grid[0]) & (along <= grid[-1]) & (table.temperature < component.critical_temperature)
             if not inside.any():
                 continue
-            pressure = table.pressure[inside] if name == "boiling_temperature" else np.full(int(inside.sum()), np.nan)
-            nodes = Nodes(table.temperature[inside], pressure, np.arange(int(inside.sum())))
+            at_pressure = name == "boiling_temperature"
+            pressure = table.pressure[inside] if at_pressure else np.full(int(inside.sum()), np.nan)
+            nodes = Nodes(table.temperature[inside], pressure, np.arange(int(inside.sum())), at_pressure)
             yield Series(
                 component, row, name, table.source, table.citation, nodes, table.values[inside], unknown, None
             )
@@ -220,22 +226,21 @@ def _uncertainty_steps(component: Component, name: str) -> list[Step]:
     return [(t, "undecided") for t in library.uncertainty_borders(component, name)]
 
 
-def _nodes(grid: Floats, steps: Iterable[float]) -> Nodes:
-    """Join states and the steps between them."""
-    if grid.size == 0:
-        return Nodes(grid, grid.copy(), np.empty(0, np.intp))
-    between = np.array([t for t in steps if grid[0] <= t <= grid[-1]], float)
-    temperature = np.unique(np.concatenate([grid, between]))
-    return Nodes(temperature, np.full(temperature.shape, np.nan), np.searchsorted(temperature, grid))
+def _nodes(grid: Floats, steps: Iterable[float], reach: tuple[float, float]) -> Nodes:
+    """Join states, in rising order, and the steps between them.
 
-
-def _none(nodes: Nodes) -> Floats:
-    return np.full(nodes.temperature.shape, np.nan)
+    A state may be NaN at either end of the grid, where its pressure lies outside a reference's range (`reach`, K):
+    the plan then goes on as far as that range does.
+    """
+    known = grid[np.isfinite(grid)]
+    low, high = (end if np.isnan(state) else state for end, state in zip(reach, grid[[0, -1]], strict=True))
+    temperature = np.unique([*known, *(t for t in (*steps, *reach) if low <= t <= high)])
+    return Nodes(temperature, np.full(temperature.shape, np.nan), np.searchsorted(temperature, known))
 
 
 def refuse_empty(series: list[Series]) -> None:
-    """Raise InputError if no reference has anything to say about the plan."""
+    """Raise NothingJudged if no reference has anything to say about the plan."""
     if not series:
-        raise InputError(
-            "an empty sweep: no reference has a value for any component, property and state of this plan"
+        raise NothingJudged(
+            "nothing could be judged: no reference has a value for any component, property and state of this plan"
         )
