@@ -19,6 +19,7 @@ from eosmuster.models.model import bind, check_bound
 from eosmuster.plan import builtin
 from eosmuster.plan.reading import load_plan
 from eosmuster.plan.schema import Plan
+from eosmuster.quantities import shown
 from eosmuster.record import POINT_VERDICTS, Block, Record, SummaryRow, WindowRow
 from eosmuster.saturation import solver
 
@@ -171,7 +172,12 @@ def read_plan(plan: str | os.PathLike[str] | None) -> Plan:
         return builtin.load(builtin.DEFAULT)
     if isinstance(plan, str) and plan in builtin.names():
         return builtin.load(plan)
-    return load_plan(Path(plan))
+    path = Path(plan)
+    if len(path.parts) == 1 and not (path.suffix or path.exists()):
+        raise InputError(
+            f"{shown(str(plan))} is neither a file nor a built-in plan; {suggestion(path.name[:60], builtin.names())}"
+        )
+    return load_plan(path)
 
 
 def _points(block: Block) -> pd.DataFrame:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import argparse
 import os
+import re
 import shutil
 import sys
 import traceback
@@ -18,6 +19,9 @@ INTERRUPTED = 130
 GATE_NOT_MET = 1
 NOTHING_JUDGED = 4
 TOPICS = ("models", "components", "references", "properties", "plans")
+
+_SIGNED = ("-T", "--temperature", "-p", "--pressure")
+_NEGATIVE = re.compile(r"-[.\d]")
 
 _PHASE_RULE = (
     "give exactly one of --temperature and --pressure: by the phase rule a saturated pure substance has one "
@@ -40,7 +44,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
     given = list(sys.argv[1:] if arguments is None else arguments)
     debug = "--debug" in given
     try:
-        options = _parser().parse_args([a for a in given if a != "--debug"])
+        options = _parser().parse_args(_joined([a for a in given if a != "--debug"]))
         command: Callable[[argparse.Namespace], int] = options.command
         status = command(options)
         sys.stdout.flush()
@@ -49,13 +53,24 @@ def main(arguments: Sequence[str] | None = None) -> int:
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
         return 0
     except KeyboardInterrupt:
-        return _complain("interrupted; nothing was written and earlier results are as they were", INTERRUPTED, debug)
+        return _complain("interrupted; a results folder is written whole or not at all", INTERRUPTED, debug)
     except EosmusterError as error:
         return _complain(str(error), error.exit_status, debug)
     except Exception as error:
         what = f"internal failure: {type(error).__name__}: {error} (run again with --debug for the traceback)"
         return _complain(what, INTERNAL_FAILURE, debug)
     return status
+
+
+def _joined(arguments: Sequence[str]) -> list[str]:
+    """Join a quantity to its option: ``-40degC`` alone would be taken for an option of its own."""
+    joined: list[str] = []
+    for argument in arguments:
+        if joined and joined[-1] in _SIGNED and _NEGATIVE.match(argument):
+            option = joined.pop()
+            argument = f"{option}={argument}" if option.startswith("--") else option + argument  # noqa: PLW2901
+        joined.append(argument)
+    return joined
 
 
 def _complain(message: str, status: int, debug: bool) -> int:
@@ -125,7 +140,8 @@ def _sweep(options: argparse.Namespace) -> int:
 
     started = datetime.now(UTC)
     plan = read_plan(options.plan)
-    folder = checked(options.out or Path("eosmuster-results") / plan.name, overwrite=True)
+    named = Path("eosmuster-results") / plan.name if options.out is None else options.out
+    folder = checked(named, overwrite=True)
     with Bar(sys.stderr) as bar:
         record = run(plan, bar)
         bar("writing", 0, 1)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import textwrap
 from collections.abc import Callable, Mapping, Sequence
 from types import MappingProxyType
 
@@ -55,7 +56,7 @@ def saturation_text(
     lines = [
         f"{component.name}, saturated at {asked}",
         f"Tc {tc:.6g} K, pc {pc / 1e5:.6g} bar, omega {component.acentric_factor:.4g}",
-        *component.notes,
+        *(line for note in component.notes for line in _wrapped(note, width)),
         "",
         saturation_table(rows, headers, width),
     ]
@@ -65,7 +66,7 @@ def saturation_text(
 def _saturation_row(answer: Answer, by_pressure: bool, mass: float) -> SaturationRow:
     note = answer.note or ("" if answer.status in {"solved", "answered"} else answer.status)
     return SaturationRow(
-        answer.source,
+        answer.source.removeprefix("handbook:"),
         answer.temperature if by_pressure else answer.pressure / 1e5,
         answer.liquid_density * mass,
         answer.vapor_density * mass,
@@ -73,6 +74,10 @@ def _saturation_row(answer: Answer, by_pressure: bool, mass: float) -> Saturatio
         answer.fugacity / 1e5,
         f"unavailable: {note}" if answer.status == "unavailable" else note,
     )
+
+
+def _wrapped(text: str, width: int) -> list[str]:
+    return textwrap.wrap(text, width, subsequent_indent="    ")
 
 
 def models_text(width: int) -> str:
@@ -96,7 +101,8 @@ def components_text(width: int) -> str:
     ]
     lines = [plain_table(["component", "CAS", "class", "Tc, K", "pc, bar", "omega"], rows, width), ""]
     lines += [f"{len(rows)} pure components. Left out:"]
-    lines += [f"  {name}: {reason}" for name, reason in left_out().items()]
+    for name, reason in left_out().items():
+        lines += _wrapped(f"  {name}: {reason}", width)
     return "\n".join(lines)
 
 

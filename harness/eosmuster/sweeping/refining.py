@@ -40,10 +40,12 @@ def _range_ends(series: Series) -> list[float]:
 
 def _said_by_range(window: WindowRow, ends: Sequence[float]) -> WindowRow:
     """Name the end of a reference's range, where a search that only sees values stop says that there are none."""
-    for t, kind in ((window.from_K, "from_end"), (window.to_K, "to_end")):
-        if getattr(window, kind) == "no_reference" and any(abs(t - end) <= TOLERANCE_K for end in ends):
-            window = replace(window, **{kind: "reference_limit"})
-    return window
+
+    def named(t: float, why: str) -> str:
+        at_end = why == "no_reference" and any(abs(t - end) <= TOLERANCE_K for end in ends)
+        return "reference_limit" if at_end else why
+
+    return replace(window, from_end=named(window.from_K, window.from_end), to_end=named(window.to_K, window.to_end))
 
 
 def _acceptance(plan: Plan, series: Series, temperature: Floats, reference: Floats) -> Floats:
