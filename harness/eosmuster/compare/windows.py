@@ -7,7 +7,6 @@ brackets of all blocks are refined together, so that each round is one batch of 
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from itertools import pairwise
 
 import numpy as np
 
@@ -91,13 +90,10 @@ def _crossing_ends(brackets: Brackets, refined: Refined, traces: Sequence[Trace]
     steep = fall > 0.1 * np.abs(brackets.g[:, 1] - brackets.g[:, 2])
     at_node = [(t == brackets.t[:, i]) for t in (refined.inside, refined.outside) for i in (1, 2)]
     jump = np.flatnonzero(steep & ~np.any(at_node, axis=0))
-    limits = [
-        evaluate(brackets.block[jump], brackets.row[jump], t[jump])[1]
-        for t in (refined.inside, refined.outside)
-        if jump.size
-    ]
-    for inside, outside in pairwise(limits):
-        end[jump[inside - outside > 0.5 * fall[jump]]] = END["undecided"]
+    if jump.size:
+        at = (brackets.block[jump], brackets.row[jump])
+        limits = [evaluate(*at, t[jump])[1] for t in (refined.inside, refined.outside)]
+        end[jump[limits[0] - limits[1] > 0.5 * fall[jump]]] = END["undecided"]
     return end
 
 

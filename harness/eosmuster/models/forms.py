@@ -122,6 +122,7 @@ FORMS: Mapping[str, Form] = MappingProxyType(
                 "Peng-Robinson",
                 peng_robinson_shape,
                 "Peng and Robinson, Ind. Eng. Chem. Fundam. 15 (1976) 59",
+                one_for_all=True,
             ),
             Form("Patel-Teja", patel_teja_shape, "Patel and Teja, Chem. Eng. Sci. 37 (1982) 463"),
             Form("Schmidt-Wenzel", schmidt_wenzel_shape, "Schmidt and Wenzel, Chem. Eng. Sci. 35 (1980) 1503"),

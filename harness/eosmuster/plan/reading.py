@@ -17,7 +17,7 @@ from eosmuster.plan.states import read_states
 from eosmuster.plan.tables import Table
 from eosmuster.quantities import PROPERTIES
 
-MOST_POINTS = 2_000_000
+MOST_POINTS = 20_000_000
 """Components x models x properties x states of one plan."""
 
 _KEYS = (

@@ -16,7 +16,7 @@ _BEST = 5  # candidates named in the answer
 _FEW = 6  # fluids whose windows are named there
 
 _NEAR_CRITICAL = 0.95
-_ASSOCIATING = ("associat", "alcohol", "glycol", "water", "acid")
+_QUANTUM, _ASSOCIATING = "quantum gas", "associating"  # chemical classes that need a caution
 
 
 def answer(record: Record, overview: Overview, width: int = 100) -> list[str]:
@@ -224,8 +224,8 @@ def _families(record: Record) -> dict[str, list[str]]:
     found: dict[str, list[str]] = {quantum: [], associating: []}
     for component, constants in record.constants.items():
         family = str(constants.get("class", ""))
-        if "quantum" in family:
+        if family == _QUANTUM:
             found[quantum].append(component)
-        elif any(word in family for word in _ASSOCIATING):
+        elif family == _ASSOCIATING:
             found[associating].append(component)
     return found

@@ -24,6 +24,7 @@ Inverter = Callable[["Prepared", Floats], Floats]
 """Called with the parameters and pressures of one block; gives tau, negative above the critical pressure."""
 
 _MOST_STEPS = 40
+_TOP = LARGEST_U * (1.0 - 1e-12)  # the end itself is the first row of the next curve
 _KNOTS_A_UNIT = 768  # of ln(p/pc)
 _MOST_KNOTS = 24_576
 _MANY = 100_000  # states of one substance from which the table of its curve pays
@@ -87,7 +88,7 @@ def _residual(part: Prepared, theta: Floats, target: Floats, work: tables.Worksp
     p = part.parameters
     tau = theta / (1.0 + theta)
     ratio = (p.alpha.excess(tau, *p.alpha_parameters) + tau) * (1.0 + theta)
-    u = np.minimum(np.sqrt(ratio), LARGEST_U)
+    u = np.minimum(np.sqrt(ratio), _TOP)
     log_pressure, _, _, curve_slope = part.table.evaluate(u, part.first_row, work)
     fall = 1.0 - p.alpha.log_slope(tau, *p.alpha_parameters)
     slope = (curve_slope * (1.0 + ratio) * fall - 1.0) / (1.0 + theta)
