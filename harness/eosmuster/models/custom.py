@@ -32,7 +32,8 @@ def record_from_plan(table: Mapping[str, object], where: str) -> ModelRecord:
     Parameters
     ----------
     table : keys of `KEYS`; ``form`` is a published name or ``{delta1 = .., delta2 = ..}``; each parameter is a
-        number, the coefficients of a polynomial in the acentric factor (constant first), or a table component = number;
+        number, the coefficients of a polynomial in the acentric factor (constant first), or a table of numbers by
+        component;
         ``translation`` is ``{volume = {component = "5 cm3/mol"}}``, ``{fraction_of_covolume = {component = 0.05}}``
         or ``{rackett = [k, z0]}``, the constants of c = k (R Tc/pc)(z0 - z_RA)
     where : file and table, for messages

@@ -8,19 +8,16 @@ Hermite table of their own curve and need one step.
 from __future__ import annotations
 
 from collections.abc import Callable
-from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
 
 from eosmuster.saturation import tables
 from eosmuster.saturation.nodes import LARGEST_U
-
-if TYPE_CHECKING:
-    from eosmuster.saturation.solver import Prepared
+from eosmuster.saturation.prepared import Prepared
 
 Floats = NDArray[np.float64]
-Inverter = Callable[["Prepared", Floats], Floats]
+Inverter = Callable[[Prepared, Floats], Floats]
 """Called with the parameters and pressures of one block; gives tau, negative above the critical pressure."""
 
 _MOST_STEPS = 40

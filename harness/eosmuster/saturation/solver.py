@@ -8,7 +8,6 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass, replace
-from functools import lru_cache
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -18,6 +17,7 @@ from eosmuster.models.model import Parameters
 from eosmuster.quantities import GAS_CONSTANT
 from eosmuster.saturation import inverse, tables
 from eosmuster.saturation.nodes import LARGEST_U
+from eosmuster.saturation.prepared import Prepared, prepare
 from eosmuster.saturation.reduced import mean_attraction
 
 Floats = NDArray[np.float64]
@@ -29,8 +29,6 @@ above_critical : T > Tc or p > pc of the model; no_two_phase : the alpha functio
 too_cold : q/q_c beyond the tables (18.6); invalid : not a positive finite number; unavailable : no parameters.
 """
 SOLVED, ABOVE_CRITICAL, NO_TWO_PHASE, TOO_COLD, INVALID, UNAVAILABLE = range(6)
-
-_MANY = 50_000  # states a curve from which finer tables pay for their building
 
 
 @dataclass(frozen=True)
@@ -53,47 +51,6 @@ class Saturation:
     status: NDArray[np.int8]
     tau: Floats
     log_slope: Floats | None
-
-
-@dataclass(frozen=True)
-class Prepared:
-    """Parameters with their curves: what every block of states needs."""
-
-    parameters: Parameters
-    table: tables.Table
-    first_row: NDArray[np.intp] | int
-    density_scale: Floats  # 1/b, mol/m3
-    covolume: Floats  # c, m3/mol; 0 without translation
-
-    def part(self, piece: slice) -> Prepared:
-        """Give the parameters of one block of states."""
-        p = self.parameters
-        if p.critical_temperature.ndim == 0:
-            return self
-        first = self.first_row if isinstance(self.first_row, int) else self.first_row[piece]
-        return Prepared(p.take(piece), self.table, first, self.density_scale[piece], self.covolume[piece])
-
-
-def prepare(parameters: Parameters, count: int) -> Prepared:
-    """Find or build the curves of `parameters` for about `count` states."""
-    s, m = parameters.s, parameters.m
-    table = tables.shipped_table(float(s[0]), float(m[0])) if s.size == 1 else None
-    if table is None:
-        resolution = tables.FINE if count > _MANY * s.size else tables.COARSE
-        table = _built_table(s.tobytes(), m.tobytes(), resolution)
-    first: NDArray[np.intp] | int = 0 if s.size == 1 else parameters.form * table.resolution.intervals
-    omega_b = critical_point(s, m).omega_b[parameters.form]
-    molar = GAS_CONSTANT * parameters.critical_temperature / parameters.critical_pressure
-    shift = np.zeros_like(molar) if parameters.translation is None else parameters.translation * molar
-    return Prepared(parameters, table, first, np.asarray(1.0 / (omega_b * molar)), np.asarray(shift))
-
-
-@lru_cache(maxsize=32)
-def _built_table(s: bytes, m: bytes, resolution: tables.Resolution) -> tables.Table:
-    """Curves made on demand; forms that do not exist stand as Peng-Robinson's and are never asked for."""
-    s_all, m_all = np.frombuffer(s), np.frombuffer(m)
-    exists = np.isfinite(s_all) & np.isfinite(m_all)
-    return tables.build_for(np.where(exists, s_all, 2.0), np.where(exists, m_all, -1.0), resolution)
 
 
 def at_temperature(parameters: Parameters, temperature: ArrayLike, *, slope: bool = True) -> Saturation:
