@@ -40,7 +40,7 @@ class SaturatedStates:
     enthalpy_of_vaporization : J/mol
     log_slope : d ln(p)/d ln(T)
     status : ``solved``, ``above_critical``, ``no_two_phase``, ``too_cold`` or ``invalid``; numbers are NaN
-        wherever it is not ``solved``
+        wherever it is not ``solved``, except for the coordinate that was given
     """
 
     temperature: Floats
@@ -93,24 +93,26 @@ def saturate(
     parameters = bound.parameters.take(0)
     if pressure is None:
         states = solver.at_temperature(parameters, _numbers(temperature, "temperature"))
+        kelvin = states.temperature
     else:
         states = solver.at_pressure(parameters, _numbers(pressure, "pressure"))
+        kelvin = np.where(states.status == solver.SOLVED, states.temperature, np.nan)
     return SaturatedStates(
-        states.temperature,
+        kelvin,
         states.pressure,
         states.liquid_density,
         states.vapor_density,
         solver.enthalpy_of_vaporization(states),
         np.asarray(states.log_slope),
-        np.asarray(solver.STATUSES)[states.status],
+        np.asarray(np.asarray(solver.STATUSES)[states.status]),
     )
 
 
 def _numbers(values: ArrayLike | None, what: str) -> Floats:
     try:
-        return np.asarray(values, float)
+        return np.array(values, float)  # a copy: the result holds it, whatever becomes of the caller's array
     except (TypeError, ValueError):
-        raise InputError(f"{what} = {values!r} is not a number or an array of numbers (SI)") from None
+        raise InputError(f"{what} = {shown(values)} is not a number or an array of numbers (SI)") from None
 
 
 class Results:
@@ -209,7 +211,7 @@ def _points(block: Block) -> pd.DataFrame:
         "limit_pct": states(block.limit_pct),
         "probability_inside": block.probability_inside.ravel(),
         "verdict": np.asarray(POINT_VERDICTS, object)[block.verdict.ravel()],
-        "contested": "",
+        "contested": block.contested,
         "independence": candidates(block.independence),
         "note": np.asarray(block.notes, object)[block.note.ravel()],
     }

@@ -113,7 +113,7 @@ def references_text(width: int) -> str:
     rows += [[c.property, c.source, str(c.components), str(c.rows), str(c.excluded)] for c in handbook.counts()]
     table = plain_table(["property", "source", "components", "rows", "excluded"], sorted(rows), width)
     legend = "Rows are correlations or tabulated values; excluded ones are kept with the evidence, and not used."
-    return f"{table}\n\n{legend}"
+    return "\n".join([table, "", *_wrapped(legend, width)])
 
 
 def properties_text(width: int) -> str:

@@ -48,6 +48,8 @@ class Block:
     verdict : index into `POINT_VERDICTS`
     note : index into `notes`; 0 is the empty note
     independence : one of independent / constants / fitted for each candidate
+    contested : ``yes`` or ``no``: whether the references of this component and property disagree; "" where there is
+        only one, so that nothing can be said
     """
 
     component: str
@@ -70,6 +72,7 @@ class Block:
     verdict: NDArray[np.int8]
     note: NDArray[np.int16]
     notes: tuple[str, ...]
+    contested: str = ""
 
 
 @dataclass(frozen=True)
@@ -132,6 +135,7 @@ class Record:
     constants : component -> constant -> {"value", "unit", "source"}; besides "cas", "class" and "notes", a list
         of what a reader must know (a replaced constant, a spin isomer)
     citations : source key -> full reference
+    conflicts : (component, property, sentence) of references that disagree, and who stands alone
     references : the plan's references in its order: the first that knows a fluid is the one the answer is given by
     display : temperature / pressure / density -> unit of what people read
     """
@@ -149,4 +153,5 @@ class Record:
     citations: Mapping[str, str] = field(default_factory=dict)
     display: Mapping[str, str] = field(default_factory=dict)
     references: tuple[str, ...] = ()
+    conflicts: tuple[tuple[str, str, str], ...] = ()
     version: int = RECORD_VERSION

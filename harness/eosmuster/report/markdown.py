@@ -250,6 +250,13 @@ def _remarks(record: Record, room: Room) -> Iterator[str]:
         yield from table(["what", "why"], left_out, room.rows, "manifest.json", numbers_from=2)
     else:
         yield "Nothing.\n"
+    if record.conflicts:
+        yield "## Contested references\n"
+        yield "References that disagree by more than they may; verdicts are given against each of them.\n"
+        conflicts = [[escaped(text, 6 * room.text) for text in conflict] for conflict in record.conflicts]
+        yield from table(
+            ["component", "property", "who stands alone"], conflicts, room.rows, "manifest.json", numbers_from=3
+        )
     notes = [
         [escaped(component, room.text), escaped(note, 3 * room.text)]
         for component, constants in record.constants.items()

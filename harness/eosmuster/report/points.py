@@ -58,7 +58,6 @@ def write_points(record: Record, file: BinaryIO) -> None:
     -----
     UTF-8 with a header line. Floats are written as `repr` writes them, so they read back to the same
     bits; a number that is not known is an empty cell. Text is quoted and made inert as in `text_cell`.
-    ``contested`` is empty: not assessed in this version.
     """
     file.write(",".join(COLUMNS).encode() + b"\n")
     for block in record.blocks:
@@ -141,7 +140,7 @@ def _tails(block: Block) -> tuple[Padded, NDArray[np.intp]]:
     used = np.flatnonzero(present)
     place = np.cumsum(present) - 1
     lines = [
-        b"," + _line(POINT_VERDICTS[v], "", kinds[i], block.notes[n]) + b"\n"
+        b"," + _line(POINT_VERDICTS[v], block.contested, kinds[i], block.notes[n]) + b"\n"
         for i, v, n in zip(*(a.tolist() for a in np.unravel_index(used, shape)), strict=True)
     ]
     return _padded(lines), place[keys]

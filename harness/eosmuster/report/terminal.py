@@ -152,6 +152,10 @@ def _failures(record: Record, width: int) -> Iterator[str]:
         for candidate, why, fluids in unavailable[:_MOST_REASONS]:
             yield "  " + one_line(f"{candidate}: {some(len(fluids), 'fluid')} ({list_within(fluids, 30)}) {why}")
         yield from _more(len(unavailable), "summary.csv")
+    if record.conflicts:
+        contested = list(dict.fromkeys(component for component, _, _ in record.conflicts))
+        start = f"contested references, {some(len(contested), 'fluid')} (who stands alone: summary.md): "
+        yield start + list_within([one_line(f) for f in contested], width - len(start))
     if record.left_out:
         yield f"left out: {list_within([what for what, _ in record.left_out], width - 30)} (why: manifest.json)"
 

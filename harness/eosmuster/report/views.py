@@ -136,7 +136,7 @@ def overviews(record: Record) -> tuple[Overview, ...]:
 
 
 def first_reference(rows: Sequence[SummaryRow], references: Sequence[str]) -> list[SummaryRow]:
-    """Pick the rows of the plan's first reference that has any (all handbook sources are one); all if none is named."""
+    """Pick the rows of the plan's first reference that has any (handbook sources are one); all if none is named."""
     for reference in references:
         of_one = [
             r for r in rows if r.reference_source == reference or r.reference_source.startswith(f"{reference}:")

@@ -62,7 +62,12 @@ def independence(bound: BoundModel, component: Component, series: Series) -> str
 
 
 def judge(
-    plan: Plan, series: Series, bound: Sequence[BoundModel], predicted: Floats, status: NDArray[np.int8]
+    plan: Plan,
+    series: Series,
+    bound: Sequence[BoundModel],
+    predicted: Floats,
+    status: NDArray[np.int8],
+    contested: str = "",
 ) -> Judged:
     """Judge all available models against one series; `predicted` and `status` have shape (models, N)."""
     component, nodes, state = series.component, series.nodes, series.nodes.state
@@ -109,6 +114,7 @@ def judge(
         verdict=judgement.verdict,
         note=note,
         notes=NOTES,
+        contested=contested,
     )
     return Judged(series, block, rows, mine)
 
@@ -148,7 +154,7 @@ def summarise(block: Block, rule: str) -> Iterator[SummaryRow]:
             unsolved=unsolved,
             no_reference=no_reference,
             share_inside=inside / judged if judged else float("nan"),
-            contested="",
+            contested=block.contested,
             independence=block.independence[i],
             verdict=verdicts.summary_verdict(counts[i]),
             note=_summary_note(block, i, unsolved, unfit),

@@ -40,6 +40,8 @@ def _range_ends(series: Series) -> list[float]:
 
 def _said_by_range(window: WindowRow, ends: Sequence[float]) -> WindowRow:
     """Name the end of a reference's range, where a search that only sees values stop says that there are none."""
+    if "no_reference" not in (window.from_end, window.to_end):
+        return window
 
     def named(t: float, why: str) -> str:
         at_end = why == "no_reference" and any(abs(t - end) <= TOLERANCE_K for end in ends)
@@ -48,10 +50,21 @@ def _said_by_range(window: WindowRow, ends: Sequence[float]) -> WindowRow:
     return replace(window, from_end=named(window.from_K, window.from_end), to_end=named(window.to_K, window.to_end))
 
 
-def _acceptance(plan: Plan, series: Series, temperature: Floats, reference: Floats) -> Floats:
+def _acceptance(plan: Plan, series: Series, temperature: Floats, reference: Floats, uncertainty: Floats) -> Floats:
     reduced = temperature / series.component.critical_temperature
     limit = limit_pct(plan.tolerances, series.component, series.property, temperature, reduced, reference)
-    return verdicts.acceptance_pct(limit, series.uncertainty(temperature), plan.decision.rule)
+    return verdicts.acceptance_pct(limit, uncertainty, plan.decision.rule)
+
+
+def _uncertainty(judged: Judged, temperature: Floats) -> Floats:
+    """Uncertainty at temperatures; what judging has asked for is not asked for again (boiling costs two states)."""
+    known, values = judged.block.temperature, judged.block.reference_uncertainty_pct
+    at = np.minimum(np.searchsorted(known, temperature), known.size - 1)
+    new = known[at] != temperature
+    found = values[at]
+    if new.any():
+        found[new] = judged.series.uncertainty(temperature[new])
+    return found
 
 
 def _trace(plan: Plan, judged: Judged, bound: Sequence[BoundModel]) -> Trace:
@@ -71,7 +84,7 @@ def _trace(plan: Plan, judged: Judged, bound: Sequence[BoundModel]) -> Trace:
         block.candidates,
         axis,
         deviation_pct(predicted, reference),
-        _acceptance(plan, series, axis.lookup, reference),
+        _acceptance(plan, series, axis.lookup, reference, _uncertainty(judged, axis.lookup)),
         verdicts.unsolved_mask(predicted, reference),
         np.array([bound[i].parameters.critical_temperature[series.row] for i in judged.rows]),
         low_end=_axis_end(states[0], block.temperature[0], nodes[0]),
@@ -100,7 +113,7 @@ class _Evaluator:
             assert series.evaluate is not None
             t = temperature[index]
             reference[index], given[index] = series.evaluate(t)
-            acceptance[index] = _acceptance(self.plan, series, t, reference[index])
+            acceptance[index] = _acceptance(self.plan, series, t, reference[index], series.uncertainty(t))
         predicted = self._predicted(block, row, temperature, given)
         return deviation_pct(predicted, reference), acceptance
 

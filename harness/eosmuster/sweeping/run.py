@@ -18,6 +18,7 @@ from eosmuster.sweeping.judging import Judged, judge, summarise, unavailable_row
 from eosmuster.sweeping.predictions import Predictions
 from eosmuster.sweeping.refining import windows
 from eosmuster.sweeping.series import Series, collect, refuse_empty
+from eosmuster.sweeping.watching import watch
 
 Progress = Callable[[str, int, int], None]
 """Called with what is being done, how much of it is done, and how much there is."""
@@ -44,8 +45,10 @@ def run(plan: Plan, progress: Progress = silent) -> Record:
     progress("models", 0, 1)
     predictions = Predictions(records, plan.components, series)
     judged = []
+    watched = watch(series)
     for i, one in enumerate(series):
-        judged.append(judge(plan, one, predictions.bound, *predictions.of(i, one.property)))
+        contested = watched.contested[one.row, one.property]
+        judged.append(judge(plan, one, predictions.bound, *predictions.of(i, one.property), contested))
         progress("verdicts", i + 1, len(series))
     progress("windows", 0, 1)
     found_windows = windows(plan, judged, predictions.bound)
@@ -68,6 +71,7 @@ def run(plan: Plan, progress: Progress = silent) -> Record:
             "density": plan.display.density,
         },
         references=plan.references_use,
+        conflicts=tuple((c.component, c.quantity, c.sentence) for c in watched.conflicts),
     )
 
 

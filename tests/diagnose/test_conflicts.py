@@ -1,0 +1,121 @@
+"""Which reference stands alone: constructed sources whose answer is known, and fluids that must not be contested."""
+
+import numpy as np
+import pytest
+
+from eosmuster.components import find
+from eosmuster.diagnose.conflicts import Source, find_conflict
+from eosmuster.plan.reading import parse_plan
+from eosmuster.sources import handbook, library
+from eosmuster.sweeping.series import collect
+from eosmuster.sweeping.watching import watch
+
+T = np.linspace(200.0, 300.0, 21)
+NONE = np.full(T.size, np.nan)
+
+
+def continuous(name: str, factor: float, low: float = 0.0, high: float = 1e3, u: float = np.nan) -> Source:
+    def value(t: np.ndarray) -> np.ndarray:
+        return np.where((t >= low) & (t <= high), factor * t, np.nan)
+
+    return Source(name, T, value(T), np.full(T.size, u), value)
+
+
+def tabulated(name: str, factor: float, at: list[float]) -> Source:
+    t = np.array(at)
+    return Source(name, t, factor * t, np.full(t.size, np.nan))
+
+
+def test_agreement_is_no_conflict() -> None:
+    assert find_conflict("x", "liquid_density", [continuous("a", 1.0), continuous("b", 1.005)]) is None
+
+
+def test_one_against_two_stands_alone() -> None:
+    found = find_conflict(
+        "x", "liquid_density", [continuous("a", 1.0), continuous("b", 1.04), continuous("c", 1.001)]
+    )
+    assert found is not None
+    assert found.alone == ("b",)
+    assert found.others == ("a", "c")
+    assert found.size_pct == pytest.approx(100 * (1.04 / 1.0005 - 1), abs=0.06)
+    assert (found.from_K, found.to_K) == (200.0, 300.0)
+
+
+def test_the_sign_is_that_of_the_lonely_one_wherever_it_stands() -> None:
+    for order in ([0, 1, 2], [2, 0, 1], [1, 2, 0]):
+        sources = [continuous("low", 0.95), continuous("a", 1.0), continuous("b", 1.0)]
+        found = find_conflict("x", "liquid_density", [sources[i] for i in order])
+        assert found is not None
+        assert found.alone == ("low",)
+        assert found.size_pct == pytest.approx(-5.0)
+
+
+def test_two_sources_cannot_tell_who_is_right() -> None:
+    found = find_conflict("x", "liquid_density", [continuous("a", 1.0), continuous("b", 1.03)])
+    assert found is not None
+    assert found.alone == ()
+    assert "no majority" in found.sentence
+
+
+def test_a_stated_uncertainty_excuses_a_disagreement() -> None:
+    assert find_conflict("x", "liquid_density", [continuous("a", 1.0), continuous("b", 1.03, u=4.0)]) is None
+
+
+def test_a_table_is_compared_at_its_own_temperatures() -> None:
+    table = tabulated("table", 1.05, [210.0, 233.0, 288.0])
+    found = find_conflict("x", "liquid_density", [continuous("a", 1.0), continuous("b", 1.0), table])
+    assert found is not None
+    assert found.alone == ("table",)
+    assert (found.from_K, found.to_K) == (210.0, 288.0)
+
+
+def test_sources_without_common_states_say_nothing() -> None:
+    apart = [continuous("a", 1.0, high=240.0), continuous("b", 1.5, low=260.0)]
+    assert find_conflict("x", "liquid_density", apart) is None
+
+
+def test_one_gross_value_convicts_nobody() -> None:
+    t = np.array([210.0, 230.0, 250.0, 270.0, 290.0])
+    values = t.copy()
+    values[2] *= 100.0
+    table = Source("table", t, values, np.full(5, np.nan))
+    assert find_conflict("x", "liquid_density", [continuous("a", 1.0), table]) is None
+
+
+def test_both_sides_of_an_even_split_are_named() -> None:
+    sources = [continuous("a", 1.0), continuous("b", 1.001), continuous("c", 1.05), continuous("d", 1.051)]
+    found = find_conflict("x", "liquid_density", sources)
+    assert found is not None
+    assert found.alone == ()
+
+
+def test_cyclopropane_tables_stand_apart_from_the_rest() -> None:
+    """McGarry (1983) and the VDI Heat Atlas share the same 4 % (our own count over the transcribed tables)."""
+    component = find("cyclopropane")
+    at = np.linspace(200.0, 380.0, 30)
+    sources = [
+        Source(c.source, at, c(at), np.full(at.size, np.nan), c)
+        for c in handbook.correlations(component.cas, "saturation_pressure", include_excluded=True)
+    ]
+    values = library.saturation(component, at, ["saturation_pressure"]).values["saturation_pressure"]
+    sources.append(Source("coolprop", at, values, np.full(at.size, np.nan), lambda _: values))
+    found = find_conflict(component.name, "saturation_pressure", sources)
+    assert found is not None
+    assert set(found.alone) == {"handbook:wagner-mcgarry-1983", "handbook:wagner-vdi-2010"}
+    assert "coolprop" in found.others
+
+
+@pytest.mark.parametrize("name", ["propane", "argon", "R134a"])
+def test_sound_fluids_are_not_contested(name: str) -> None:
+    text = f"""
+title = "x"
+components = ["{name}"]
+models = ["PR"]
+properties = ["saturation_pressure", "liquid_density"]
+[states]
+reduced_temperature = {{ points = 21 }}
+"""
+    series = list(collect(parse_plan(text, "x", "x"), []))
+    watched = watch(series)
+    assert watched.conflicts == ()
+    assert set(watched.contested.values()) == {"no"}
