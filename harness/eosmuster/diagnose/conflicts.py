@@ -122,23 +122,28 @@ def find_conflict(
     }
     if not any(pair.disagree for pair in pairs.values()):
         return None
-    groups = _agreeing(len(sources), pairs)
-    largest = max(groups, key=len)
-    decided = sum(len(g) == len(largest) for g in groups) == 1
-    against = [
-        k for k in range(len(sources)) if k not in largest and any(_disagree(pairs, k, other) for other in largest)
-    ]
-    if decided and against:
-        return _conflict(component, name, sources, pairs, (against, largest), alone=True)
+    apart, rest = _sides(len(sources), pairs)
+    if apart and rest:
+        return _conflict(component, name, sources, pairs, (apart, rest), alone=True)
     worst = max(
         (key for key in pairs if pairs[key].disagree), key=lambda k: float(np.median(np.abs(pairs[k].deviation)))
     )
     return _conflict(component, name, sources, pairs, ([worst[0]], [worst[1]]), alone=False)
 
 
-def _disagree(pairs: Mapping[tuple[int, int], _Pair], one: int, other: int) -> bool:
-    pair = pairs.get((min(one, other), max(one, other)))
-    return pair is not None and pair.disagree
+def _sides(count: int, pairs: Mapping[tuple[int, int], _Pair]) -> tuple[list[int], list[int]]:
+    """Part the sources into those that contradict more others than they agree with, and the rest.
+
+    Nobody is convicted (the first list is empty) where the rest contradict each other as well.
+    """
+    balance = [0] * count
+    for (i, j), pair in pairs.items():
+        for k in (i, j):
+            balance[k] += 1 if pair.disagree else -1
+    apart = [k for k in range(count) if balance[k] > 0]
+    rest = [k for k in range(count) if balance[k] <= 0 and any(k in key for key in pairs)]
+    quarrel = any(pair.disagree and i in rest and j in rest for (i, j), pair in pairs.items())
+    return ([], rest) if quarrel else (apart, rest)
 
 
 def _conflict(
@@ -205,13 +210,3 @@ def _combined(one: Source, other: Source) -> float:
     """Combine the expanded uncertainties, in %, of what is known of them."""
     known = [u[np.isfinite(u)] for u in (one.uncertainty_pct, other.uncertainty_pct)]
     return float(np.sqrt(sum(float(np.median(u)) ** 2 for u in known if u.size)))
-
-
-def _agreeing(count: int, pairs: Mapping[tuple[int, int], _Pair]) -> list[list[int]]:
-    """Group the sources: two that agree are in one group, and so are all that agree with either."""
-    group = list(range(count))
-    for (i, j), pair in pairs.items():
-        if not pair.disagree:
-            old, new = group[j], group[i]
-            group = [new if g == old else g for g in group]
-    return [[k for k in range(count) if group[k] == g] for g in dict.fromkeys(group)]
