@@ -1,4 +1,4 @@
-"""Make ``own_components.csv`` again: ``python tests/truth/generate_own_components.py`` (needs mpmath, no package code).
+"""Make ``own_components.csv`` again: ``python tests/truth/generate_own_components.py`` (mpmath, no package code).
 
 Peng-Robinson (1976) and Soave-Redlich-Kwong (1972) for five components whose constants are INVENTED: they are
 no real substances, and cover acentric factors from -0.1 to 0.9.

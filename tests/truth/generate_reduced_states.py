@@ -41,7 +41,7 @@ def drawn() -> Iterator[tuple[str, float]]:
 
 def rows() -> Iterator[str]:
     """Yield the lines of the file."""
-    yield f"# Random saturated states in reduced variables, {PRINTED} digits. Own calculation by {Path(__file__).name}."
+    yield f"# Random saturated states of reduced forms, {PRINTED} digits. Own calculation by {Path(__file__).name}."
     yield ",".join(COLUMNS)
     for form, reduced_temperature in drawn():
         values = state(form, reduced_temperature)

@@ -9,6 +9,7 @@ the two spinodals, does the rest. Nothing is rearranged against cancellation: th
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cache
 
 import mpmath as mp
 
@@ -40,7 +41,11 @@ class State:
 
 def critical(s: mp.mpf, m: mp.mpf) -> Critical:
     """Solve dp/dv = d2p/dv2 = 0: with q eliminated, P P' = (v - 1)(P'**2 - P), P = v**2 + s v + m."""
+    return _critical(mp.mpf(s), mp.mpf(m), mp.mp.prec)
 
+
+@cache
+def _critical(s: mp.mpf, m: mp.mpf, _precision: int) -> Critical:
     def condition(v: mp.mpf) -> mp.mpf:
         big, slope = v * v + s * v + m, 2 * v + s
         return big * slope - (v - 1) * (slope**2 - big)
@@ -83,7 +88,12 @@ def outer_volumes(p: mp.mpf, q: mp.mpf, s: mp.mpf, m: mp.mpf) -> tuple[mp.mpf, m
 
 
 def saturated(q: mp.mpf, s: mp.mpf, m: mp.mpf) -> State:
-    """Solve equal pressure and equal Gibbs energy at q > q_c to about 60 digits."""
+    """Solve equal pressure and equal Gibbs energy at q > q_c, to 40 digits at 70 working digits and more above."""
+    return _saturated(mp.mpf(q), mp.mpf(s), mp.mpf(m), mp.mp.prec)
+
+
+@cache
+def _saturated(q: mp.mpf, s: mp.mpf, m: mp.mpf, _precision: int) -> State:
     low, high = _spinodal_pressures(q, s, m)
     low = max(low, mp.mpf(0))
     p = (low + high) / 2

@@ -123,7 +123,7 @@ def find_conflict(
     if not any(pair.disagree for pair in pairs.values()):
         return None
     apart, rest = _sides(len(sources), pairs)
-    if apart and rest:
+    if 0 < len(apart) < len(rest):
         return _conflict(component, name, sources, pairs, (apart, rest), alone=True)
     worst = max(
         (key for key in pairs if pairs[key].disagree), key=lambda k: float(np.median(np.abs(pairs[k].deviation)))
