@@ -21,6 +21,7 @@ STATUS_NOTES = {
     "no_two_phase": "the model has no two phases here",
     "too_cold": "colder than the model's tabulated curve",
     "invalid": "no value could be computed",
+    "no_volume": "the volume translation takes off more than the volume",
 }
 
 

@@ -20,7 +20,7 @@ from eosmuster.models.records import (
     VolumeTranslation,
     polynomial,
 )
-from eosmuster.quantities import to_si
+from eosmuster.quantities import shown, to_si
 
 KEYS = ("name", "form", "alpha", "parameters", "translation", "source", "note")
 TRANSLATIONS = ("volume", "fraction_of_covolume", "rackett")
@@ -75,14 +75,18 @@ def record_from_plan(table: Mapping[str, object], where: str) -> ModelRecord:
 def _text(table: Mapping[str, object], key: str, where: str) -> str:
     value = table.get(key)
     if not isinstance(value, str) or not value.strip():
-        raise InputError(f"{where}: {key} = {value!r} must be a text that is not empty")
+        raise InputError(f"{where}: {key} = {shown(value)} must be a text that is not empty")
     return value.strip()
 
 
 def _number(value: object, where: str) -> float:
-    if isinstance(value, bool) or not isinstance(value, (int, float)) or not math.isfinite(value):
-        raise InputError(f"{where} = {value!r} is not a finite number")
-    return float(value)
+    try:
+        number = float(value) if isinstance(value, (int, float)) and not isinstance(value, bool) else math.nan
+    except OverflowError:
+        number = math.inf
+    if not math.isfinite(number):
+        raise InputError(f"{where} = {shown(value)} is not a finite number")
+    return number
 
 
 def _form(value: object, where: str) -> Form:
@@ -92,17 +96,19 @@ def _form(value: object, where: str) -> Form:
         return FORMS[value]
     if not isinstance(value, Mapping) or set(value) != {"delta1", "delta2"}:
         raise InputError(
-            f"{where}: form = {value!r} must be one of {', '.join(FORMS)} or {{delta1 = .., delta2 = ..}}"
+            f"{where}: form = {shown(value)} must be one of {', '.join(FORMS)} or {{delta1 = .., delta2 = ..}}"
         )
     delta1, delta2 = (_number(value[key], f"{where}: form.{key}") for key in ("delta1", "delta2"))
     if min(delta1, delta2) <= -1.0:
-        raise InputError(f"{where}: form = {value!r} must have delta1 and delta2 above -1, or p diverges above b")
+        raise InputError(
+            f"{where}: form = {shown(value)} must have delta1 and delta2 above -1, or p diverges above b"
+        )
     return Form("own", constant_shape(delta1, delta2), "the user's own", one_for_all=True)
 
 
 def _parameters(value: object, names: tuple[str, ...], where: str) -> Mapping[str, Parameter]:
     if not isinstance(value, Mapping):
-        raise InputError(f"{where}: parameters = {value!r} must be a table of {', '.join(names) or 'nothing'}")
+        raise InputError(f"{where}: parameters = {shown(value)} must be a table of {', '.join(names) or 'nothing'}")
     for key in value:
         if key not in names:
             raise InputError(f"{where}: unknown parameter {key!r}; {suggestion(str(key), names)}")
@@ -126,14 +132,14 @@ def _translation(value: object, where: str) -> Translation | None:
     if value is None:
         return None
     if not isinstance(value, Mapping) or len(value) != 1 or next(iter(value)) not in TRANSLATIONS:
-        raise InputError(f"{where}: translation = {value!r} must hold exactly one of {', '.join(TRANSLATIONS)}")
+        raise InputError(f"{where}: translation = {shown(value)} must hold exactly one of {', '.join(TRANSLATIONS)}")
     (kind, given), where = next(iter(value.items())), f"{where}: translation"
     if kind == "rackett":
         if not isinstance(given, list) or len(given) != 2:
-            raise InputError(f"{where}.rackett = {given!r} must be [k, z0] of c = k (R Tc/pc)(z0 - z_RA)")
+            raise InputError(f"{where}.rackett = {shown(given)} must be [k, z0] of c = k (R Tc/pc)(z0 - z_RA)")
         return CriticalTranslation(_number(given[0], f"{where}.rackett"), _number(given[1], f"{where}.rackett"))
     if not isinstance(given, Mapping):
-        raise InputError(f"{where}.{kind} = {given!r} must be a table of component = value")
+        raise InputError(f"{where}.{kind} = {shown(given)} must be a table of component = value")
     if kind == "volume":
         volumes = {str(c): to_si(v, "molar_volume", f"{where}.volume.{c}") for c, v in given.items()}
         return VolumeTranslation(PerComponent(MappingProxyType(volumes)))

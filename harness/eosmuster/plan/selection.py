@@ -7,7 +7,9 @@ from collections.abc import Iterable
 from eosmuster import components as catalogue
 from eosmuster.components import Component
 from eosmuster.errors import InputError, suggestion
+from eosmuster.models.records import ModelRecord
 from eosmuster.plan.own import refuse_taken
+from eosmuster.plan.schema import Plan
 from eosmuster.plan.tables import Finder, Table
 from eosmuster.quantities import shown
 
@@ -131,3 +133,11 @@ def select_models(plan: Table, own: tuple[str, ...]) -> tuple[str, ...]:
     if not chosen:
         raise InputError(f'{where}: an empty sweep: no model; name some, or write models = "all"')
     return tuple(dict.fromkeys((*chosen, *own)))
+
+
+def model_records(plan: Plan) -> tuple[ModelRecord, ...]:
+    """Return the records of a plan's models, its own among them, in its order."""
+    from eosmuster.models.catalogue import CATALOGUE
+
+    own = {record.name: record for record in plan.own_models}
+    return tuple(own[name] if name in own else CATALOGUE[name] for name in plan.models)

@@ -28,7 +28,7 @@ NODES_A_PANEL = 22
 """Chebyshev nodes on each side of the first panel and on each later one: 1e-14 and better (see the tests)."""
 
 LARGEST_U = EDGES[-1]
-"""u = 4.2 is q/q_c = 18.64; the coldest triple point among the catalogued fluids and models reaches about 11."""
+"""u = 4.2 is q/q_c = 18.64; the coldest triple point of catalogued fluids and models reaches 14.3."""
 
 
 def node_positions() -> Floats:

@@ -22,13 +22,17 @@ from eosmuster.saturation.reduced import mean_attraction
 
 Floats = NDArray[np.float64]
 
-STATUSES = ("solved", "above_critical", "no_two_phase", "too_cold", "invalid", "unavailable")
+STATUSES = ("solved", "above_critical", "no_two_phase", "too_cold", "invalid", "unavailable", "no_volume")
 """Outcome of an element: `Saturation.status` holds the index into this tuple.
 
 above_critical : T > Tc or p > pc of the model; no_two_phase : the alpha function leaves no two phases below Tc;
-too_cold : q/q_c beyond the tables (18.6); invalid : not a positive finite number; unavailable : no parameters.
+too_cold : q/q_c beyond the tables (18.6); invalid : not a positive finite number; unavailable : no parameters;
+no_volume : the translation takes more off than the volume of a phase.
 """
-SOLVED, ABOVE_CRITICAL, NO_TWO_PHASE, TOO_COLD, INVALID, UNAVAILABLE = range(6)
+SOLVED, ABOVE_CRITICAL, NO_TWO_PHASE, TOO_COLD, INVALID, UNAVAILABLE, NO_VOLUME = range(7)
+
+_SAME_PRESSURE = 1e-9
+"""A state found for a given pressure has to have it: this much more than rounding is no solution."""
 
 
 @dataclass(frozen=True)
@@ -103,7 +107,12 @@ def at_pressure(parameters: Parameters, pressure: ArrayLike, *, slope: bool = Tr
             tc, temperature = part.parameters.critical_temperature, result.temperature[piece]
             np.multiply(tau, tc, out=temperature)
             np.subtract(tc, temperature, out=temperature)
+            missed = ~(np.abs(result.pressure[piece] - flat[piece]) <= _SAME_PRESSURE * flat[piece])
+            if missed.any():
+                status = result.status[piece]
+                status[missed & (status == SOLVED)] = NO_TWO_PHASE
         _classify(result, prepared, flat)
+        result.temperature[result.status != SOLVED] = np.nan
     return _shaped(replace(result, pressure=flat), given.shape)
 
 
@@ -176,19 +185,21 @@ def _fill(part: Prepared, tau: Floats, result: Saturation, piece: slice, work: t
     if p.translation is not None:
         liquid /= 1.0 - part.covolume * liquid
         vapor /= 1.0 - part.covolume * vapor
+        if min(liquid.min(), vapor.min()) < 0.0:
+            result.status[piece][np.minimum(liquid, vapor) < 0.0] = NO_VOLUME
     if result.log_slope is not None:
         fall = 1.0 - p.alpha.log_slope(tau, *p.alpha_parameters)
         result.log_slope[piece] = 1.0 - slope * (1.0 + ratio) * fall
     # u is NaN above Tc, unless the alpha function rises there
-    if not (u.max() <= LARGEST_U and tau.min() >= 0.0):
-        _mark(result, piece, (u <= LARGEST_U) & (tau >= 0.0), tau, ratio)
+    if not (u.max() < LARGEST_U and tau.min() >= 0.0):
+        _mark(result, piece, (u < LARGEST_U) & (tau >= 0.0), tau, ratio)
 
 
 def _mark(result: Saturation, piece: slice, fits: NDArray[np.bool_], tau: Floats, ratio: Floats) -> None:
     """Say why states of a block are not solved."""
     status = np.where(tau < 0.0, ABOVE_CRITICAL, np.where(ratio > 0.0, TOO_COLD, NO_TWO_PHASE))
     status = np.where(np.isfinite(tau), status, INVALID)
-    result.status[piece] = np.where(fits, SOLVED, status)
+    result.status[piece] = np.where(fits, result.status[piece], status)
 
 
 def _classify(result: Saturation, prepared: Prepared, given: Floats) -> None:

@@ -42,7 +42,7 @@ class Resolution:
 
 FINE = Resolution(4, 768)  # 120 kB a curve: for the shipped curves and for long arrays of one curve
 COARSE = Resolution(5, 192)  # 36 kB a curve, quick to build: for many curves with few states each
-WIDE = Resolution(9, 70, overlap=True)  # for blocks of states that lie close together
+WIDE = Resolution(7, 140, overlap=True)  # for blocks of states that lie close together
 
 Curve = tuple[Floats, Floats, Floats, Floats]
 
@@ -140,12 +140,16 @@ def shipped_table(s: float, m: float) -> Table | None:
 
 def build_for(s: Floats, m: Floats, resolution: Resolution) -> Table:
     """Solve and tabulate the curves of forms (s, m), shape (n,)."""
-    return build(node_module.solve(s, m), s, m, resolution)
+    values = node_module.solve(s, m)
+    return build(values, s, m, resolution, _at_critical(values.log_pressure))
 
 
-def build(values: CurveNodes, s: Floats, m: Floats, resolution: Resolution) -> Table:
-    """Tabulate curves from their nodes."""
-    functions = _functions(values, s, m)
+def build(
+    values: CurveNodes, s: Floats, m: Floats, resolution: Resolution, log_critical: Floats | None = None
+) -> Table:
+    """Tabulate curves from their nodes; `log_critical` is ln p* at u = 0, exact unless given."""
+    critical = np.log(critical_point(s, m).omega_b) if log_critical is None else log_critical
+    functions = _functions(values, s, m, critical)
     coefficients = _coefficients(functions, resolution)
     flat = coefficients.reshape(resolution.degree + 1, -1, COLUMNS)
 
@@ -156,11 +160,11 @@ def build(values: CurveNodes, s: Floats, m: Floats, resolution: Resolution) -> T
     return Table(resolution, tuple(flat), wide)
 
 
-def _functions(values: CurveNodes, s: Floats, m: Floats) -> list[tuple[Floats, Floats]]:
+def _functions(values: CurveNodes, s: Floats, m: Floats, log_critical: Floats) -> list[tuple[Floats, Floats]]:
     """Give the tabulated functions at the nodes u and at -u, each of shape (curves, nodes)."""
     log_p, log_l, log_v = values.log_pressure, values.log_liquid, values.log_vapor
     critical = critical_point(s, m)
-    even = log_p - np.log(critical.omega_b)[:, None]
+    even = log_p - log_critical[:, None]
     # Gibbs-Duhem along the curve: (v_V - v_L) dp* = -dq times the integral of 1/P
     attraction = mean_attraction(np.exp(log_l), np.exp(log_v), s[:, None], m[:, None])
     slope = -critical.q[:, None] * attraction * np.exp(-log_p)
@@ -170,6 +174,14 @@ def _functions(values: CurveNodes, s: Floats, m: Floats) -> list[tuple[Floats, F
         (np.exp(log_p + log_v), np.exp(log_p + log_l)),
         (slope, slope),
     ]
+
+
+def _at_critical(log_p: Floats) -> Floats:
+    """Interpolate ln p* to u = 0, so that p(Tc) is pc to rounding for curves made on demand too."""
+    n = NODES_A_PANEL
+    positions = node_module.node_positions()[:n]
+    weights = barycentric(np.zeros(1), np.concatenate([-positions[::-1], positions]))[0]
+    return np.asarray(log_p[:, :n] @ (weights[n:] + weights[:n][::-1]))
 
 
 def _coefficients(functions: list[tuple[Floats, Floats]], resolution: Resolution) -> Floats:

@@ -27,12 +27,13 @@ NOTES = (
     "colder than the candidate's tabulated curve",
     "no value could be computed",
     "the reference has no value here",
+    "the volume translation takes off more than the volume",
 )
 """Notes of points, by the number that `Block.note` holds."""
 
 _NUMBERS = tuple(name for name, kind in SummaryRow.__annotations__.items() if kind == "float")
 _SIMPLE, _NO_REFERENCE = 1, 6
-_NOTE_OF_STATUS = np.array([0, 2, 3, 4, 5, 5], np.int16)  # in the order of solver.STATUSES
+_NOTE_OF_STATUS = np.array([0, 2, 3, 4, 5, 5, 7], np.int16)  # in the order of solver.STATUSES
 _UNSOLVED, _NO_REFERENCE_VERDICT = POINT_VERDICTS.index("unsolved"), POINT_VERDICTS.index("no_reference")
 
 

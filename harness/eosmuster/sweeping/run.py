@@ -7,10 +7,10 @@ from collections.abc import Callable, Mapping, Sequence
 from typing import Any
 
 from eosmuster.components import Component
-from eosmuster.models.catalogue import CATALOGUE
 from eosmuster.models.model import BoundModel
 from eosmuster.models.records import ModelRecord
 from eosmuster.plan.schema import Plan
+from eosmuster.plan.selection import model_records
 from eosmuster.plan.tolerances import rules_in_use
 from eosmuster.record import Record, SummaryRow
 from eosmuster.sources import handbook, library
@@ -73,12 +73,6 @@ def run(plan: Plan, progress: Progress = silent) -> Record:
         references=plan.references_use,
         conflicts=tuple((c.component, c.quantity, c.sentence) for c in watched.conflicts),
     )
-
-
-def model_records(plan: Plan) -> tuple[ModelRecord, ...]:
-    """Return the records of a plan's models, in its order."""
-    own = {record.name: record for record in plan.own_models}
-    return tuple(own[name] if name in own else CATALOGUE[name] for name in plan.models)
 
 
 def _summary(plan: Plan, judged: Sequence[Judged], bound: Sequence[BoundModel]) -> list[SummaryRow]:

@@ -1,0 +1,94 @@
+"""Consistency of alpha functions: positive, falling, convex, and with a negative third derivative.
+
+The conditions are those of Le Guennec, Lasala, Privat and Jaubert, Fluid Phase Equilib. 427 (2016) 513: alpha and
+its first two derivatives exist and are continuous, alpha > 0, alpha' < 0, alpha'' > 0 and alpha''' < 0 at every
+temperature.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+Floats = NDArray[np.float64]
+
+RULES = ("positive", "falling", "convex", "third derivative negative", "continuous")
+BROKEN = {
+    "positive": "is not positive",
+    "falling": "does not fall",
+    "convex": "is not convex",
+    "third derivative negative": "has a third derivative that is not negative",
+    "continuous": "jumps",
+}
+"""How a broken rule is said of alpha."""
+
+LOWEST, HIGHEST, STEP = 0.2, 10.0, 0.01
+
+_SPREAD = 4e-3  # of Tr: wide enough that the third difference stands 1e5 above rounding
+_NOISE = 1e-6  # a derivative smaller than this share of its scale says nothing
+
+
+@dataclass(frozen=True)
+class Breach:
+    """A rule that is broken, and the reduced temperatures between which it is first broken."""
+
+    rule: str
+    from_reduced: float
+    to_reduced: float
+
+
+def reduced_temperatures(highest: float = HIGHEST) -> Floats:
+    """Grid on which the rules are checked."""
+    return np.arange(LOWEST, highest + STEP / 2, STEP)
+
+
+def breaches(alpha: Callable[[Floats], Floats], highest: float = HIGHEST) -> tuple[Breach, ...]:
+    """Find the rules that an alpha function of Tr breaks, each with its first stretch.
+
+    Parameters
+    ----------
+    alpha : reduced temperature -> alpha
+    highest : reduced temperature up to which the function is meant to be used
+
+    Examples
+    --------
+    >>> [b] = breaches(lambda tr: (1.0 + 0.5 * (1.0 - np.sqrt(tr))) ** 2, 20.0)   # turns up at (1 + 1/m)**2 = 9
+    >>> b.rule, round(b.from_reduced, 2)
+    ('falling', 9.0)
+    """
+    tr = reduced_temperatures(highest)
+    h = _SPREAD * tr
+    below2, below, here, above, above2 = (alpha(tr + k * h) for k in (-2, -1, 0, 1, 2))
+    first = (below2 - 8.0 * below + 8.0 * above - above2) / (12.0 * h)
+    second = (above - 2.0 * here + below) / h**2
+    third = (above2 - 2.0 * above + 2.0 * below - below2) / (2.0 * h**3)
+    scale = np.abs(here)
+    broken = {
+        "positive": ~(here > 0.0),
+        "falling": first > -_NOISE * scale / tr,
+        "convex": second < _NOISE * scale / tr**2,
+        "third derivative negative": third > -_NOISE * scale / tr**3,
+        "continuous": _jumps(here),
+    }
+    flat = np.abs(first) <= _NOISE * scale / tr  # where alpha is constant the higher rules say nothing more
+    broken["convex"] &= ~flat
+    broken["third derivative negative"] &= ~flat
+    return tuple(Breach(rule, *_first_stretch(tr, broken[rule])) for rule in RULES if broken[rule].any())
+
+
+def _jumps(values: Floats) -> NDArray[np.bool_]:
+    """Mark steps between neighbours that stand out against both sides."""
+    step = np.abs(np.diff(values))
+    usual = np.maximum(np.r_[step[:1], step[:-1]], np.r_[step[1:], step[-1:]])
+    jump = ~(step <= 20.0 * usual + 1e-12)
+    return np.asarray(np.r_[False, jump], bool)
+
+
+def _first_stretch(tr: Floats, broken: NDArray[np.bool_]) -> tuple[float, float]:
+    start = int(np.argmax(broken))
+    kept = np.flatnonzero(~broken[start:])
+    stop = start + int(kept[0]) - 1 if kept.size else tr.size - 1
+    return float(tr[start]), float(tr[stop])
