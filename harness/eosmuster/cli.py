@@ -92,6 +92,7 @@ def _parser() -> argparse.ArgumentParser:
     commands = parser.add_subparsers(title="commands", required=True, metavar="COMMAND", parser_class=_Parser)
     _add_sweep(commands.add_parser("sweep", help="run a plan: every component x model x state x property"))
     _add_saturate(commands.add_parser("saturate", help="one substance at one temperature or pressure, all models"))
+    _add_precheck(commands.add_parser("precheck", help="constants, alpha functions and references before any sweep"))
     listing = commands.add_parser("list", help="what is there: models, components, references, properties, plans")
     listing.add_argument("topic", choices=TOPICS)
     listing.set_defaults(command=_list)
@@ -106,6 +107,12 @@ def _add_sweep(parser: argparse.ArgumentParser) -> None:
         "--points", choices=("all", "none"), default="all", help="write points.csv, or leave it out (default: all)"
     )
     parser.set_defaults(command=_sweep)
+
+
+def _add_precheck(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("plan", nargs="?", help="a TOML file, or the name of a built-in plan (default: broad)")
+    parser.add_argument("--csv", metavar="FILE", help="write every finding as a row of a CSV file as well")
+    parser.set_defaults(command=_precheck)
 
 
 def _add_saturate(parser: argparse.ArgumentParser) -> None:
@@ -174,6 +181,21 @@ def _saturate(options: argparse.Namespace) -> int:
     if not any(answer.status == "solved" for answer in answers):
         print("eosmuster: no model has a saturated state there", file=sys.stderr)
         return NOTHING_JUDGED
+    return 0
+
+
+def _precheck(options: argparse.Namespace) -> int:
+    from eosmuster.api import read_plan
+    from eosmuster.prechecks.checks import precheck
+    from eosmuster.prechecks.text import precheck_text, write_csv
+    from eosmuster.progress import Bar
+
+    plan = read_plan(options.plan)
+    with Bar(sys.stderr) as bar:
+        findings = precheck(plan, bar)
+    _show(precheck_text(plan, findings, _width()))
+    if options.csv:
+        print(f"\nfindings: {write_csv(findings, options.csv)}")
     return 0
 
 

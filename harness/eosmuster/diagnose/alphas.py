@@ -17,13 +17,13 @@ Floats = NDArray[np.float64]
 
 RULES = ("positive", "falling", "convex", "third derivative negative", "continuous")
 BROKEN = {
-    "positive": "is not positive",
-    "falling": "does not fall",
-    "convex": "is not convex",
-    "third derivative negative": "has a third derivative that is not negative",
-    "continuous": "jumps",
+    "positive": "alpha is not positive",
+    "falling": "alpha does not fall",
+    "convex": "alpha is not convex",
+    "third derivative negative": "alpha''' is not negative",
+    "continuous": "alpha jumps",
 }
-"""How a broken rule is said of alpha."""
+"""How a broken rule is said."""
 
 LOWEST, HIGHEST, STEP = 0.2, 10.0, 0.01
 
@@ -83,7 +83,7 @@ def _jumps(values: Floats) -> NDArray[np.bool_]:
     """Mark steps between neighbours that stand out against both sides."""
     step = np.abs(np.diff(values))
     usual = np.maximum(np.r_[step[:1], step[:-1]], np.r_[step[1:], step[-1:]])
-    jump = ~(step <= 20.0 * usual + 1e-12)
+    jump = ~(step <= 5.0 * usual + 1e-12)
     return np.asarray(np.r_[False, jump], bool)
 
 
