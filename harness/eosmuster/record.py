@@ -97,13 +97,13 @@ class SummaryRow:
     undecided: int
     outside: int
     unsolved: int
-    no_reference: int
     share_inside: float
     passing_limit_pct: float
     false_acceptance_pct: float
     contested: str
     independence: str
     verdict: str
+    no_reference: int = 0
     note: str = ""
 
 

@@ -17,6 +17,9 @@ from eosmuster.sources import handbook, library
 Floats = NDArray[np.float64]
 Step = tuple[float, str]
 
+_ONE_TEMPERATURE = 2e-9
+"""Relative: limits are looked up 1e-9 off a step (`compare.axis`), so steps nearer than twice that would overlap."""
+
 BY_TEMPERATURE = ("saturation_pressure", "liquid_density", "vapor_density", "enthalpy_of_vaporization")
 """Properties asked for at a temperature; the boiling temperature is always asked for at a pressure."""
 
@@ -88,10 +91,6 @@ def _library_series(plan: Plan, row: int, component: Component, left_out: list[t
     if limits is None:
         left_out.append((component.name, "the reference library has no equation for it"))
         return
-    ends = [(limits.from_K, "reference_limit"), (limits.to_K, "reference_limit")]
-    steps = {
-        p: (*_tolerance_steps(plan, component, p), *_uncertainty_steps(component, p), *ends) for p in plan.properties
-    }
     grid = plan.grid.states_for(component)
     by_pressure = plan.grid.coordinate == "pressure"
     given = grid
@@ -104,7 +103,12 @@ def _library_series(plan: Plan, row: int, component: Component, left_out: list[t
         if not known.any():
             return
         given = given[known]
-    nodes = _nodes(grid, (t for p in plan.properties for t, _ in steps[p]), (limits.from_K, limits.to_K))
+    ends = (limits.from_K, limits.to_K)
+    steps = {
+        p: _steps([*_tolerance_steps(plan, component, p), *_uncertainty_steps(component, p)], ends, grid)
+        for p in plan.properties
+    }
+    nodes = _nodes(grid, (t for p in plan.properties for t, _ in steps[p]), ends)
     wanted = sorted({"saturation_pressure", *plan.properties} - {"boiling_temperature"})
     values = dict(library.saturation(component, nodes.temperature, wanted).values)
     values["boiling_temperature"] = np.where(np.isfinite(values["saturation_pressure"]), nodes.temperature, np.nan)
@@ -164,9 +168,9 @@ def _correlation_series(plan: Plan, row: int, component: Component) -> Iterator[
             inside = (grid >= correlation.from_K) & (grid <= correlation.to_K)
             if not inside.any():
                 continue
-            ends = ((correlation.from_K, "reference_limit"), (correlation.to_K, "reference_limit"))
-            steps = (*_tolerance_steps(plan, component, name), *ends)
-            nodes = _nodes(grid, (t for t, _ in steps), (correlation.from_K, correlation.to_K))
+            ends = (correlation.from_K, correlation.to_K)
+            steps = _steps(_tolerance_steps(plan, component, name), ends, grid)
+            nodes = _nodes(grid, (t for t, _ in steps), ends)
             reach = (nodes.temperature >= correlation.from_K) & (nodes.temperature <= correlation.to_K)
             values = correlation(nodes.temperature)
             at_pressure = name == "boiling_temperature"
@@ -224,6 +228,22 @@ def _tolerance_steps(plan: Plan, component: Component, name: str) -> list[Step]:
 
 def _uncertainty_steps(component: Component, name: str) -> list[Step]:
     return [(t, "undecided") for t in library.uncertainty_borders(component, name)]
+
+
+def _steps(steps: Iterable[Step], ends: tuple[float, float], grid: Floats) -> tuple[Step, ...]:
+    """Join the steps between limits and the ends of a reference's range.
+
+    A step that rounding alone keeps apart from a state, an end or another step moves there: 0.9 Tc is one
+    temperature, whether it was computed, read from a file, or is the 19th of 21 states.
+    """
+    places = np.array([*grid[np.isfinite(grid)], *ends])
+    joined = []
+    for t, kind in steps:
+        nearest = float(places[np.argmin(np.abs(places - t))])
+        at = nearest if abs(nearest - t) <= _ONE_TEMPERATURE * t else t
+        places = np.append(places, at)
+        joined.append((at, kind))
+    return (*joined, *((end, "reference_limit") for end in ends))
 
 
 def _nodes(grid: Floats, steps: Iterable[float], reach: tuple[float, float]) -> Nodes:
