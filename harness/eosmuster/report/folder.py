@@ -107,6 +107,9 @@ def checked(folder: str | os.PathLike[str], *, overwrite: bool) -> Path:
             )
     if is_folder:
         _check_replaceable(target, overwrite)
+    nearest = next(place for place in (target, *target.parents) if place.exists())
+    if not os.access(nearest, os.W_OK | os.X_OK):
+        raise InputError(f"{target}: {nearest} is not writable; choose another --out")
     return target
 
 
