@@ -165,14 +165,14 @@ def _correlation_series(plan: Plan, row: int, component: Component) -> Iterator[
             given = grid
             if by_pressure:
                 grid = correlation.temperatures_at(given)
-            inside = (grid >= correlation.from_K) & (grid <= correlation.to_K)
+            ends = gate(correlation, component)
+            inside = (grid >= ends[0]) & (grid <= ends[1])
             if not inside.any():
                 continue
-            ends = (correlation.from_K, correlation.to_K)
             steps = _steps(_tolerance_steps(plan, component, name), ends, grid)
             nodes = _nodes(grid, (t for t, _ in steps), ends)
-            reach = (nodes.temperature >= correlation.from_K) & (nodes.temperature <= correlation.to_K)
-            values = correlation(nodes.temperature)
+            reach = (nodes.temperature >= ends[0]) & (nodes.temperature <= ends[1])
+            values = np.where(reach, correlation(nodes.temperature), np.nan)
             at_pressure = name == "boiling_temperature"
             pressure = values.copy() if by_pressure or at_pressure else nodes.pressure
             if by_pressure:
@@ -189,14 +189,23 @@ def _correlation_series(plan: Plan, row: int, component: Component) -> Iterator[
                 Nodes(nodes.temperature, pressure, state, at_pressure),
                 values,
                 unknown,
-                _correlation_evaluator(correlation, name),
+                _correlation_evaluator(correlation, name, ends),
                 steps,
             )
 
 
-def _correlation_evaluator(correlation: handbook.Correlation, name: str) -> Callable[[Floats], tuple[Floats, Floats]]:
+def gate(correlation: handbook.Correlation, component: Component) -> tuple[float, float]:
+    """Range in K in which a correlation is used: its own, but never below the triple point or above Tc."""
+    low = max(correlation.from_K, component.triple_temperature or 0.0)
+    return low, min(correlation.to_K, component.critical_temperature)
+
+
+def _correlation_evaluator(
+    correlation: handbook.Correlation, name: str, ends: tuple[float, float]
+) -> Callable[[Floats], tuple[Floats, Floats]]:
     def evaluate(temperature: Floats) -> tuple[Floats, Floats]:
-        values = correlation(temperature)
+        gated = (temperature >= ends[0]) & (temperature <= ends[1])
+        values = np.where(gated, correlation(temperature), np.nan)
         if name == "boiling_temperature":
             return np.where(np.isfinite(values), temperature, np.nan), values
         return values, np.full(temperature.shape, np.nan)
@@ -211,6 +220,7 @@ def _table_series(plan: Plan, row: int, component: Component) -> Iterator[Series
         for table in handbook.tables(component.cas, name):
             along = table.pressure if plan.grid.coordinate == "pressure" else table.temperature
             inside = (along >= grid[0]) & (along <= grid[-1]) & (table.temperature < component.critical_temperature)
+            inside &= table.temperature >= (component.triple_temperature or 0.0) * (1.0 - _ONE_TEMPERATURE)
             if not inside.any():
                 continue
             at_pressure = name == "boiling_temperature"
