@@ -16,14 +16,12 @@ from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, replace
 from decimal import Decimal
 from pathlib import Path
-from statistics import median
 from typing import Any
 
 import numpy as np
 from chemicals import miscdata
-from handbook_correlations import LEFT_OUT, Cells, boiling_points, candidates, correlation_rows
+from handbook_correlations import LEFT_OUT, Cells, correlation_rows
 from handbook_evidence import (
-    ATMOSPHERE,
     HEAT,
     LIQUID,
     PRESSURE,
@@ -35,12 +33,12 @@ from handbook_evidence import (
     measure,
     within,
 )
+from handbook_points import boiling_rows, heat_rows
 
-from eosmuster.sources.handbook import CORRELATION_FILES, counts
+from eosmuster.sources import critical
+from eosmuster.sources.handbook import CORRELATION_FILES, counts, coverage
 
 HANDBOOK = Path(__file__).resolve().parents[1] / "handbook"
-CONTESTED = 2.0
-"""%: a boiling point further off is left out only if the cited correlations side with the library."""
 WRONG_MASS = {"R125"}
 """Where the transcription's molar mass is wrong, the component's own is used."""
 
@@ -54,47 +52,6 @@ WATER = (
     (273.16, "iapws-sr1-86", 611.657e-6, (999.789, 0.00485426), (0.611786e-3, 2500.5), MEMORY),
     (373.1243, "iapws-sr1-86", 0.101325, (958.365, 0.597586), (419.05, 2675.7), MEMORY),
 )
-
-
-# ---------------------------------------------------------------- normal boiling points
-
-
-def boiling_rows() -> Iterator[Cells]:
-    """Give the rows of normal boiling points, by component."""
-    for cas, (T, remark) in sorted(boiling_points().items(), key=lambda item: fluids()[item[0]].casefold()):
-        excluded, reason = boiling_verdict(cas, T)
-        yield {
-            "component": fluids()[cas],
-            "cas": cas,
-            "temperature_K": repr(T),
-            "pressure_Pa": "101325",
-            "source": "crc-95",
-            "note": "; ".join(part for part in (remark, reason) if part),
-            "excluded": "yes" if excluded else "no",
-        }
-
-
-def boiling_verdict(cas: str, T: float) -> tuple[bool, str]:
-    """Decide whether a boiling point is out, by the pressure the library and cited rows have there."""
-    name = fluids()[cas]
-    if ("crc", name) in LEFT_OUT:
-        return True, LEFT_OUT["crc", name]
-    size = off_atmosphere(float(library(name)(PRESSURE, np.array([T]))[0]))
-    if not np.isfinite(size):
-        return False, f"not measured: outside the library's own limits (from {library(name).lowest:.2f} K)"
-    if abs(size) <= CONTESTED:
-        return False, ""
-    rows = [c for c in candidates() if c.cas == cas and c.gives == PRESSURE and not c.left_out()]
-    cited = [p for p in (off_atmosphere(c.at(T)) for c in rows) if np.isfinite(p)]
-    sides = bool(cited) and abs(middle := median(cited)) > CONTESTED and middle * size > 0.0
-    said = f", the cited correlations {', '.join(f'{p:+.1f}' for p in cited)} %" if cited else ""
-    reason = f"the pressure there is off 101325 Pa: CoolProp 8 has {size:+.1f} %{said}"
-    return abs(size) > ROW_LIMIT or sides, reason
-
-
-def off_atmosphere(pressure: float) -> float:
-    """Give how far a pressure lies from one atmosphere, %."""
-    return 100.0 * (pressure / ATMOSPHERE - 1.0)
 
 
 # ---------------------------------------------------------------- saturation tables
@@ -209,6 +166,7 @@ def tables() -> dict[str, list[Cells]]:
     return {
         "normal_boiling_points.csv": list(boiling_rows()),
         "saturation_tables.csv": list(saturation_rows()),
+        "heats_of_vaporization.csv": list(heat_rows()),
         **correlations,
     }
 
@@ -224,10 +182,13 @@ def write() -> None:
 
 
 def print_counts() -> None:
-    """Print what the committed tables hold, as a Markdown table."""
-    print("| property | source | components | rows | excluded rows |\n|---|---|---:|---:|---:|")
-    for c in counts():
-        print(f"| {c.property} | {c.source} | {c.components} | {c.rows} | {c.excluded} |")
+    """Print what the committed tables hold, as two Markdown tables."""
+    print("| property | components with a correlation | with a tabulated value | with either |\n|---|---:|---:|---:|")
+    for c in coverage():
+        print(f"| {c.property} | {c.correlations} | {c.tables} | {c.either} |")
+    print("\n| property | source | components | rows | excluded rows |\n|---|---|---:|---:|---:|")
+    for n in (*counts(), *critical.counts()):
+        print(f"| {n.property} | {n.source} | {n.components} | {n.rows} | {n.excluded} |")
 
 
 if __name__ == "__main__":

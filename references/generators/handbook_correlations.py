@@ -60,6 +60,7 @@ TRANSCRIPTIONS = (
     Transcription("antoine_extended", "poling-2001", _P, "Psat_data_AntoineExtended", _EXTENDED, "Pa"),
     Transcription("dippr_101", "perry-2008", _P, "Psat_data_Perrys2_8", "C1 C2 C3 C4 C5", "Pa"),
     Transcription("wagner_25_5", "vdi-2010", _P, "Psat_data_VDI_PPDS_3", _WAGNER, "Pa", *_VDI),
+    Transcription("antoine_e", "landolt-boernstein-20", _P, "Psat_data_Landolt_Antoine", "A B C", "Pa"),
     Transcription("dippr_105", "perry-2008", _V, "rho_data_Perry_8E_105_l", "C1 C2 C3 C4", "mol/m3"),
     Transcription("dippr_116", "vdi-2010", _V, "rho_data_VDI_PPDS_2", _DENSITY, "kg/m3, over M", *_VDI),
     Transcription("dippr_106", "perry-2008", _H, "phase_change_data_Perrys2_150", "C1 C2 C3 C4 Tc", "J/mol"),
@@ -69,12 +70,23 @@ TRANSCRIPTIONS = (
 LEFT_OUT = {
     ("antoine", "Hydrogen"): "follows parahydrogen within 1.3 %, not normal hydrogen",
     ("antoine", "SulfurHexafluoride"): "lies wholly below the triple point: a sublimation pressure",
+    (
+        "antoine_e",
+        "n-Perfluorobutane",
+    ): "C is -4087 K where other rows have -20 to -120 K: a decimal point seems lost, "
+    "since with -40.87 K it would boil at 271.80 K, by the CRC Handbook at 271.05 K",
+    ("antoine_e", "HFE143m"): "boils at 303.04 K, just beyond its range, by the CRC Handbook at 247.95 K: another "
+    "substance's row, it seems",
     ("crc", "Hydrogen"): "the boiling point of parahydrogen; normal hydrogen boils at 20.369 K",
     (HEAT, "R125"): "the transcription carries M = 182.564 g/mol (R125: 120.021), so its molar enthalpies "
     "are 52 % too high; the printed kJ/kg, recovered by taking that M out again, agree with CoolProp 8, but "
     "stay out until read on the page",
 }
 """What measuring alone cannot say: (form or table, component) -> why the row is left out."""
+
+REPEATS = 0.05
+"""%: a row that follows another form of the same equation this closely over its whole range repeats it: Poling's
+Antoine constants, printed there with fewer digits at most."""
 
 
 @dataclass(frozen=True)
@@ -122,14 +134,27 @@ class Candidate:
         return float(invert(form, self.coefficients, np.array([ATMOSPHERE]), self.span)[0])
 
     def beside(self) -> list[Candidate]:
-        """Give the other correlations of the same property and component."""
+        """Give the other correlations of the same property and component that are evidence of their own."""
         same = (c for c in candidates() if (c.cas, c.gives) == (self.cas, self.gives))
-        return [c for c in same if c.key != self.key]
+        return [c for c in same if c.key != self.key and not c.repeated()]
+
+    @cache  # noqa: B019
+    def repeated(self) -> str:
+        """Name the row whose constants this one repeats, or ""."""
+        if self.origin.form != "antoine_e":
+            return ""
+        T = np.linspace(*self.span, 41)
+        mine = FORMS["antoine_e"].value(T, self.coefficients)
+        for c in (c for c in candidates() if c.cas == self.cas and c.origin.form == "antoine"):
+            if float(np.max(np.abs(FORMS["antoine"].value(T, c.coefficients) / mine - 1.0))) <= REPEATS / 100.0:
+                return c.key
+        return ""
 
     def left_out(self) -> bool:
         """Tell whether it is excluded by default."""
         found = self.measured()
-        return (self.origin.form, self.name) in LEFT_OUT or (found is not None and found.gross)
+        told = (self.origin.form, self.name) in LEFT_OUT or self.repeated() != ""
+        return told or (found is not None and found.gross)
 
 
 @cache
@@ -145,13 +170,16 @@ def candidates() -> tuple[Candidate, ...]:
         )
         for origin in TRANSCRIPTIONS
         for cas, row in origin.rows()
-        if cas in fluids()
+        # one temperature is no range: Landolt-Boernstein's rows of R236fa and R245ca
+        if cas in fluids() and row[origin.range_columns[0]] < row[origin.range_columns[1]]
     )
 
 
 def note_of(c: Candidate) -> str:
     """Write what a reader must know of a correlation: why it is out, or where it is weak."""
     found, everywhere = c.measured(), c.measured(0.0)
+    if c.repeated():
+        return f"repeats the constants of {c.repeated()}: no evidence of its own"
     if c.left_out():
         parts = [LEFT_OUT.get((c.origin.form, c.name), ""), *([] if found is None else evidence(c, found))]
         return "; ".join(part for part in parts if part)

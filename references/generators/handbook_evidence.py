@@ -12,7 +12,7 @@ import numpy as np
 from CoolProp import CoolProp
 from numpy.typing import NDArray
 
-from eosmuster.sources.correlations import Floats
+from eosmuster.sources.vapor_pressure import Floats
 
 PRESSURE, LIQUID, VAPOR, HEAT = (
     "saturation_pressure",

@@ -324,7 +324,8 @@ def test_every_stated_uncertainty_is_usable_and_cited():
         low, high = float(row["from_K"]), float(row["to_K"])
         assert row["property"] in ALL[:3], row
         assert limits(component).from_K - 1e-9 <= low < high <= component.critical_temperature, row
-        assert 0.0 < float(row["uncertainty_pct"]) <= 0.5, row
+        # deuterium's are the largest, 2 and 3 %
+        assert 0.0 < float(row["uncertainty_pct"]) <= 3.0, row
         assert row["coverage_factor"] in {"2", "unstated"}, row
         assert row["source"], row
         assert row["how_read"], row
@@ -344,7 +345,7 @@ def test_uncertainty_is_unknown_where_none_is_stated():
     stated = uncertainty_pct(propane, "saturation_pressure", T)
     np.testing.assert_array_equal(np.isnan(stated), [[True, False], [False, True]])
     assert np.isnan(uncertainty_pct(propane, "enthalpy_of_vaporization", 300.0))
-    assert np.isnan(uncertainty_pct(find("acetone"), "saturation_pressure", 300.0))
+    assert np.isnan(uncertainty_pct(find("methanol"), "saturation_pressure", 300.0))
 
 
 def test_the_larger_of_two_stated_uncertainties_counts():
@@ -367,4 +368,4 @@ def test_uncertainty_of_the_boiling_temperature_follows_from_the_vapour_pressure
 
 def test_borders_of_the_stated_uncertainty():
     assert library.uncertainty_borders(find("R1234ze(Z)"), "boiling_temperature") == (273.0, 300.0, 423.27)
-    assert library.uncertainty_borders(find("acetone"), "liquid_density") == ()
+    assert library.uncertainty_borders(find("methanol"), "liquid_density") == ()

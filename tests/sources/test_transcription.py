@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import csv
 import importlib
+import math
 from typing import Any
 
 import pytest
@@ -47,6 +48,11 @@ COLUMNS: dict[tuple[str, str, str], tuple[Any, str, list[tuple[str, str]]]] = {
         vapor_pressure,
         "Psat_data_Perrys2_8",
         [*C_NUMBERS, ("E", "C5"), *PRINTED_RANGE],
+    ),
+    ("vapor_pressure", "antoine_e", "landolt-boernstein-20"): (
+        vapor_pressure,
+        "Psat_data_Landolt_Antoine",
+        [("A", "A"), ("B", "B"), ("C", "C"), *PRINTED_RANGE],
     ),
     ("vapor_pressure", "wagner_25_5", "vdi-2010"): (
         vapor_pressure,
@@ -122,6 +128,49 @@ def test_normal_boiling_points() -> None:
         printed = organic if r["cas"] in organic.index else inorganic
         assert float(r["temperature_K"]) == printed[r["cas"]], r
         assert r["pressure_Pa"] == "101325"
+        # printed in degC; 1e-6 K: the conversion is exact to the digits of either
+        assert r["printed_unit"] == "degC"
+        assert float(r["printed_value"]) + 273.15 == pytest.approx(printed[r["cas"]], abs=1e-6)
+
+
+def test_single_heats_of_vaporization() -> None:
+    table = phase_change.Hvap_data_CRC
+    mine = rows("heats_of_vaporization")
+    assert len(mine) > 100
+    for r in mine:
+        theirs = table.loc[r["cas"]]
+        at_boiling = "boiling" in r["note"]
+        assert float(r["value"]) == theirs["HvapTb" if at_boiling else "Hvap298"], r
+        assert float(r["temperature_K"]) == (theirs["Tb"] if at_boiling else 298.15), r
+        assert float(r["printed_value"]) * 1e3 == pytest.approx(float(r["value"]), rel=1e-14)
+        assert r["printed_unit"] == "kJ/mol"
+
+
+def test_a_single_temperature_is_no_range() -> None:
+    # Landolt-Boernstein gives R236fa and R245ca constants for one temperature each
+    table = vapor_pressure.Psat_data_Landolt_Antoine
+    left_out = {cas for cas in ("690-39-1", "679-86-7") if table.loc[cas]["Tmin"] == table.loc[cas]["Tmax"]}
+    assert left_out == {"690-39-1", "679-86-7"}
+    assert not [r for r in rows("vapor_pressure") if r["cas"] in left_out]
+
+
+def test_repeated_constants_are_recognised() -> None:
+    # independent of how the generator finds them: the constants themselves, to the digits Poling prints
+    poling = vapor_pressure.Psat_data_AntoinePoling
+    checked = 0
+    for r in rows("vapor_pressure"):
+        if r["form"] == "antoine_e" and r["cas"] in poling.index:
+            theirs = poling.loc[r["cas"]]
+            decimal = (float(r["A"]) / math.log(10.0), float(r["B"]) / math.log(10.0), float(r["C"]))
+            near = (decimal[0], decimal[1], decimal[2]) == (
+                pytest.approx(theirs["A"], abs=6e-4),
+                pytest.approx(theirs["B"], abs=0.15),
+                pytest.approx(theirs["C"], abs=6e-3),
+            )
+            assert ("repeats" in r["note"]) == near, r
+            assert r["excluded"] == "yes" if near else True
+            checked += near
+    assert checked > 50
 
 
 def test_sublimation_points_have_no_row() -> None:

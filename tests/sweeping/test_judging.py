@@ -15,7 +15,12 @@ from eosmuster.quantities import PROPERTIES
 from eosmuster.record import POINT_VERDICTS
 from eosmuster.saturation import solver
 from eosmuster.sweeping.judging import NOTES, independence, summarise, unavailable_row
-from eosmuster.sweeping.series import Nodes, Series, unknown
+from eosmuster.sweeping.series import Nodes, Series
+
+
+def unknown(temperature: np.ndarray) -> np.ndarray:
+    return np.full(np.shape(temperature), np.nan)
+
 
 Swept = Callable[[str], Any]
 

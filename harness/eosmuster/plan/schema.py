@@ -49,6 +49,9 @@ LIMIT_KINDS = {
 """Kind of a limit -> the unit of its value."""
 
 DECISION_RULES = ("guarded", "simple")
+UNCERTAINTIES = ("read", "remembered", "assumed")
+"""Which uncertainties of references decide: those that were read in a source; those noted down from memory as well;
+or a default of ours by chemical class too, wherever nothing is stated."""
 REFERENCES = ("coolprop", "handbook")
 GATE_REASONS = ("outside", "unsolved", "undecided", "unfit_reference", "no_reference", "unavailable")
 """What a gate can fail on: every verdict but ``inside``, and what a model cannot do for a component."""
@@ -186,12 +189,14 @@ class Decision:
     ----------
     rule : ``guarded`` (the limit less the expanded uncertainty decides) or ``simple`` (shared risk)
     coverage_factor : expanded = coverage_factor x standard uncertainty
+    uncertainty : one of `UNCERTAINTIES`
     unfit_ratio : a reference whose expanded uncertainty exceeds this share of the limit cannot decide
     """
 
     rule: str = "guarded"
     coverage_factor: float = 2.0
     unfit_ratio: float = 1.0 / 3.0
+    uncertainty: str = "read"
 
 
 @dataclass(frozen=True)

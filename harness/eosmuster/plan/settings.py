@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import asdict
 
 from eosmuster.errors import InputError
-from eosmuster.plan.schema import DECISION_RULES, GATE_REASONS, REFERENCES, Decision, Display
+from eosmuster.plan.schema import DECISION_RULES, GATE_REASONS, REFERENCES, UNCERTAINTIES, Decision, Display
 from eosmuster.plan.tables import Table
 from eosmuster.quantities import UNITS
 
@@ -24,6 +24,7 @@ def read_decision(plan: Table) -> Decision:
         rule=table.one_of("rule", DECISION_RULES, usual.rule),
         coverage_factor=table.number("coverage_factor", usual.coverage_factor, above=0.0, to=10.0),
         unfit_ratio=table.number("unfit_ratio", usual.unfit_ratio, above=0.0, to=1.0),
+        uncertainty=table.one_of("uncertainty", UNCERTAINTIES, usual.uncertainty),
     )
 
 

@@ -123,21 +123,18 @@ def reference_findings(plan: Plan, component: Component) -> Iterator[Finding]:
 def excluded_findings(component: Component) -> Iterator[Finding]:
     """List the handbook entries that are kept but not used, each with the evidence its row carries."""
     for name in (*WATCHED, "boiling_temperature") if component.cas else ():
-        entries = (
-            *(
-                (c.source, c.from_K, c.to_K, c)
-                for c in handbook.correlations(component.cas, name, include_excluded=True)
-            ),
-            *(
-                (t.source, float(t.temperature[0]), float(t.temperature[-1]), t)
-                for t in handbook.tables(component.cas, name, include_excluded=True)
-            ),
-        )
-        for source, low, high, entry in entries:
-            if entry.excluded:
-                label = name.replace("_", " ")
-                sentence = f"{label} by {source} is not used: {entry.note or 'no reason is given'}"
-                yield Finding("excluded reference", "note", component.name, source, _NAN, _NAN, low, high, sentence)
+        for c in handbook.correlations(component.cas, name, include_excluded=True):
+            if c.excluded:
+                yield _excluded(component, name, c.source, c.note, (c.from_K, c.to_K))
+        for t in handbook.tables(component.cas, name, include_excluded=True):
+            if t.excluded:
+                ends = (float(t.temperature[0]), float(t.temperature[-1]))
+                yield _excluded(component, name, t.source, t.note, ends)
+
+
+def _excluded(component: Component, name: str, source: str, note: str, ends: tuple[float, float]) -> Finding:
+    sentence = f"{name.replace('_', ' ')} by {source} is not used: {note or 'no reason is given'}"
+    return Finding("excluded reference", "note", component.name, source, _NAN, _NAN, *ends, sentence)
 
 
 def _from_conflict(conflict: Conflict) -> Finding:

@@ -128,8 +128,18 @@ def decision(rule: Mapping[str, Any]) -> list[str]:
         "Where U is not known the deviation alone decides, and the point's note says so.",
         "simple": "Simple rule (shared risk): the deviation alone decides, whatever the reference's uncertainty.",
     }
-    told = ("rule", "coverage_factor", "unfit_ratio", "tolerances")
-    return [words.get(str(name), f"Rule: {name}."), *(f"{k}: {number(v)}" for k, v in rule.items() if k not in told)]
+    origins = {
+        "read": "Uncertainties count where they were read in a source, or follow from the last printed digit.",
+        "remembered": "Uncertainties noted down from memory count as well as those that were read in a source.",
+        "assumed": "Where no uncertainty is stated, an assumed default of the chemical class stands in.",
+    }
+    told = ("rule", "coverage_factor", "unfit_ratio", "tolerances", "uncertainty")
+    origin = [origins[rule["uncertainty"]]] if rule.get("uncertainty") in origins else []
+    return [
+        words.get(str(name), f"Rule: {name}."),
+        *origin,
+        *(f"{k}: {number(v)}" for k, v in rule.items() if k not in told),
+    ]
 
 
 def tolerances(rule: Mapping[str, Any]) -> list[tuple[str, str, str, str]]:

@@ -8,24 +8,25 @@ outside its range it gives NaN. Rows that grossly contradict other evidence stay
 
 from __future__ import annotations
 
-import csv
 import math
 from collections import defaultdict
-from collections.abc import Iterable, Iterator, Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from functools import cache
 from types import MappingProxyType
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
 
+from eosmuster.components import catalogue
 from eosmuster.errors import InputError, suggestion
-from eosmuster.paths import references_folder
 from eosmuster.sources.bibliography import bibliography as bibliography  # noqa: PLC0414 (handed on)
-from eosmuster.sources.correlations import FORMS, Coefficients
-from eosmuster.sources.inversion import invert
-
-Floats = NDArray[np.float64]
+from eosmuster.sources.cited import Correlation as Correlation  # noqa: PLC0414
+from eosmuster.sources.cited import Table as Table  # noqa: PLC0414
+from eosmuster.sources.cited_uncertainty import uncertainty_borders as uncertainty_borders  # noqa: PLC0414
+from eosmuster.sources.cited_uncertainty import uncertainty_pct as uncertainty_pct  # noqa: PLC0414
+from eosmuster.sources.correlations import FORMS
+from eosmuster.sources.printed import last_digits
+from eosmuster.sources.rows import Row, flag, number, rows
 
 CORRELATION_FILES: Mapping[str, str] = MappingProxyType(
     {
@@ -34,102 +35,7 @@ CORRELATION_FILES: Mapping[str, str] = MappingProxyType(
         "enthalpy_of_vaporization": "enthalpy_of_vaporization.csv",
     }
 )
-TABLE_FILES = ("saturation_tables.csv", "normal_boiling_points.csv")
-
-
-@dataclass(frozen=True)
-class Correlation:
-    """One property of one component as a formula in temperature, valid from `from_K` to `to_K`.
-
-    Attributes
-    ----------
-    component, cas : which substance
-    property : a name of `eosmuster.quantities.PROPERTIES`
-    source : key people see, ``handbook:<form>-<citation>``
-    citation : key into `bibliography`
-    from_K, to_K : ends of the range, both included
-    form : a name of `eosmuster.sources.correlations.FORMS`
-    coefficients : in that form's order
-    note : what a reader must know, or ""
-    excluded : True for a row left out by default; the note says on which evidence
-
-    Examples
-    --------
-    >>> methane = correlations("74-82-8", "saturation_pressure")[0]
-    >>> methane.source
-    'handbook:wagner-mcgarry-1983'
-    >>> methane(np.array([50.0, 111.67])).round(-2)
-    array([    nan, 101600.])
-    >>> round(methane.temperature_at(101325.0), 2)
-    111.63
-    """
-
-    component: str
-    cas: str
-    property: str
-    source: str
-    citation: str
-    from_K: float
-    to_K: float
-    form: str
-    coefficients: Coefficients
-    note: str = ""
-    excluded: bool = False
-
-    def __call__(self, temperature: ArrayLike) -> Floats:
-        """Give the property (SI) at temperatures in K, same shape; NaN outside the range."""
-        kelvin, inside = self._gated(temperature)
-        result = np.full(kelvin.shape, np.nan)
-        result[inside] = FORMS[self.form].value(kelvin[inside], self.coefficients)
-        return result
-
-    def slope(self, temperature: ArrayLike) -> Floats:
-        """Give dp/dT in Pa/K, same shape; NaN outside the range. Only vapour pressures have one."""
-        kelvin, inside = self._gated(temperature)
-        log_slope = FORMS[self.form].log_slope
-        if log_slope is None:
-            raise InputError(f"{self.source}: {self.property} has no slope here; only vapour pressures have one")
-        result = self(kelvin)
-        result[inside] *= log_slope(kelvin[inside], self.coefficients)
-        return result
-
-    def _gated(self, temperature: ArrayLike) -> tuple[Floats, NDArray[np.bool_]]:
-        kelvin = np.asarray(temperature, dtype=np.float64)
-        return kelvin, (kelvin >= self.from_K) & (kelvin <= self.to_K)
-
-    def temperatures_at(self, pressure: ArrayLike) -> Floats:
-        """Give the boiling temperatures (K) at pressures in Pa, same shape; NaN where outside the range."""
-        p = np.asarray(pressure, dtype=np.float64)
-        found = invert(FORMS[self.form], self.coefficients, p.reshape(-1), (self.from_K, self.to_K))
-        return found.reshape(p.shape)
-
-    def temperature_at(self, pressure: float) -> float:
-        """Give the boiling temperature (K) at one pressure in Pa; NaN where outside the range."""
-        return float(self.temperatures_at(pressure))
-
-
-@dataclass(frozen=True)
-class Table:
-    """Tabulated values of one property of one component, from one source, in order of temperature.
-
-    Attributes
-    ----------
-    component, cas, property, source, citation, note, excluded : as in `Correlation`
-    temperature : K, shape (n,)
-    pressure : Pa where the source states the condition by pressure, else NaN; shape (n,)
-    values : SI, shape (n,)
-    """
-
-    component: str
-    cas: str
-    property: str
-    source: str
-    citation: str
-    temperature: Floats
-    pressure: Floats
-    values: Floats
-    note: str = ""
-    excluded: bool = False
+TABLE_FILES = ("saturation_tables.csv", "heats_of_vaporization.csv", "normal_boiling_points.csv")
 
 
 @dataclass(frozen=True)
@@ -141,6 +47,25 @@ class Count:
     components: int
     rows: int
     excluded: int
+
+
+@dataclass(frozen=True)
+class Coverage:
+    """For how many components there is something of a property, rows excluded by default not counted.
+
+    Attributes
+    ----------
+    property : a name of `eosmuster.quantities.PROPERTIES`
+    correlations, tables : components with at least one correlation, with at least one tabulated value
+    either : components with at least one of the two
+    missing : components of the catalogue with a CAS number that have neither, by name
+    """
+
+    property: str
+    correlations: int
+    tables: int
+    either: int
+    missing: tuple[str, ...]
 
 
 def correlations(cas: str, property: str, *, include_excluded: bool = False) -> tuple[Correlation, ...]:  # noqa: A002
@@ -181,15 +106,33 @@ def _count(name: str, source: str, entries: Iterable[tuple[str, int, bool]]) -> 
     return Count(name, source, len({cas for cas, _ in kept}), sum(rows for _, rows in kept), left_out)
 
 
+def coverage() -> tuple[Coverage, ...]:
+    """Give for how many components there is something, by property.
+
+    >>> [(c.property, c.either) for c in coverage() if c.property == "boiling_temperature"]
+    [('boiling_temperature', 102)]
+    """
+    known = {c.cas: c.name for c in catalogue().values() if c.cas}
+    properties = dict.fromkeys([*CORRELATION_FILES, *sorted(name for _, name in _tables())])
+    return tuple(_coverage(name, known) for name in properties)
+
+
+def _coverage(name: str, known: Mapping[str, str]) -> Coverage:
+    formulas = {cas for cas in known if correlations(cas, name)}
+    tabulated = {cas for cas in known if tables(cas, name)}
+    missing = tuple(known[cas] for cas in known if cas not in formulas | tabulated)
+    return Coverage(name, len(formulas), len(tabulated), len(formulas | tabulated), missing)
+
+
 @cache
 def _correlations(name: str) -> Mapping[str, tuple[Correlation, ...]]:
     by_cas: dict[str, list[Correlation]] = defaultdict(list)
-    for where, row in _rows(CORRELATION_FILES[name]) if name in CORRELATION_FILES else ():
+    for where, row in rows(f"handbook/{CORRELATION_FILES[name]}") if name in CORRELATION_FILES else ():
         by_cas[row["cas"]].append(_correlation(where, row))
     return MappingProxyType({cas: tuple(found) for cas, found in by_cas.items()})
 
 
-def _correlation(where: str, row: Mapping[str, str]) -> Correlation:
+def _correlation(where: str, row: Row) -> Correlation:
     if row["form"] not in FORMS:
         raise InputError(f"{where}: form {row['form']!r} is unknown; {suggestion(row['form'], FORMS)}")
     form = FORMS[row["form"]]
@@ -199,36 +142,37 @@ def _correlation(where: str, row: Mapping[str, str]) -> Correlation:
         property=form.property,
         source=f"handbook:{form.label}-{row['source']}",
         citation=row["source"],
-        from_K=_number(where, row, "from_K"),
-        to_K=_number(where, row, "to_K"),
+        from_K=number(where, row, "from_K"),
+        to_K=number(where, row, "to_K"),
         form=form.name,
-        coefficients=tuple(_number(where, row, column) for column in form.columns),
+        coefficients=tuple(number(where, row, column) for column in form.columns),
         note=row["note"],
-        excluded=_flag(where, row),
+        excluded=flag(where, row),
     )
 
 
 @cache
 def _tables() -> Mapping[tuple[str, str], tuple[Table, ...]]:
-    grouped: dict[tuple[str, str, str, bool], list[tuple[str, Mapping[str, str]]]] = defaultdict(list)
-    for where, row in (line for file in TABLE_FILES for line in _rows(file)):
+    grouped: dict[tuple[str, str, str, bool], list[tuple[str, Row]]] = defaultdict(list)
+    for where, row in (line for file in TABLE_FILES for line in rows(f"handbook/{file}")):
         name = row.get("property", "boiling_temperature")
-        grouped[row["cas"], name, row["source"], _flag(where, row)].append((where, row))
+        grouped[row["cas"], name, row["source"], flag(where, row)].append((where, row))
     found: dict[tuple[str, str], list[Table]] = defaultdict(list)
     for (cas, name, _, _), lines in grouped.items():
         found[cas, name].append(_table(name, lines))
     return MappingProxyType({key: tuple(group) for key, group in found.items()})
 
 
-def _table(name: str, lines: list[tuple[str, Mapping[str, str]]]) -> Table:
+def _table(name: str, lines: list[tuple[str, Row]]) -> Table:
     value_column = "value" if "value" in lines[0][1] else "temperature_K"
     states = sorted(
         (
-            _number(where, row, "temperature_K"),
-            _number(where, row, "pressure_Pa") if row.get("pressure_Pa") else math.nan,
-            _number(where, row, value_column),
+            number(where, row, "temperature_K"),
+            number(where, row, "pressure_Pa") if row.get("pressure_Pa") else math.nan,
+            number(where, row, value_column),
+            digit,
         )
-        for where, row in lines
+        for (where, row), digit in zip(lines, _last_digits(lines, value_column), strict=True)
     )
     columns = np.array(states).T
     columns.setflags(write=False)  # handed out again and again
@@ -242,37 +186,16 @@ def _table(name: str, lines: list[tuple[str, Mapping[str, str]]]) -> Table:
         temperature=columns[0],
         pressure=columns[1],
         values=columns[2],
+        last_digit=columns[3],
         note="; ".join(dict.fromkeys(row["note"] for _, row in lines if row["note"])),
-        excluded=_flag(*lines[0]),
+        excluded=flag(*lines[0]),
     )
 
 
-def _rows(file: str) -> Iterator[tuple[str, Mapping[str, str]]]:
-    """Read a table: where each row stands, for messages, and its cells by column name."""
-    with (references_folder() / "handbook" / file).open(encoding="utf-8", newline="") as stream:
-        lines = csv.reader(stream)
-        header = next(lines)
-        for cells in lines:
-            where = f"references/handbook/{file}, line {lines.line_num}"
-            if len(cells) != len(header):
-                raise InputError(f"{where}: {len(cells)} cells, but the header names {len(header)} columns")
-            row = dict(zip(header, cells, strict=True))
-            if not row["source"]:
-                raise InputError(f"{where}: no source; name a key of references/bibliography.bib")
-            yield where, row
-
-
-def _number(where: str, row: Mapping[str, str], column: str) -> float:
-    try:
-        value = float(row[column])
-    except ValueError:
-        value = math.nan
-    if not math.isfinite(value):
-        raise InputError(f"{where}: {column} is {row[column]!r}; write a finite number")
-    return value
-
-
-def _flag(where: str, row: Mapping[str, str]) -> bool:
-    if row["excluded"] not in {"yes", "no"}:
-        raise InputError(f"{where}: excluded is {row['excluded']!r}; write yes or no")
-    return row["excluded"] == "yes"
+def _last_digits(lines: list[tuple[str, Row]], value_column: str) -> list[float]:
+    """Give the unit of the last printed digit, SI; pressures were printed in bar and are carried in Pa."""
+    printed = last_digits([row["printed_value"] for _, row in lines], whole=lines[0][1]["printed_unit"] != "Pa")
+    if lines[0][1]["printed_unit"] == "degC":
+        return [float(d) for d in printed]
+    scale = (number(w, row, value_column) / number(w, row, "printed_value") for w, row in lines)
+    return [float(d) * s for d, s in zip(printed, scale, strict=True)]

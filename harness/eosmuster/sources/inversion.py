@@ -5,7 +5,8 @@ from __future__ import annotations
 import numpy as np
 
 from eosmuster.errors import InputError
-from eosmuster.sources.correlations import Coefficients, Floats, Form
+from eosmuster.sources.correlations import Form
+from eosmuster.sources.vapor_pressure import Coefficients, Floats
 
 
 def invert(form: Form, coefficients: Coefficients, value: Floats, span: tuple[float, float]) -> Floats:

@@ -6,7 +6,6 @@ digits where they get tiny. Here such a state has no answer, and a reason.
 
 from __future__ import annotations
 
-import csv
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from functools import cache
@@ -16,8 +15,8 @@ from numpy.typing import ArrayLike, NDArray
 
 from eosmuster.components import Component, catalogue
 from eosmuster.errors import InputError, suggestion
-from eosmuster.paths import references_folder
 from eosmuster.quantities import PROPERTIES
+from eosmuster.sources import stated
 from eosmuster.sources.backend import equation_pressure, evaluate, state
 
 Floats = NDArray[np.float64]
@@ -42,7 +41,6 @@ CONSISTENCY = 1e-4
 uncertainty of a vapour pressure. Our choice; exceeded only below 0.01 Pa, and below 0.38 Tc."""
 
 _ROUNDING = 1e-12
-_STATED_COVERAGE_FACTOR = 2.0
 _OUTPUTS = ("temperature", "saturation_pressure", "liquid_density", "vapor_density", "liquid_h", "vapor_h")
 
 
@@ -128,7 +126,15 @@ def at_pressure(component: Component, pressure: ArrayLike, properties: Sequence[
     return _answers(component, "p", pressure, properties)
 
 
-def uncertainty_pct(component: Component, name: str, temperature: ArrayLike, coverage_factor: float = 2.0) -> Floats:
+def uncertainty_pct(
+    component: Component,
+    name: str,
+    temperature: ArrayLike,
+    coverage_factor: float = 2.0,
+    *,
+    remembered: bool = True,
+    assumed: bool = False,
+) -> Floats:
     """Give the stated expanded uncertainty of the reference equation, in % of the value.
 
     Parameters
@@ -136,31 +142,44 @@ def uncertainty_pct(component: Component, name: str, temperature: ArrayLike, cov
     name : a property
     temperature : K, any shape
     coverage_factor : of the result; stated values are taken as k = 2, also where their source names none
+    remembered : whether statements noted down from memory count as well as those that were read
+    assumed : whether the default of the component's class stands in where none is stated; then
+        `eosmuster.sources.uncertainty.library_uncertainty` tells which is which
 
     Returns
     -------
-    shape of `temperature`; NaN where no uncertainty is stated in ``references/uncertainty/coolprop.csv``.
-    For the boiling temperature the one of the vapour pressure is propagated: U(T) = U(p) / (dln p/dln T).
+    shape of `temperature`; NaN where no uncertainty is stated in ``references/uncertainty/coolprop.csv``, nor
+    assumed. For the boiling temperature the one of the vapour pressure is propagated:
+    U(T) = U(p) / (dln p/dln T).
 
     Examples
     --------
     >>> from eosmuster.components import find
     >>> uncertainty_pct(find("propane"), "saturation_pressure", [170.0, 300.0])
     array([ nan, 0.02])
+    >>> uncertainty_pct(find("propane"), "saturation_pressure", [170.0, 300.0], assumed=True)
+    array([5.  , 0.02])
     """
     T = np.asarray(temperature, np.float64)
     if name == "boiling_temperature":
-        stated = uncertainty_pct(component, "saturation_pressure", T, coverage_factor)
-        return np.asarray(stated / _steepness(component, T))
-    result = np.full(T.shape, np.nan)
-    for low, high, value in _stated().get((component.library_name, name), ()):
-        scaled = value * coverage_factor / _STATED_COVERAGE_FACTOR
-        result = np.where((low <= T) & (high >= T), np.fmax(result, scaled), result)
-    return result
+        asked = "saturation_pressure"
+        given = uncertainty_pct(component, asked, T, coverage_factor, remembered=remembered, assumed=assumed)
+        return np.asarray(given / _steepness(component, T))
+    values = stated.largest(_statements(component, name, remembered), T)
+    if assumed and component.library_name in catalogue():
+        values, _ = stated.filled(values, stated.assumed_pct(component, name, T))
+    return np.asarray(values * coverage_factor / stated.COVERAGE_FACTOR)
 
 
-def uncertainty_borders(component: Component, name: str) -> tuple[float, ...]:
-    """Give the temperatures (K) at which the stated uncertainty begins, ends or changes.
+def _statements(component: Component, name: str, remembered: bool) -> tuple[stated.Statement, ...]:
+    found = stated.statements(component.library_name, name)
+    return tuple(s for s in found if remembered or not s.how_read.startswith("from memory"))
+
+
+def uncertainty_borders(
+    component: Component, name: str, *, remembered: bool = True, assumed: bool = False
+) -> tuple[float, ...]:
+    """Give the temperatures (K) at which the uncertainty begins, ends or changes; parameters as above.
 
     Examples
     --------
@@ -168,9 +187,12 @@ def uncertainty_borders(component: Component, name: str) -> tuple[float, ...]:
     >>> uncertainty_borders(find("argon"), "liquid_density")
     (83.806, 143.15)
     """
-    stated = "saturation_pressure" if name == "boiling_temperature" else name
-    rows = _stated().get((component.library_name, stated), ())
-    return tuple(sorted({end for low, high, _ in rows for end in (low, high)}))
+    asked = "saturation_pressure" if name == "boiling_temperature" else name
+    found = _statements(component, asked, remembered)
+    ends = {end for s in found for end in (s.from_K, s.to_K)}
+    if assumed and component.library_name in catalogue():
+        ends.update(stated.assumed_borders(component, asked, found))
+    return tuple(sorted(ends))
 
 
 def citation() -> str:
@@ -243,16 +265,6 @@ def _steepness(component: Component, T: Floats) -> Floats:
     asked = np.multiply.outer([1.0 - step, 1.0 + step], T)
     down, up = saturation(component, asked, ["saturation_pressure"]).values["saturation_pressure"]
     return np.asarray(np.log(up / down) / np.log((1.0 + step) / (1.0 - step)))
-
-
-@cache
-def _stated() -> Mapping[tuple[str, str], list[tuple[float, float, float]]]:
-    table: dict[tuple[str, str], list[tuple[float, float, float]]] = {}
-    with (references_folder() / "uncertainty" / "coolprop.csv").open(encoding="utf-8", newline="") as file:
-        for row in csv.DictReader(file):
-            numbers = (float(row["from_K"]), float(row["to_K"]), float(row["uncertainty_pct"]))
-            table.setdefault((row["component"], row["property"]), []).append(numbers)
-    return table
 
 
 @cache

@@ -91,6 +91,7 @@ def _decision(plan: Plan) -> dict[str, Any]:
         "rule": plan.decision.rule,
         "coverage_factor": plan.decision.coverage_factor,
         "unfit_ratio": plan.decision.unfit_ratio,
+        "uncertainty": plan.decision.uncertainty,
         "tolerances": [
             {
                 "property": r.property,

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from eosmuster.components import Component
 from eosmuster.errors import NothingJudged
-from eosmuster.plan.schema import Plan
+from eosmuster.plan.schema import Decision, Plan
 from eosmuster.plan.tolerances import limit_steps
 from eosmuster.sources import handbook, library
 
@@ -71,11 +71,6 @@ class Series:
     independent_of_library: bool = True
 
 
-def unknown(temperature: Floats) -> Floats:
-    """Uncertainty that is not stated."""
-    return np.full(np.shape(temperature), np.nan)
-
-
 def collect(plan: Plan, left_out: list[tuple[str, str]]) -> Iterator[Series]:
     """Yield every series of a plan, component by component; what a source cannot give is said in `left_out`."""
     for row, component in enumerate(plan.components):
@@ -105,7 +100,9 @@ def _library_series(plan: Plan, row: int, component: Component, left_out: list[t
         given = given[known]
     ends = (limits.from_K, limits.to_K)
     steps = {
-        p: _steps([*_tolerance_steps(plan, component, p), *_uncertainty_steps(component, p)], ends, grid)
+        p: _steps(
+            [*_tolerance_steps(plan, component, p), *_uncertainty_steps(component, p, plan.decision)], ends, grid
+        )
         for p in plan.properties
     }
     nodes = _nodes(grid, (t for p in plan.properties for t, _ in steps[p]), ends)
@@ -127,15 +124,27 @@ def _library_series(plan: Plan, row: int, component: Component, left_out: list[t
             "",
             placed,
             values[name],
-            _library_uncertainty(component, name, plan.decision.coverage_factor),
+            _library_uncertainty(component, name, plan.decision),
             _library_evaluator(component, name, at_pressure),
             steps[name],
             independent_of_library=False,
         )
 
 
-def _library_uncertainty(component: Component, name: str, factor: float) -> Callable[[Floats], Floats]:
-    return lambda t: library.uncertainty_pct(component, name, t, factor)
+def _library_uncertainty(component: Component, name: str, decision: Decision) -> Callable[[Floats], Floats]:
+    factor, levels = decision.coverage_factor, _levels(decision)
+    return lambda t: library.uncertainty_pct(component, name, t, factor, **levels)
+
+
+def _levels(decision: Decision) -> dict[str, bool]:
+    return {"remembered": decision.uncertainty != "read", "assumed": decision.uncertainty == "assumed"}
+
+
+def _cited_uncertainty(
+    reference: handbook.Correlation | handbook.Table, name: str, decision: Decision
+) -> Callable[[Floats], Floats]:
+    factor, assumed = decision.coverage_factor, decision.uncertainty == "assumed"
+    return lambda t: handbook.uncertainty_pct(reference, t, factor, name=name, assumed=assumed)[0]
 
 
 def _library_evaluator(
@@ -169,7 +178,9 @@ def _correlation_series(plan: Plan, row: int, component: Component) -> Iterator[
             inside = (grid >= ends[0]) & (grid <= ends[1])
             if not inside.any():
                 continue
-            steps = _steps(_tolerance_steps(plan, component, name), ends, grid)
+            assumed = plan.decision.uncertainty == "assumed"
+            borders = [(t, "undecided") for t in handbook.uncertainty_borders(correlation, assumed=assumed)]
+            steps = _steps([*_tolerance_steps(plan, component, name), *borders], ends, grid)
             nodes = _nodes(grid, (t for t, _ in steps), ends)
             reach = (nodes.temperature >= ends[0]) & (nodes.temperature <= ends[1])
             values = np.where(reach, correlation(nodes.temperature), np.nan)
@@ -188,7 +199,7 @@ def _correlation_series(plan: Plan, row: int, component: Component) -> Iterator[
                 correlation.citation,
                 Nodes(nodes.temperature, pressure, state, at_pressure),
                 values,
-                unknown,
+                _cited_uncertainty(correlation, name, plan.decision),
                 _correlation_evaluator(correlation, name, ends),
                 steps,
             )
@@ -226,8 +237,9 @@ def _table_series(plan: Plan, row: int, component: Component) -> Iterator[Series
             at_pressure = name == "boiling_temperature"
             pressure = table.pressure[inside] if at_pressure else np.full(int(inside.sum()), np.nan)
             nodes = Nodes(table.temperature[inside], pressure, np.arange(int(inside.sum())), at_pressure)
+            uncertainty = _cited_uncertainty(table, name, plan.decision)
             yield Series(
-                component, row, name, table.source, table.citation, nodes, table.values[inside], unknown, None
+                component, row, name, table.source, table.citation, nodes, table.values[inside], uncertainty, None
             )
 
 
@@ -236,8 +248,8 @@ def _tolerance_steps(plan: Plan, component: Component, name: str) -> list[Step]:
     return [(tr * component.critical_temperature, "limit_step") for tr in at]
 
 
-def _uncertainty_steps(component: Component, name: str) -> list[Step]:
-    return [(t, "undecided") for t in library.uncertainty_borders(component, name)]
+def _uncertainty_steps(component: Component, name: str, decision: Decision) -> list[Step]:
+    return [(t, "undecided") for t in library.uncertainty_borders(component, name, **_levels(decision))]
 
 
 def _steps(steps: Iterable[Step], ends: tuple[float, float], grid: Floats) -> tuple[Step, ...]:

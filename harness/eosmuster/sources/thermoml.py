@@ -1,0 +1,143 @@
+"""Measured data in ThermoML, the IUPAC standard for thermodynamic property data, both forms of the archive.
+
+Sources: Frenkel et al., Pure Appl. Chem. 78 (2006) 541, doi 10.1351/pac200678030541, and the schema's version 4.0.
+Pure substances are read into `MeasuredSet`, bubble points of two into `BinarySet`. A bad block or file is a
+diagnostic, never an exception that loses the rest.
+"""
+
+from __future__ import annotations
+
+from collections import Counter
+from pathlib import Path
+from typing import BinaryIO
+
+from eosmuster.components import Component
+from eosmuster.errors import InputError
+from eosmuster.sources.measured import Diagnostic, MeasuredSet, Reading, Source
+from eosmuster.sources.measured_substances import Description, resolve
+from eosmuster.sources.thermoml_binary import Equilibrium
+from eosmuster.sources.thermoml_block import Block, described
+from eosmuster.sources.thermoml_header import Reference, description, references
+from eosmuster.sources.thermoml_joining import joined
+from eosmuster.sources.thermoml_nodes import text, texts
+from eosmuster.sources.thermoml_stream import BLOCK, Node, read_parts
+
+
+def read_file(path: Path, shown_as: str = "") -> Reading:
+    """Read one ThermoML file.
+
+    Parameters
+    ----------
+    path : of the file
+    shown_as : its name in diagnostics and sources; the path where none is given
+
+    Returns
+    -------
+    whatever could be read, and a diagnostic for everything that could not; nothing is raised for bad content.
+    Repeated points are not marked yet: `eosmuster.sources.measured_repeats.combined` does that, for one file or many.
+    """
+    name = shown_as or str(path)
+    try:
+        with path.open("rb") as stream:
+            return read_stream(stream, name)
+    except OSError as error:
+        return Reading(diagnostics=(Diagnostic(name, 0, "file", f"cannot be opened: {error.strerror}"),), files=1)
+
+
+def read_stream(stream: BinaryIO, name: str) -> Reading:
+    """Read ThermoML from a stream of bytes, as `read_file` does.
+
+    Examples
+    --------
+    >>> import io
+    >>> print(read_stream(io.BytesIO(b"<html/>"), "lab/page.xml").diagnostics[0])
+    lab/page.xml: it is not ThermoML: its root is 'html' of the namespace ''
+    """
+    file = _File(name)
+    try:
+        read_parts(stream, file.take)
+    except InputError as error:
+        file.break_off(str(error))
+    return file.reading()
+
+
+class _File:
+    """Takes the parts of one file, and gives what they hold."""
+
+    def __init__(self, name: str) -> None:
+        self._name = name
+        self._source = Source(name)
+        self._compounds: dict[Reference, Description] = {}
+        self._found: dict[Description, Component | str] = {}
+        self._block = Block(1, self._known)
+        self._sets: list[MeasuredSet] = []
+        self._binaries: list[Equilibrium] = []
+        self._diagnostics: list[Diagnostic] = []
+        self._unread: Counter[str] = Counter()
+        self._values = 0
+
+    def take(self, kind: str, nodes: list[Node], skipped: int) -> bool:
+        """Take one part; False if the rest of the block is not wanted."""
+        if kind == "NumValues":
+            return self._block.add(nodes)
+        if kind == BLOCK:
+            self._close(skipped)
+        elif kind == "Citation":
+            self._source = cited(self._name, nodes)
+        elif kind == "Compound":
+            self._compounds.update(dict.fromkeys(references(nodes), description(nodes)))
+        elif kind == "ReactionData":
+            self._block = Block(self._block.number, self._known)
+        else:
+            self._block.header.add(kind, nodes)
+        return True
+
+    def _close(self, skipped: int) -> None:
+        """Take what the block that ends has, and make ready for the next."""
+        block = self._block
+        self._sets += block.sets(self._source)
+        if block.binary is not None:
+            self._binaries.append(block.binary.equilibrium(block.number))
+        diagnostics, unread, values = block.account(self._name, skipped)
+        self._diagnostics += diagnostics
+        self._unread += unread
+        self._values += values
+        self._block = Block(block.number + 1, self._known)
+
+    def _known(self, pointers: tuple[Reference, ...]) -> tuple[Component, str]:
+        said = described(self._compounds, pointers)
+        if said not in self._found:
+            try:
+                self._found[said] = resolve(said)
+            except InputError as error:
+                self._found[said] = str(error)
+        found = self._found[said]
+        if isinstance(found, str):
+            raise InputError(found)
+        return found, next(iter(said.names), said.inchikey or said.cas)
+
+    def break_off(self, why: str) -> None:
+        """Note that the rest cannot be read; rows of a block that has not ended are left out."""
+        begun = f"; what block {self._block.number} held so far is left out" if self._block.begun else ""
+        self._diagnostics.append(Diagnostic(self._name, 0, "file", f"{why}{begun}"))
+
+    def reading(self) -> Reading:
+        """Give what was read."""
+        binaries, diagnostics, unread = joined(self._source, self._binaries)
+        return Reading(
+            sets=tuple(self._sets),
+            binaries=tuple(binaries),
+            diagnostics=(*self._diagnostics, *diagnostics),
+            unread=dict(self._unread + unread),
+            files=1,
+            values=self._values,
+        )
+
+
+def cited(name: str, nodes: list[Node]) -> Source:
+    """Read a ``Citation``: authors: journal volume (year) pages."""
+    journal = " ".join(filter(None, (text(nodes, "sPubName"), text(nodes, "sVol"))))
+    year = text(nodes, "yrPubYr")
+    where = " ".join(filter(None, (journal, f"({year})" if year else "", text(nodes, "sPage"))))
+    people = "; ".join(texts(nodes, "sAuthor"))
+    return Source(name, text(nodes, "sDOI"), ": ".join(filter(None, (people, where)))[:500])
