@@ -130,8 +130,8 @@ def summary_of(block: Block, candidate: int) -> SummaryRow:
 def unavailable_row(component: str, candidate: str, name: str, why: str) -> SummaryRow:
     """What a candidate cannot do at all."""
     nan = float("nan")
-    numbers = (0, nan, nan, nan, nan, nan, nan, nan, nan, nan, 0, 0, 0, 0, 0, nan, nan, nan)
-    return SummaryRow(component, candidate, name, "coolprop", *numbers, "", "independent", "unavailable", why)
+    numbers = (0, nan, nan, nan, nan, nan, nan, nan, nan, nan, 0, 0, 0, 0, nan, nan, nan)
+    return SummaryRow(component, candidate, name, "coolprop", *numbers, "", "independent", "unavailable", 0, why)
 
 
 def constants_of(family: str, *notes: str) -> dict[str, object]:

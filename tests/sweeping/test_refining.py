@@ -53,7 +53,7 @@ def acceptance(component: str, name: str, source: str, temperature: Floats) -> F
     limit = design_limit(component, name, temperature)
     if source != "coolprop":
         return limit
-    uncertainty = library.uncertainty_pct(components.catalogue()[component], name, temperature)
+    uncertainty = library.uncertainty_pct(components.catalogue()[component], name, temperature, remembered=False)
     return limit - np.where(np.isnan(uncertainty), 0.0, uncertainty)
 
 
