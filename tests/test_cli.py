@@ -398,7 +398,7 @@ def test_a_misspelt_built_in_plan(command: Command) -> None:
 def test_a_file_in_the_way(command: Command, plan_file: PlanFile) -> None:
     Path("taken").write_text("mine")
     sentence(command("sweep", plan_file(), "--out", "taken"), 2, "taken is a file", "--out")
-    sentence(command("sweep", plan_file(), "--out", "taken/below"), 2, "taken/below", "Not a directory")
+    sentence(command("sweep", plan_file(), "--out", "taken/below"), 2, "taken/below", "not a directory")
     assert content(Path.cwd()) == {"taken": b"mine"}
 
 

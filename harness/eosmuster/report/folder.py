@@ -108,6 +108,8 @@ def checked(folder: str | os.PathLike[str], *, overwrite: bool) -> Path:
     if is_folder:
         _check_replaceable(target, overwrite)
     nearest = next(place for place in (target, *target.parents) if place.exists())
+    if not nearest.is_dir():
+        raise InputError(f"{target}: {nearest} is a file, not a directory; choose another --out")
     if not os.access(nearest, os.W_OK | os.X_OK):
         raise InputError(f"{target}: {nearest} is not writable; choose another --out")
     return target
