@@ -1,19 +1,20 @@
-"""Cost of points.csv, side by side in one process with pandas writing the same table.
+"""Cost of points.csv, side by side in one process with pandas writing the same table, and its growth.
 
-    python tests/benchmarks/points_writer.py [ROWS]
+    python tests/benchmarks/points_writer.py [--quick]
 
-Processor time, the best of three; every number of the blocks is invented. The table that pandas writes is
-built beforehand and is not counted. The first lines tell how time and memory grow with the rows.
+Every number of the blocks is invented; what is written is counted and not kept. The table that pandas writes is built
+beforehand. The first lines tell how time and memory grow with the rows, the last one compares.
 """
 
 from __future__ import annotations
 
 import io
-import sys
-import time
 from collections.abc import Callable
+from statistics import median
 
+import measuring
 import numpy as np
+from measuring import Task, figure, interleaved, nanoseconds, ratio
 
 from eosmuster.record import Block, Record
 from eosmuster.report.points import write_points
@@ -70,40 +71,47 @@ def record_of(rows: int) -> Record:
     return Record("invented", "invented", "", tuple(invented_block(i) for i in range(count)), (), ())
 
 
-def cost(work: Callable[[], object], repeats: int = 3) -> float:
-    best = float("inf")
-    for _ in range(repeats):
-        start = time.process_time()
-        work()
-        best = min(best, time.process_time() - start)
-    return best
+def writing(record: Record) -> Callable[[], object]:
+    return lambda: write_points(record, io.BufferedWriter(Sink()))
 
 
-def growth(rows: int) -> None:
-    import resource  # POSIX only
+def growth(rows: int, rounds: int) -> None:
+    sizes = (rows // 4, rows // 2, rows, rows * 2)
+    records = {str(size): record_of(size) for size in sizes}
+    counts = {name: sum(block.verdict.size for block in record.blocks) for name, record in records.items()}
+    times = interleaved({name: Task(writing(record), counts[name]) for name, record in records.items()}, rounds)
+    before = measuring.forked(lambda: None).megabytes
+    for name, record in records.items():
+        more = measuring.forked(writing(record)).megabytes - before
+        figure(
+            f"points.csv, {counts[name]} rows",
+            f"{median(times[name]) * counts[name]:.3g} s, {nanoseconds(times[name])} a row",
+            f"{more:.1f} MB of memory beyond the record's own",
+        )
 
-    for size in (rows // 4, rows // 2, rows, rows * 2):
-        record = record_of(size)
-        held = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024.0
-        taken = cost(lambda record=record: write_points(record, Sink()))  # type: ignore[misc]
-        more = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024.0 - held
-        print(f"{size} rows: {taken:.3f} s, {more:.1f} MB of memory beyond the record's own")
 
-
-def beside_pandas(rows: int) -> None:
+def beside_pandas(rows: int, rounds: int) -> None:
     import pandas as pd
 
     record, text = record_of(rows), io.BytesIO()
     write_points(record, text)
     text.seek(0)
     table = pd.read_csv(text, dtype={"cas": str})
-    ours = cost(lambda: write_points(record, Sink())) / len(table)
-    theirs = cost(lambda: table.to_csv(Sink(), index=False, mode="wb"), 1) / len(table)
-    print(f"points.csv: {ours * 1e9:.0f} ns a row, {len(table)} rows of {text.tell() / len(table):.0f} bytes")
-    print(f"pandas to_csv of the same table: {theirs * 1e9:.0f} ns a row, {theirs / ours:.1f} times as long")
+    tasks = {"ours": writing(record), "pandas": lambda: table.to_csv(Sink(), index=False, mode="wb")}
+    times = interleaved({name: Task(work, len(table)) for name, work in tasks.items()}, rounds)
+    figure(
+        f"points.csv, {len(table)} rows of {text.tell() / len(table):.0f} bytes",
+        f"{ratio(times, 'pandas', 'ours'):.3g} x as fast",
+        f"{nanoseconds(times['ours'])} a row beside {nanoseconds(times['pandas'])} of pandas' to_csv",
+    )
+
+
+def main() -> None:
+    quick = measuring.asked_to_be_quick(__doc__)
+    rows, rounds = (20_000, 1) if quick else (200_000, 3)
+    growth(rows, rounds)
+    beside_pandas(rows, rounds)
 
 
 if __name__ == "__main__":
-    asked = int(sys.argv[1]) if len(sys.argv) > 1 else 200_000
-    growth(asked)
-    beside_pandas(asked)
+    main()

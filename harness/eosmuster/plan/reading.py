@@ -29,6 +29,7 @@ _KEYS = (
     "states",
     "tolerance",
     "decision",
+    "constants",
     "references",
     "gate",
     "display",
@@ -89,6 +90,7 @@ def parse_plan(text: str, name: str, where: str) -> Plan:
         references_use=settings.read_references(table),
         gate_fail_on=settings.read_gate(table),
         display=settings.read_display(table),
+        constants=settings.read_constants(table),
         left_out=(*selection.left_out(table), *_idle_rules(rules, components, properties)),
     )
     return _refuse_too_many(plan, where)

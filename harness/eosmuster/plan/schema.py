@@ -228,6 +228,7 @@ class Plan:
     references_use : subset of `REFERENCES`
     reference_files : measured files (none in this version)
     gate_fail_on : subset of `GATE_REASONS`
+    constants : where catalogued components have Tc, pc and omega from: ``library``, or a cited critical table
     left_out : (what, why) of everything the plan names or selects that is not swept
     """
 
@@ -248,3 +249,4 @@ class Plan:
     gate_fail_on: tuple[str, ...] = ("outside", "unsolved")
     display: Display = field(default_factory=Display)
     left_out: tuple[tuple[str, str], ...] = ()
+    constants: str = "library"

@@ -1,4 +1,4 @@
-"""The small tables of a plan: ``[decision]``, ``[references]``, ``[gate]`` and ``[display]``."""
+"""The small tables of a plan: ``[decision]``, ``[constants]``, ``[references]``, ``[gate]`` and ``[display]``."""
 
 from __future__ import annotations
 
@@ -26,6 +26,13 @@ def read_decision(plan: Table) -> Decision:
         unfit_ratio=table.number("unfit_ratio", usual.unfit_ratio, above=0.0, to=1.0),
         uncertainty=table.one_of("uncertainty", UNCERTAINTIES, usual.uncertainty),
     )
+
+
+def read_constants(plan: Table) -> str:
+    """Read where the constants of catalogued components come from; the tables are known to the sweep."""
+    table = plan.table("constants")
+    table.check_keys(("source",))
+    return table.text("source", "library")
 
 
 def read_references(plan: Table) -> tuple[str, ...]:

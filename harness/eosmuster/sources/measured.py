@@ -34,7 +34,7 @@ CODES: Mapping[str, str] = MappingProxyType(
         "state": "the state is not settled by what is given, or depends on more",
         "values": "a block without values",
         "row": "rows without a value, or that cannot be read",
-        "unit": "a unit or a way of writing numbers that is not known for sure",
+        "writing": "how a file or a number is written had to be found out, or cannot be known for sure",
         "column": "a column that is not read",
         "uncertainty": "a stated uncertainty that cannot be, or a level that had to be assumed",
         "rounding": "a stated uncertainty below the rounding of the value itself",

@@ -65,12 +65,16 @@ def independence(bound: BoundModel, component: Component, series: Series) -> str
 def judge(
     plan: Plan,
     series: Series,
+    owner: Component,
     bound: Sequence[BoundModel],
     predicted: Floats,
     status: NDArray[np.int8],
     contested: str = "",
 ) -> Judged:
-    """Judge all available models against one series; `predicted` and `status` have shape (models, N)."""
+    """Judge all available models against one series; `predicted` and `status` have shape (models, N).
+
+    `owner` is the component with the constants that the candidates were given.
+    """
     component, nodes, state = series.component, series.nodes, series.nodes.state
     rows = tuple(i for i, b in enumerate(bound) if not b.unavailable[series.row])
     mine = predicted[list(rows)]
@@ -102,7 +106,7 @@ def judge(
         phase=about.phase,
         reference_source=series.source,
         candidates=tuple(bound[i].record.name for i in rows),
-        independence=tuple(independence(bound[i], component, series) for i in rows),
+        independence=tuple(independence(bound[i], owner, series) for i in rows),
         temperature=temperature,
         pressure=nodes.pressure[state],
         reduced_temperature=reduced,

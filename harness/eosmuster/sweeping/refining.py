@@ -19,6 +19,7 @@ from eosmuster.plan.schema import Plan
 from eosmuster.plan.tolerances import limit_pct
 from eosmuster.record import WindowRow
 from eosmuster.sweeping.judging import Judged
+from eosmuster.sweeping.known import known_or
 from eosmuster.sweeping.predictions import States, predict
 from eosmuster.sweeping.series import Series
 
@@ -58,13 +59,8 @@ def _acceptance(plan: Plan, series: Series, temperature: Floats, reference: Floa
 
 def _uncertainty(judged: Judged, temperature: Floats) -> Floats:
     """Uncertainty at temperatures; what judging has asked for is not asked for again (boiling costs two states)."""
-    known, values = judged.block.temperature, judged.block.reference_uncertainty_pct
-    at = np.minimum(np.searchsorted(known, temperature), known.size - 1)
-    new = known[at] != temperature
-    found = values[at]
-    if new.any():
-        found[new] = judged.series.uncertainty(temperature[new])
-    return found
+    block = judged.block
+    return known_or(judged.series.uncertainty, block.temperature, block.reference_uncertainty_pct, temperature)
 
 
 def _trace(plan: Plan, judged: Judged, bound: Sequence[BoundModel]) -> Trace:

@@ -4,8 +4,10 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Mapping, Sequence
+from dataclasses import replace
 from typing import Any
 
+from eosmuster.compare.deviations import deviation_pct, statistics
 from eosmuster.components import Component
 from eosmuster.models.model import BoundModel
 from eosmuster.models.records import ModelRecord
@@ -14,6 +16,7 @@ from eosmuster.plan.selection import model_records
 from eosmuster.plan.tolerances import rules_in_use
 from eosmuster.record import Record, SummaryRow
 from eosmuster.sources import handbook, library
+from eosmuster.sweeping.constants import Chosen, choose
 from eosmuster.sweeping.judging import Judged, judge, summarise, unavailable_row
 from eosmuster.sweeping.predictions import Predictions
 from eosmuster.sweeping.refining import windows
@@ -35,7 +38,8 @@ def run(plan: Plan, progress: Progress = silent) -> Record:
     ------
     NothingJudged : no reference has anything to say about the plan
     """
-    left_out = list(plan.left_out)
+    chosen = choose(plan)
+    left_out = [*plan.left_out, *chosen.left]
     series = []
     for found in collect(plan, left_out):
         series.append(found)
@@ -43,12 +47,13 @@ def run(plan: Plan, progress: Progress = silent) -> Record:
     refuse_empty(series)
     records = model_records(plan)
     progress("models", 0, 1)
-    predictions = Predictions(records, plan.components, series)
+    predictions = Predictions(records, chosen.components, series)
     judged = []
     watched = watch(series)
     for i, one in enumerate(series):
         contested = watched.contested[one.row, one.property]
-        judged.append(judge(plan, one, predictions.bound, *predictions.of(i, one.property), contested))
+        owner = chosen.components[one.row]
+        judged.append(judge(plan, one, owner, predictions.bound, *predictions.of(i, one.property), contested))
         progress("verdicts", i + 1, len(series))
     progress("windows", 0, 1)
     found_windows = windows(plan, judged, predictions.bound)
@@ -58,11 +63,11 @@ def run(plan: Plan, progress: Progress = silent) -> Record:
         plan_title=plan.title,
         plan_text=plan.text,
         blocks=tuple(j.block for j in judged),
-        summary=tuple(_summary(plan, judged, predictions.bound)),
+        summary=tuple(_compared(_summary(plan, judged, predictions.bound), chosen, plan, series, records)),
         windows=tuple(found_windows),
         left_out=tuple(left_out),
         decision=_decision(plan),
-        constants={c.name: _constants(c) for c in plan.components},
+        constants={c.name: _constants(c) for c in chosen.components},
         models={r.name: _model(r) for r in records},
         citations=_citations(series),
         display={
@@ -84,6 +89,32 @@ def _summary(plan: Plan, judged: Sequence[Judged], bound: Sequence[BoundModel]) 
                 reason = model.unavailable[component]
                 rows.append(unavailable_row(plan.components[component], model.record.name, name, reason))
     return rows
+
+
+def _compared(
+    rows: Sequence[SummaryRow], chosen: Chosen, plan: Plan, series: Sequence[Series], records: Sequence[ModelRecord]
+) -> list[SummaryRow]:
+    """Say beside each row of a component with replaced constants what the library's own would have given."""
+    if not chosen.replaced:
+        return list(rows)
+    usual = Predictions(records, plan.components, series)
+    names = [record.name for record in records]
+    aad = {}
+    for i, one in enumerate(series):
+        state = one.nodes.state
+        deviation = deviation_pct(usual.of(i, one.property)[0][:, state], one.values[state])
+        found = statistics(deviation, one.nodes.temperature[state]).aad
+        for name, value in zip(names, found.tolist(), strict=True):
+            aad[one.component.name, name, one.property, one.source] = value
+    return [_with_note(row, aad) if row.component in chosen.replaced else row for row in rows]
+
+
+def _with_note(row: SummaryRow, aad: Mapping[tuple[str, str, str, str], float]) -> SummaryRow:
+    usual = aad.get((row.component, row.candidate, row.property, row.reference_source), math.nan)
+    if math.isnan(usual):
+        return row
+    note = f"AAD {usual:.3g} % with the library's constants"
+    return replace(row, note=f"{row.note}; {note}" if row.note else note)
 
 
 def _decision(plan: Plan) -> dict[str, Any]:

@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from eosmuster.diagnose.conflicts import Conflict, Source, find_conflict
+from eosmuster.sweeping.known import known_or
 from eosmuster.sweeping.series import Series
 
 Floats = NDArray[np.float64]
@@ -60,4 +61,5 @@ def _evaluator(series: Series) -> Callable[[Floats], Floats] | None:
     evaluate = series.evaluate
     if evaluate is None:
         return None
-    return lambda temperature: evaluate(temperature)[0]
+    at, values = series.nodes.temperature, series.values
+    return lambda temperature: known_or(lambda t: evaluate(t)[0], at, values, temperature)

@@ -1,0 +1,43 @@
+"""Run all benchmark scripts and print what they find under a description of the machine.
+
+    python tests/benchmarks/run.py [--quick]
+
+Ten to fifteen minutes on two quiet cores; every script is a process of its own. `--quick` proves only that the
+scripts work: it takes seconds, runs them one after the other in this process, and its figures mean nothing.
+"""
+
+from __future__ import annotations
+
+import runpy
+import subprocess
+import sys
+from pathlib import Path
+
+import measuring
+
+FOLDER = Path(__file__).resolve().parent
+SCRIPTS = (
+    "kernel.py",
+    "accuracy.py",
+    "coverage.py",
+    "whole_command.py",
+    "catalogue.py",
+    "growth.py",
+    "points_writer.py",
+)
+
+
+def main() -> None:
+    quick = measuring.asked_to_be_quick(__doc__)
+    print("\n".join(measuring.machine()))
+    for name in SCRIPTS:
+        print(f"\n{name}", flush=True)
+        if quick:
+            sys.argv[1:] = ["--quick"]
+            runpy.run_path(str(FOLDER / name), run_name="__main__")
+        else:
+            subprocess.run([sys.executable, str(FOLDER / name)], env=measuring.AS_STARTED, check=True)
+
+
+if __name__ == "__main__":
+    main()
