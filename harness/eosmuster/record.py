@@ -135,6 +135,7 @@ class Record:
     constants : component -> constant -> {"value", "unit", "source"}; besides "cas", "class" and "notes", a list
         of what a reader must know (a replaced constant, a spin isomer)
     citations : source key -> full reference
+    files : (name, SHA-256) of the measured files of the plan
     conflicts : (component, property, sentence) of references that disagree, and who stands alone
     references : the plan's references in its order: the first that knows a fluid is the one the answer is given by
     display : temperature / pressure / density -> unit of what people read
@@ -154,4 +155,5 @@ class Record:
     display: Mapping[str, str] = field(default_factory=dict)
     references: tuple[str, ...] = ()
     conflicts: tuple[tuple[str, str, str], ...] = ()
+    files: tuple[tuple[str, str], ...] = ()
     version: int = RECORD_VERSION

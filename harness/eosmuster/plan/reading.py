@@ -91,6 +91,7 @@ def parse_plan(text: str, name: str, where: str) -> Plan:
         gate_fail_on=settings.read_gate(table),
         display=settings.read_display(table),
         constants=settings.read_constants(table),
+        reference_files=settings.read_files(table),
         left_out=(*selection.left_out(table), *_idle_rules(rules, components, properties)),
     )
     return _refuse_too_many(plan, where)

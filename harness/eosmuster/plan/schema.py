@@ -226,7 +226,7 @@ class Plan:
     grid : the saturated states
     tolerances : the default rules, then the plan's: everything `tolerances.limit_pct` needs
     references_use : subset of `REFERENCES`
-    reference_files : measured files (none in this version)
+    reference_files : patterns of measured files, relative to the plan's folder
     gate_fail_on : subset of `GATE_REASONS`
     constants : where catalogued components have Tc, pc and omega from: ``library``, or a cited critical table
     left_out : (what, why) of everything the plan names or selects that is not swept

@@ -35,12 +35,15 @@ def read_constants(plan: Table) -> str:
     return table.text("source", "library")
 
 
+def read_files(plan: Table) -> tuple[str, ...]:
+    """Read the patterns of measured files."""
+    return tuple(plan.table("references").texts("files"))
+
+
 def read_references(plan: Table) -> tuple[str, ...]:
     """Read what the candidates are judged against."""
     table = plan.table("references")
     table.check_keys(("use", "files"))
-    if table.texts("files"):
-        raise InputError(f"{table.at('files')}: measured files are not read by this version; leave `files` out")
     used = table.chosen("use", REFERENCES, REFERENCES)
     if not used:
         raise InputError(f"{table.at('use')}: no reference, so nothing can be judged; valid: {', '.join(REFERENCES)}")

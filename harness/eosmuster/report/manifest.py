@@ -55,6 +55,7 @@ def manifest(
         "points": {"rows": sum(block.predicted.size for block in record.blocks), "written": points},
         "summary": {"rows": len(record.summary)},
         "windows": {"rows": len(record.windows)},
+        "measured_files": dict(record.files),
         "contested": [{"component": c, "property": p, "finding": s} for c, p, s in record.conflicts],
         "left_out": [{"what": what, "why": why} for what, why in record.left_out],
         "constants": jsonable(record.constants),

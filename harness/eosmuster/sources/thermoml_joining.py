@@ -33,13 +33,10 @@ def joined(source: Source, found: Sequence[Equilibrium]) -> tuple[list[BinarySet
         bubbles = [_Bubbles(one) for one in pair if set(BUBBLE_POINT) <= set(one.columns)]
         for one in (one for one in pair if not set(BUBBLE_POINT) <= set(one.columns)):
             state = [name for name in BUBBLE_POINT if name in one.columns]
-            open_ones = [bubble for bubble in bubbles if VAPOR not in bubble.base.columns]
-            if len(state) != 2 or VAPOR not in one.columns or not open_ones:
+            fitting = _fitting(one, state, bubbles)
+            if fitting is None:
                 unread[INCOMPLETE] += _size(one) * len(one.uncertainty)
-                continue
-            fitting = max(open_ones, key=lambda bubble: _shared(bubble.base, one, state))
-            left = fitting.take(one, state)
-            if left:
+            elif left := fitting.take(one, state):
                 told.append(_left_over(source.file, one, fitting.base, left))
         sets += (bubble.set(source) for bubble in bubbles if _size(bubble.base))
     return sets, told, +unread
@@ -86,6 +83,15 @@ class _Bubbles:
             vapor_fraction=self._vapor,
             uncertainty={**base.uncertainty, **vapor},
         )
+
+
+def _fitting(one: Equilibrium, state: Sequence[str], bubbles: Sequence[_Bubbles]) -> _Bubbles | None:
+    """Find the bubble points that share most states with vapor compositions, and have no vapor of their own yet."""
+    if len(state) != 2 or VAPOR not in one.columns:
+        return None
+    shared = [(_shared(b.base, one, state), -i) for i, b in enumerate(bubbles) if VAPOR not in b.base.columns]
+    most, place = max(shared, default=(0, 0))
+    return bubbles[-place] if most else None
 
 
 def _pairs(found: Sequence[Equilibrium]) -> Iterator[list[Equilibrium]]:

@@ -235,9 +235,10 @@ def _uncertainty_faults(points: _Points) -> Iterator[tuple[str, str, int]]:
 def _listed(rows: list[int]) -> str:
     """Name rows, the first three of many.
 
-    >>> _listed([2]), _listed([2, 3, 4, 5])
+    >>> _listed([2, 2]), _listed([2, 3, 4, 5])
     ('row 2', '4 rows (2, 3, 4, ...)')
     """
-    if len(rows) == 1:
-        return f"row {rows[0]}"
-    return f"{len(rows)} rows ({', '.join(map(str, rows[:3]))}{', ...' if len(rows) > 3 else ''})"
+    names = [str(row) for row in dict.fromkeys(rows)]
+    if len(names) == 1:
+        return f"row {names[0]}"
+    return f"{len(names)} rows ({', '.join(names[:3])}{', ...' if len(names) > 3 else ''})"

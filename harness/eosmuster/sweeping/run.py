@@ -18,6 +18,7 @@ from eosmuster.record import Record, SummaryRow
 from eosmuster.sources import handbook, library
 from eosmuster.sweeping.constants import Chosen, choose
 from eosmuster.sweeping.judging import Judged, judge, summarise, unavailable_row
+from eosmuster.sweeping.measured import measure
 from eosmuster.sweeping.predictions import Predictions
 from eosmuster.sweeping.refining import windows
 from eosmuster.sweeping.series import Series, collect, refuse_empty
@@ -44,6 +45,9 @@ def run(plan: Plan, progress: Progress = silent) -> Record:
     for found in collect(plan, left_out):
         series.append(found)
         progress("references", found.row + 1, len(plan.components))
+    found_in_files = measure(plan, progress)
+    series += found_in_files.series
+    left_out += found_in_files.left_out
     refuse_empty(series)
     records = model_records(plan)
     progress("models", 0, 1)
@@ -75,8 +79,12 @@ def run(plan: Plan, progress: Progress = silent) -> Record:
             "pressure": plan.display.pressure,
             "density": plan.display.density,
         },
-        references=plan.references_use,
-        conflicts=tuple((c.component, c.quantity, c.sentence) for c in watched.conflicts),
+        references=(*plan.references_use, *(("measured",) if plan.reference_files else ())),
+        conflicts=(
+            *((c.component, c.quantity, c.sentence) for c in watched.conflicts),
+            *found_in_files.conflicts,
+        ),
+        files=found_in_files.files,
     )
 
 
