@@ -82,6 +82,7 @@ def printed(tmp_path_factory: pytest.TempPathFactory) -> dict[str, str]:
     return dict(zip(["", *sections[1::2]], sections[::2], strict=True))
 
 
+@pytest.mark.slow
 def test_the_machine_is_described(printed: dict[str, str]) -> None:
     processor, system, versions = printed[""].strip().splitlines()
     assert re.fullmatch(r"processor: .+, \d+ cores; one thread is used", processor)
@@ -90,6 +91,7 @@ def test_the_machine_is_described(printed: dict[str, str]) -> None:
         assert re.search(rf"\b{package} \d+\.\d+", versions)
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize("script", SCRIPTS)
 def test_every_script_prints_its_figures(script: str, printed: dict[str, str]) -> None:
     lines = printed[script].strip().splitlines()
@@ -97,6 +99,7 @@ def test_every_script_prints_its_figures(script: str, printed: dict[str, str]) -
         assert any(re.match(pattern, line) for line in lines), f"{pattern} is not in\n{printed[script]}"
 
 
+@pytest.mark.slow
 @pytest.mark.parametrize("script", SCRIPTS)
 def test_every_line_is_one_figure(script: str, printed: dict[str, str]) -> None:
     for line in printed[script].strip().splitlines():

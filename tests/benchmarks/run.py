@@ -2,8 +2,9 @@
 
     python tests/benchmarks/run.py [--quick]
 
-Ten to fifteen minutes on two quiet cores; every script is a process of its own. `--quick` proves only that the
-scripts work: it takes seconds, runs them one after the other in this process, and its figures mean nothing.
+About ten minutes; every script is a process of its own, and the targets of their issue stand beside the figures.
+`--quick` proves only that the scripts work: it takes seconds, runs them one after the other in this process, and its
+figures mean nothing.
 """
 
 from __future__ import annotations

@@ -42,10 +42,8 @@ def test_units_in_the_header() -> None:
     )
     one = only(reading)
     assert told(reading) == []
-    assert (one.component.name, one.property, one.phase, one.state) == (
-        *("n-Propane", "saturation_pressure"),
-        *("two-phase", "saturated"),
-    )
+    assert (one.component.name, one.property) == ("n-Propane", "saturation_pressure")
+    assert (one.phase, one.state) == ("two-phase", "saturated")
     assert (one.method, one.source.name, one.block, one.series) == ("static cell", "lab.csv", 1, 3)
     np.testing.assert_allclose(one.temperature, [293.15, 313.15])
     np.testing.assert_allclose(one.values, [836400.0, 1369400.0])
@@ -231,7 +229,8 @@ def test_a_column_that_cannot_be_read_says_so(header: str, words: str) -> None:
 def test_a_column_of_remarks_is_named_and_passed_over() -> None:
     reading = pressures("propane,300,998,XY", header="component,temperature [K],saturation_pressure [kPa],operator")
     assert len(only(reading)) == 1
-    assert told(reading)[0].startswith("column: column 'operator' is not read; ")
+    [sentence] = told(reading)
+    assert sentence.startswith("column: column 'operator' is not read; ")
 
 
 def test_a_column_that_stands_twice_is_not_read() -> None:

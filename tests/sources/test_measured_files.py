@@ -101,5 +101,6 @@ def test_memory_does_not_grow_with_the_number_of_files(tmp_path: Path) -> None:
         assert points == 18 * count
         return found
 
-    peak(1)  # what is cached is cached
-    assert peak(60) < 1.2 * peak(6)
+    peak(6)  # what is cached is cached
+    # a file kept, or left to the garbage collector, is a multiple of this; the interpreter's own lists grow a little
+    assert peak(60) - peak(6) < 54 * 2_000

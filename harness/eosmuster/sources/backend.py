@@ -63,6 +63,22 @@ def equation_pressure(name: str, T: Floats, rho: Floats) -> Floats:
     return result
 
 
+def density(name: str, phase: str, T: Floats, p: Floats) -> Floats:
+    """Give the density of the stated phase's root at (T, p), mol/m3; NaN where the library fails.
+
+    `phase` is ``liquid``, ``gas`` or "", the stable one.
+    """
+    from CoolProp import CoolProp
+
+    one = state(name, phase=phase)
+    result = np.full(T.shape, np.nan)
+    for i, (t, x) in enumerate(zip(T.tolist(), p.tolist(), strict=True)):
+        with suppress(ValueError):  # stays NaN: no such root, or out of range
+            one.update(CoolProp.PT_INPUTS, x, t)
+            result[i] = one.rhomolar()
+    return result
+
+
 def state(name: str, backend: str = "HEOS", phase: str = "") -> AbstractState:
     """Give this thread's state object of a fluid, with its phase imposed where one is named."""
     return _state(name, backend, phase, threading.get_ident())

@@ -16,7 +16,7 @@ from numpy.typing import ArrayLike, NDArray
 from eosmuster.components import Component, catalogue
 from eosmuster.errors import InputError, suggestion
 from eosmuster.quantities import PROPERTIES
-from eosmuster.sources import stated
+from eosmuster.sources import backend, stated
 from eosmuster.sources.backend import equation_pressure, evaluate, state
 
 Floats = NDArray[np.float64]
@@ -124,6 +124,36 @@ def at_pressure(component: Component, pressure: ArrayLike, properties: Sequence[
     '373.124'
     """
     return _answers(component, "p", pressure, properties)
+
+
+def density(component: Component, temperature: ArrayLike, pressure: ArrayLike, phase: str = "") -> Floats:
+    """Give single-phase densities, of the stated phase's root and not of whatever is stable.
+
+    Parameters
+    ----------
+    temperature, pressure : K and Pa, one shape
+    phase : ``liquid``, ``vapor``, or anything else for the stable phase
+
+    Returns
+    -------
+    mol/m3 in that shape; NaN below the equation's range, for what the library does not know, and where it fails
+
+    Examples
+    --------
+    >>> from eosmuster.components import find
+    >>> f"{density(find('water'), [298.15], [101325.0], 'liquid')[0] * 0.018015268:.3f} kg/m3"
+    '997.048 kg/m3'
+    """
+    T, p = np.broadcast_arrays(np.asarray(temperature, np.float64), np.asarray(pressure, np.float64))
+    within, result = limits(component), np.full(T.shape, np.nan)
+    if within is None:
+        return result
+    asked = np.isfinite(T) & np.isfinite(p) & (p > 0.0) & (within.from_K * (1.0 - _ROUNDING) <= T)
+    root = {"liquid": "liquid", "vapor": "gas"}.get(phase, "")
+    if root == "liquid":
+        asked &= within.to_K > T
+    result[asked] = backend.density(component.library_name, root, T[asked], p[asked])
+    return result
 
 
 def uncertainty_pct(

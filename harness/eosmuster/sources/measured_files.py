@@ -50,11 +50,16 @@ def read_files(
     """
     found: dict[str, None] = {}
     for pattern in patterns:
-        named = [name for name in sorted(_matching(pattern, folder)) if not (folder / name).is_dir()]
+        named = [name for name in sorted(_matching(pattern, folder)) if _is_file(folder / name)]
         if not named:
             raise InputError(f"references.files: {shown(pattern)} names no file in {folder}")
         found |= dict.fromkeys(name for name in named if not name.endswith(DESCRIPTOR))
     return combined(readings(found, folder, progress, own))
+
+
+def _is_file(path: Path) -> bool:
+    """Tell whether there is something that is no folder; a link that leads nowhere counts, and is listed as bad."""
+    return (path.exists() or path.is_symlink()) and not path.is_dir()
 
 
 def _matching(pattern: str, folder: Path) -> list[str]:
@@ -74,9 +79,7 @@ def read_folder(folder: Path, progress: Progress | None = None, own: Sequence[Co
     if not folder.is_dir():
         raise InputError(f"{folder} is no folder; valid is one with ThermoML or CSV files")
     inside = (Path(place, name) for place, _, names in os.walk(folder) for name in names)
-    found = sorted(
-        path.relative_to(folder).as_posix() for path in inside if path.suffix.lower() in (THERMOML, *TABLES)
-    )
+    found = sorted(path.relative_to(folder).as_posix() for path in inside if path.suffix.lower() in IN_FOLDERS)
     return combined(readings(found, folder, progress, own))
 
 

@@ -13,10 +13,11 @@ from typing import BinaryIO
 
 from eosmuster.components import Component
 from eosmuster.errors import InputError
+from eosmuster.quantities import shown
 from eosmuster.sources.measured import Diagnostic, MeasuredSet, Reading, Source
 from eosmuster.sources.measured_substances import Description, resolve
 from eosmuster.sources.thermoml_binary import Equilibrium
-from eosmuster.sources.thermoml_block import Block, described
+from eosmuster.sources.thermoml_block import Block
 from eosmuster.sources.thermoml_header import Reference, description, references
 from eosmuster.sources.thermoml_joining import joined
 from eosmuster.sources.thermoml_nodes import text, texts
@@ -67,9 +68,8 @@ class _File:
     def __init__(self, name: str) -> None:
         self._name = name
         self._source = Source(name)
-        self._compounds: dict[Reference, Description] = {}
-        self._found: dict[Description, Component | str] = {}
-        self._block = Block(1, self._known)
+        self._compounds = Compounds()
+        self._block = Block(1, self._compounds)
         self._sets: list[MeasuredSet] = []
         self._binaries: list[Equilibrium] = []
         self._diagnostics: list[Diagnostic] = []
@@ -85,9 +85,9 @@ class _File:
         elif kind == "Citation":
             self._source = cited(self._name, nodes)
         elif kind == "Compound":
-            self._compounds.update(dict.fromkeys(references(nodes), description(nodes)))
+            self._compounds.add(nodes)
         elif kind == "ReactionData":
-            self._block = Block(self._block.number, self._known)
+            self._block = Block(self._block.number, self._compounds)
         else:
             self._block.header.add(kind, nodes)
         return True
@@ -102,19 +102,7 @@ class _File:
         self._diagnostics += diagnostics
         self._unread += unread
         self._values += values
-        self._block = Block(block.number + 1, self._known)
-
-    def _known(self, pointers: tuple[Reference, ...]) -> tuple[Component, str]:
-        said = described(self._compounds, pointers)
-        if said not in self._found:
-            try:
-                self._found[said] = resolve(said)
-            except InputError as error:
-                self._found[said] = str(error)
-        found = self._found[said]
-        if isinstance(found, str):
-            raise InputError(found)
-        return found, next(iter(said.names), said.inchikey or said.cas)
+        self._block = Block(block.number + 1, self._compounds)
 
     def break_off(self, why: str) -> None:
         """Note that the rest cannot be read; rows of a block that has not ended are left out."""
@@ -132,6 +120,34 @@ class _File:
             files=1,
             values=self._values,
         )
+
+
+class Compounds:
+    """The compounds of a file; called with a block's references, gives the substance and the file's name for it."""
+
+    def __init__(self) -> None:
+        self._described: dict[Reference, Description] = {}
+        self._found: dict[Description, Component | str] = {}
+
+    def add(self, nodes: list[Node]) -> None:
+        """Take a ``Compound``."""
+        self._described.update(dict.fromkeys(references(nodes), description(nodes)))
+
+    def __call__(self, pointers: tuple[Reference, ...]) -> tuple[Component, str]:
+        """Find a substance; raises `InputError` with the reason if it cannot be told."""
+        said = next((self._described[one] for one in pointers if one in self._described), None)
+        if said is None:
+            named = ", ".join(f"{kind} {number}" for kind, number in pointers) or "nothing"
+            raise InputError(f"its substance is {shown(named)}, which no compound of the file is")
+        if said not in self._found:
+            try:
+                self._found[said] = resolve(said)
+            except InputError as error:
+                self._found[said] = str(error)
+        found = self._found[said]
+        if isinstance(found, str):
+            raise InputError(found)
+        return found, next(iter(said.names), said.inchikey or said.cas)
 
 
 def cited(name: str, nodes: list[Node]) -> Source:

@@ -9,7 +9,6 @@ from dataclasses import dataclass, field
 from eosmuster.components import Component
 from eosmuster.errors import InputError
 from eosmuster.sources.measured import Diagnostic, MeasuredSet, Source
-from eosmuster.sources.measured_substances import Description
 from eosmuster.sources.thermoml_binary import BinaryRows, is_binary
 from eosmuster.sources.thermoml_header import Header, Reference
 from eosmuster.sources.thermoml_rows import Rows
@@ -125,12 +124,3 @@ class Block:
             )
         label = self.header.names if len(self.header.components) == 1 else f"{self.header.names} (mixture)"
         return [], Counter({label: values}), values
-
-
-def described(known: dict[Reference, Description], pointers: tuple[Reference, ...]) -> Description:
-    """Find what a file says of the substance a block points at."""
-    for pointer in pointers:
-        if pointer in known:
-            return known[pointer]
-    kinds = ", ".join(f"{kind} {number}" for kind, number in pointers) or "nothing"
-    raise InputError(f"its substance is {kinds}, which no compound of the file is")

@@ -104,6 +104,8 @@ def read_parts(stream: BinaryIO, take: Take) -> None:
         if reader.begun:
             raise
         raise InputError(f"its encoding cannot be read: {shown(str(error))}") from None
+    finally:
+        reader.release()
 
 
 _CUT_OFF = {
@@ -147,6 +149,11 @@ class _Reader:
 
     def close(self) -> None:
         self._parser.Parse(b"", True)
+
+    def release(self) -> None:
+        """Drop the handlers, which hold the parser that holds them: thousands of files would wait for collection."""
+        self._parser.StartElementHandler = self._parser.EndElementHandler = None
+        self._parser.CharacterDataHandler = self._parser.StartDoctypeDeclHandler = None
 
     def _refuse(self, *_: object) -> None:
         line = self._parser.CurrentLineNumber

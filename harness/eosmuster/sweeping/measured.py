@@ -130,6 +130,8 @@ def _conflicts(reading: Reading) -> Iterator[tuple[str, str, str]]:
 def _suspected(one: MeasuredSet, companions: Iterable[Component]) -> tuple[Suspicion, ...]:
     others = [c for c in companions if c.name != one.component.name]
     at, component = one.temperature, one.component
+    if one.property == "density":
+        return _suspected_density(one, others)
     if one.property not in PROPERTIES:
         return ()
     if one.property == "boiling_temperature":
@@ -144,5 +146,19 @@ def _suspected(one: MeasuredSet, companions: Iterable[Component]) -> tuple[Suspi
         values["saturation_pressure"],
         values["liquid_density"],
         values["vapor_density"],
+    )
+    return suspicions(one, predicted, [c.name for c in others])
+
+
+def _suspected_density(one: MeasuredSet, others: Sequence[Component]) -> tuple[Suspicion, ...]:
+    """Hold single-phase densities against the stated phase's root."""
+
+    def reference(component: Component) -> Floats:
+        return library.density(component, one.temperature, one.pressure, one.phase)
+
+    asked = ["saturation_pressure", "liquid_density", "vapor_density"]
+    saturated = library.saturation(one.component, one.temperature, asked).values
+    predicted = Predictions(
+        reference(one.component), {c: reference(c) for c in others}, *(saturated[name] for name in asked)
     )
     return suspicions(one, predicted, [c.name for c in others])
