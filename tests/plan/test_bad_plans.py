@@ -219,8 +219,8 @@ BAD: dict[str, tuple[str, str]] = {
     ),
     "no reference": (BASE + "[references]\nuse = []", "references.use: no reference, so nothing can be judged"),
     "reference files": (
-        BASE + '[references]\nfiles = ["lab/*.xml"]',
-        "references.files: measured files are not read",
+        BASE + "[references]\nfiles = [5]",
+        "references.files: 5 is not a text",
     ),
     "gate": (BASE + '[gate]\nfail_on = ["inside"]', "gate.fail_on: unknown 'inside'; .*valid: outside"),
     "gate empty": (BASE + "[gate]\nfail_on = []", "gate.fail_on: a gate that cannot fail"),
