@@ -291,22 +291,3 @@ def test_a_phase_nobody_knows_is_refused() -> None:
     assert told(reading) == [
         "phase: column 'density [kg/m3]': line 2 left out: the phase is 'solid'; valid: liquid, vapor, fluid"
     ]
-
-
-@pytest.mark.parametrize(
-    ("content", "words"),
-    [
-        (b"", "it is empty"),
-        (b"\n\n# nothing\n", "it is empty"),
-        (b"just words", "has no delimiter; valid: commas, semicolons, tabs, bars"),
-        (b"a,b;c\n", "may be delimited by ';' or ','"),
-        (b"a,b\0c\n", "it holds NUL characters"),
-        (b'component,"temperature\npropane,300\n', "line 3 cannot be read: unexpected end of data"),
-        (b'component,temperature [K]\n"pro"pane,300\n', "line 2 cannot be read"),
-    ],
-)
-def test_a_file_that_is_no_table_is_one_diagnostic(content: bytes, words: str) -> None:
-    reading = read(content)
-    [found] = reading.diagnostics
-    assert (found.code, found.block) == ("file", 0)
-    assert words in found.sentence

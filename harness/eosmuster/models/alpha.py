@@ -116,14 +116,13 @@ def mathias_copeman_slope(tau: Floats, c1: Floats, c2: Floats, c3: Floats) -> Fl
     return np.asarray(-root * (c1 + x * (2.0 * c2 + x * 3.0 * c3)) / (1.0 + x * (c1 + x * (c2 + x * c3))))
 
 
-def _twu_log(tau: Floats, L: Floats, M: Floats, N: Floats) -> Floats:
-    log_tr = np.log1p(-tau)
+def _twu_log(log_tr: Floats, L: Floats, M: Floats, N: Floats) -> Floats:
     return np.asarray(N * (M - 1.0) * log_tr - L * np.expm1(M * N * log_tr))
 
 
 def twu_excess(tau: Floats, L: Floats, M: Floats, N: Floats) -> Floats:
     """Alpha = Tr**(N(M-1)) exp[L (1 - Tr**(MN))] (Twu et al., Fluid Phase Equilib. 69 (1991) 33)."""
-    return np.expm1(_twu_log(tau, L, M, N))
+    return np.expm1(_twu_log(np.log1p(-tau), L, M, N))
 
 
 def twu_slope(tau: Floats, L: Floats, M: Floats, N: Floats) -> Floats:
@@ -138,7 +137,8 @@ def twu_pair_excess(
 
     Twu, Coon and Cunningham, Fluid Phase Equilib. 105 (1995) 49 (PR) and 61 (SRK); subcritical parameters.
     """
-    first, second = twu_excess(tau, L0, M0, N0), twu_excess(tau, L1, M1, N1)
+    log_tr = np.log1p(-tau)
+    first, second = np.expm1(_twu_log(log_tr, L0, M0, N0)), np.expm1(_twu_log(log_tr, L1, M1, N1))
     return np.asarray(first + omega * (second - first))
 
 
