@@ -41,6 +41,8 @@ def main(arguments: Sequence[str] | None = None) -> int:
 
     0 done; 1 the gate is not met; 2 bad plan, input or usage; 3 internal failure; 4 nothing could be judged.
     """
+    # no matrix product here gains from threads, and waiting ones cost processor time; numpy reads this when loaded
+    os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
     given = list(sys.argv[1:] if arguments is None else arguments)
     debug = "--debug" in given
     try:

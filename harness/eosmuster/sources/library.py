@@ -270,7 +270,7 @@ def _reason_before(component: Component, given: str, x: Floats) -> NDArray[np.in
     name = component.library_name
     top = state(name).p_critical()
     bottom = evaluate(name, "T", np.array([within.from_K]), ["saturation_pressure"])[0, 0]
-    return np.asarray(np.select([~(x >= bottom), x >= top], [BELOW_RANGE, ABOVE_RANGE], ANSWERED), np.int8)
+    return np.where(x >= bottom, np.where(x >= top, ABOVE_RANGE, ANSWERED), BELOW_RANGE).astype(np.int8)
 
 
 def _reason_after(name: str, solved: Mapping[str, Floats]) -> NDArray[np.int8]:
@@ -279,21 +279,26 @@ def _reason_after(name: str, solved: Mapping[str, Floats]) -> NDArray[np.int8]:
     two_phases = (solved["liquid_density"] > rho) & (solved["vapor_h"] > solved["liquid_h"])
     contradicts = ~(np.abs(p / equation_pressure(name, T, rho) - 1.0) <= CONSISTENCY)
     in_range = _range_reason(T, _limits(name))
-    codes = np.select([~two_phases, in_range != ANSWERED, contradicts], [FAILED, in_range, INCONSISTENT], ANSWERED)
-    return np.asarray(codes, np.int8)
+    answered = np.where((in_range == ANSWERED) & contradicts, INCONSISTENT, in_range)
+    return np.where(two_phases, answered, FAILED).astype(np.int8)
 
 
 def _range_reason(T: Floats, within: Limits) -> NDArray[np.int8]:
     # the lower end forgives the rounding of a unit conversion: 0.01 degC is 273.15999999999997 K
     below = ~(within.from_K * (1.0 - _ROUNDING) <= T)
-    return np.asarray(np.select([below, within.to_K <= T], [BELOW_RANGE, ABOVE_RANGE], ANSWERED), np.int8)
+    return np.where(below, BELOW_RANGE, np.where(within.to_K <= T, ABOVE_RANGE, ANSWERED)).astype(np.int8)
 
 
 def _steepness(component: Component, T: Floats) -> Floats:
     """Give dln p/dln T of the saturation curve by a central difference; NaN at its very ends."""
     step = 1e-4
     asked = np.multiply.outer([1.0 - step, 1.0 + step], T)
-    down, up = saturation(component, asked, ["saturation_pressure"]).values["saturation_pressure"]
+    within, name = limits(component), component.library_name
+    if within is None:
+        return np.full(T.shape, np.nan)
+    # the pressure alone: all that `saturation` checks besides costs five times as much
+    p = evaluate(name, "T", asked.ravel(), ["saturation_pressure"])[0].reshape(asked.shape)
+    down, up = np.where(_range_reason(asked, within) == ANSWERED, p, np.nan)
     return np.asarray(np.log(up / down) / np.log((1.0 + step) / (1.0 - step)))
 
 

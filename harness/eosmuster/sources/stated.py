@@ -129,7 +129,7 @@ def assumed_borders(component: Component, name: str, hidden_by: Iterable[Stateme
 def filled(stated: Floats, assumed: Floats) -> tuple[Floats, Codes]:
     """Give what is stated, what is assumed where nothing is stated, and the origin codes of the result."""
     values = np.where(np.isnan(stated), assumed, stated)
-    codes = np.select([np.isfinite(stated), np.isfinite(values)], [STATED, ASSUMED], UNKNOWN)
+    codes = np.where(np.isfinite(stated), STATED, np.where(np.isfinite(values), ASSUMED, UNKNOWN))
     return values, codes.astype(np.int8)
 
 
