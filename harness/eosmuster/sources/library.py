@@ -40,8 +40,11 @@ CONSISTENCY = 1e-4
 """Largest relative difference between psat and p(T, rho'') of the same equation: 0.01 %, below any stated
 uncertainty of a vapour pressure. Our choice; exceeded only below 0.01 Pa, and below 0.38 Tc."""
 
+_SUSPECT_BELOW = 100.0  # Pa: far above any saturation pressure that contradicts its equation, so that few are checked
+
 _ROUNDING = 1e-12
-_OUTPUTS = ("temperature", "saturation_pressure", "liquid_density", "vapor_density", "liquid_h", "vapor_h")
+_OUTPUTS = ("temperature", "saturation_pressure", "liquid_density", "vapor_density")
+_ENTHALPIES = ("liquid_h", "vapor_h")  # as dear as all the others together
 
 
 @dataclass(frozen=True)
@@ -239,7 +242,8 @@ def _answers(component: Component, given: str, values: ArrayLike, properties: Se
     x, name = np.asarray(values, np.float64), component.library_name
     reason = _reason_before(component, given, x)
     asked = reason == ANSWERED
-    solved = dict(zip(_OUTPUTS, evaluate(name, given, x[asked], _OUTPUTS) if asked.any() else [], strict=False))
+    outputs = (*_OUTPUTS, *(_ENTHALPIES if "enthalpy_of_vaporization" in properties else ()))
+    solved = dict(zip(outputs, evaluate(name, given, x[asked], outputs) if asked.any() else [], strict=False))
     if solved:
         reason[asked] = _reason_after(name, solved)
     result = {p: np.full(x.shape, np.nan) for p in properties}
@@ -276,8 +280,12 @@ def _reason_before(component: Component, given: str, x: Floats) -> NDArray[np.in
 def _reason_after(name: str, solved: Mapping[str, Floats]) -> NDArray[np.int8]:
     """Give the reason code of states the library was asked for."""
     T, p, rho = solved["temperature"], solved["saturation_pressure"], solved["vapor_density"]
-    two_phases = (solved["liquid_density"] > rho) & (solved["vapor_h"] > solved["liquid_h"])
-    contradicts = ~(np.abs(p / equation_pressure(name, T, rho) - 1.0) <= CONSISTENCY)
+    two_phases = solved["liquid_density"] > rho
+    if "vapor_h" in solved:
+        two_phases &= solved["vapor_h"] > solved["liquid_h"]
+    suspect, contradicts = p < _SUSPECT_BELOW, np.zeros(p.shape, np.bool_)
+    own = equation_pressure(name, T[suspect], rho[suspect])
+    contradicts[suspect] = ~(np.abs(p[suspect] / own - 1.0) <= CONSISTENCY)
     in_range = _range_reason(T, _limits(name))
     answered = np.where((in_range == ANSWERED) & contradicts, INCONSISTENT, in_range)
     return np.where(two_phases, answered, FAILED).astype(np.int8)
