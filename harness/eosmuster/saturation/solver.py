@@ -95,25 +95,25 @@ def at_pressure(parameters: Parameters, pressure: ArrayLike, *, slope: bool = Tr
     given = np.asarray(pressure, float)
     flat = given.ravel()
     prepared = prepare(parameters, flat.size)
-    result = replace(_empty(flat.size, slope=slope), temperature=np.empty(flat.size))
-    work = tables.WORKSPACE
+    result = replace(_empty(flat.size, slope=slope), temperature=np.empty(flat.size), pressure=flat)
+    work, found_pressure = tables.WORKSPACE, np.empty(min(tables.BLOCK, flat.size))
     with np.errstate(all="ignore"):
         invert = inverse.inverter(prepared, flat, work)
         for piece in _blocks(flat.size):
-            part = prepared.part(piece)
-            tau = result.tau[piece]
-            tau[:] = invert(part, flat[piece])
-            _fill(part, tau, result, piece, work)
-            tc, temperature = part.parameters.critical_temperature, result.temperature[piece]
-            np.multiply(tau, tc, out=temperature)
-            np.subtract(tc, temperature, out=temperature)
-            missed = ~(np.abs(result.pressure[piece] - flat[piece]) <= _SAME_PRESSURE * flat[piece])
+            part, block = prepared.part(piece), _block_of(result, piece)
+            found = found_pressure[: block.tau.size]
+            block.tau[:] = invert(part, block.pressure)
+            _fill(part, block.tau, replace(block, pressure=found), slice(None), work)
+            tc = part.parameters.critical_temperature
+            np.multiply(block.tau, tc, out=block.temperature)
+            np.subtract(tc, block.temperature, out=block.temperature)
+            missed = ~(np.abs(found - block.pressure) <= _SAME_PRESSURE * block.pressure)
             if missed.any():
-                status = result.status[piece]
-                status[missed & (status == SOLVED)] = NO_TWO_PHASE
+                block.status[missed & (block.status == SOLVED)] = NO_TWO_PHASE
         _classify(result, prepared, flat)
+    if result.status.any():
         result.temperature[result.status != SOLVED] = np.nan
-    return _shaped(replace(result, pressure=flat), given.shape)
+    return _shaped(result, given.shape)
 
 
 def enthalpy_of_vaporization(states: Saturation) -> Floats:
@@ -165,6 +165,13 @@ def _forms(parameters: Parameters) -> tuple[Floats, Floats]:
     return parameters.s[parameters.form], parameters.m[parameters.form]
 
 
+def _block_of(result: Saturation, piece: slice) -> Saturation:
+    """Give views of one block of states."""
+    r, slope = result, None if result.log_slope is None else result.log_slope[piece]
+    t, p, liquid, vapor = (a[piece] for a in (r.temperature, r.pressure, r.liquid_density, r.vapor_density))
+    return Saturation(t, p, liquid, vapor, r.status[piece], r.tau[piece], slope)
+
+
 def _fill(part: Prepared, tau: Floats, result: Saturation, piece: slice, work: tables.Workspace) -> None:
     """Compute one block in place."""
     p = part.parameters
@@ -213,7 +220,7 @@ def _classify(result: Saturation, prepared: Prepared, given: Floats) -> None:
     if result.status.any():
         wrong = result.status != SOLVED
         for values in (result.pressure, result.liquid_density, result.vapor_density, result.log_slope):
-            if values is not None:
+            if values is not None and values is not given:  # what was given stays as it was
                 values[wrong] = np.nan
 
 
