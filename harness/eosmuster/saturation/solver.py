@@ -95,7 +95,8 @@ def at_pressure(parameters: Parameters, pressure: ArrayLike, *, slope: bool = Tr
     given = np.asarray(pressure, float)
     flat = given.ravel()
     prepared = prepare(parameters, flat.size)
-    result = replace(_empty(flat.size, slope=slope), temperature=np.empty(flat.size), pressure=flat)
+    empty = _empty(flat.size, slope=slope)
+    result = replace(empty, temperature=empty.pressure, pressure=flat)
     work, found_pressure = tables.WORKSPACE, np.empty(min(tables.BLOCK, flat.size))
     with np.errstate(all="ignore"):
         invert = inverse.inverter(prepared, flat, work)
