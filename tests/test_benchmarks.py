@@ -18,6 +18,10 @@ pytestmark = pytest.mark.skipif(not hasattr(os, "fork"), reason="child processes
 SHARED = {"measuring.py", "plans.py", "run.py"}
 SCRIPTS = sorted(path.name for path in FOLDER.glob("*.py") if path.name not in SHARED)
 FIGURES = {
+    "thermoml_reader.py": [
+        r"ThermoML, every value judged: .* MB/s a core .*\[target: 20 MB/s\]",
+        r"ThermoML, memory over the number of files: .* kB a file",
+    ],
     "kernel.py": [
         r"curve tables of PR, first use: .* ms",
         r"PR, ordered: .* ns a point, .* x as fast \(CoolProp PR .* ns; .* x the cost of exp and log.*40 x\]",

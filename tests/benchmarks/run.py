@@ -25,6 +25,7 @@ SCRIPTS = (
     "catalogue.py",
     "growth.py",
     "points_writer.py",
+    "thermoml_reader.py",
 )
 
 

@@ -2,21 +2,21 @@
 
     python tests/benchmarks/thermoml_reader.py [--quick]
 
-The files are invented: 200 MB in which every value is judged, and 200 MB like an archive, where one block in ten is and
-the others are viscosities and mixtures. Each is written once and read in a forked process, whose processor time and
-peak memory are given; beside it stands what expat takes to parse the same bytes and hand on nothing.
+The files are invented: 200 MB in which every value is judged, and 200 MB like an archive, where one block in ten is
+and the others are viscosities. Each is written once and read in a forked process; its processor time and peak memory
+are given; beside it stands what expat takes to parse the same bytes and hand on nothing.
 """
 
 from __future__ import annotations
 
 import tempfile
-from collections.abc import Callable, Iterator
+from functools import partial
 from pathlib import Path
 from xml.parsers import expat
 
 import measuring
 import numpy as np
-from measuring import Usage, figure, forked
+from measuring import figure, forked
 
 from eosmuster.sources.measured_files import read_folder, readings
 
@@ -111,7 +111,6 @@ ROW = """    <NumValues>
 """
 JUDGED, OTHER = "Mass density, kg/m3", "Viscosity, Pa*s"
 ROWS = 22  # values a block of the archive holds on average
-Write = Callable[[Path, int, int], int]
 
 
 def invented(rng: np.random.Generator, blocks: int, judged_every: int) -> str:
@@ -148,25 +147,23 @@ def parsed(folder: Path) -> int:
     return 0
 
 
-def temporary() -> Iterator[Path]:
-    with tempfile.TemporaryDirectory() as place:
-        yield Path(place)
-
-
 def speed(name: str, files: int, blocks: int, judged_every: int) -> None:
-    for folder in temporary():
+    with tempfile.TemporaryDirectory() as place:
+        folder = Path(place)
         megabytes = written(folder, files, blocks, judged_every)
         read_on(folder, 1)  # what is cached is cached
         usage, bare = forked(lambda: read_on(folder, files)), forked(lambda: parsed(folder))
-        what = f"{usage.output} points of {files} files, {megabytes:.0f} MB; expat alone {megabytes / bare.seconds:.0f} MB/s"
-        figure(f"ThermoML, {name}", f"{megabytes / usage.seconds:.1f} MB/s a core", what, "20 MB/s")
+        what = f"{usage.output} points of {files} files, {megabytes:.0f} MB"
+        beside = f"expat alone {megabytes / bare.seconds:.0f} MB/s"
+        figure(f"ThermoML, {name}", f"{megabytes / usage.seconds:.1f} MB/s a core", f"{what}; {beside}", "20 MB/s")
 
 
 def memory(counts: tuple[int, ...], blocks: int) -> None:
-    for folder in temporary():
+    with tempfile.TemporaryDirectory() as place:
+        folder = Path(place)
         written(folder, counts[-1], blocks, 1)
         read_on(folder, 1)
-        peaks = [forked(lambda count=count: read_on(folder, count)).megabytes for count in counts]  # type: ignore[misc]
+        peaks = [forked(partial(read_on, folder, count)).megabytes for count in counts]
         for count, peak in zip(counts, peaks, strict=True):
             figure(f"ThermoML, {count} files one after the other", f"{peak:.0f} MB at the peak")
         growth = (peaks[-1] - peaks[0]) / (counts[-1] - counts[0]) * 1e3
@@ -174,14 +171,11 @@ def memory(counts: tuple[int, ...], blocks: int) -> None:
 
 
 def whole_folder(files: int) -> None:
-    for folder in temporary():
+    with tempfile.TemporaryDirectory() as place:
+        folder = Path(place)
         written(folder, files, 1, 1)
-
-        def read() -> int:
-            return sum(map(len, read_folder(folder).sets))
-
         read_on(folder, 1)
-        usage: Usage = forked(read)
+        usage = forked(lambda: sum(map(len, read_folder(folder).sets)))
         what = f"{usage.output} points kept, {usage.megabytes:.0f} MB at the peak"
         figure(f"ThermoML, a folder of {files} files, read and put together", f"{usage.seconds:.3g} s", what)
 

@@ -52,7 +52,19 @@ REFUSED = {
         '<?xml version="1.0" encoding="shift_jis"?><DataReport/>',
         "its encoding cannot be read",
     ),
-    "deep": (f"{ROOT}{'<x>' * 5000}", "nested more than 100 deep"),
+    "nested compounds": (
+        f"{ROOT}<Compound><Compound/></Compound></DataReport>",
+        "a Compound lies in a Compound (line 1)",
+    ),
+    "nested blocks": (
+        f"{ROOT}<PureOrMixtureData><PureOrMixtureData/></PureOrMixtureData></DataReport>",
+        "a PureOrMixtureData lies in a PureOrMixtureData (line 1)",
+    ),
+    "deep in a part": (
+        f"{ROOT}<Compound>{'<RegNum>' * 500}{'</RegNum>' * 500}</Compound>",
+        "nested more than 100 deep",
+    ),
+    "deep": (f"{ROOT}{'<x><Compound/>' * 200}", "nested more than 100 deep"),
     "endless": (f"{ROOT}<Compound><sCommonName>{'a' * (5 << 20)}", "has no end within reason"),
     "endless tag": (f"{ROOT}<Compound a='{'a' * (5 << 20)}", "has no end within reason"),
     "endless list": (f"{ROOT}<Compound>{'<sCommonName>a</sCommonName>' * 250_000}", "has no end within reason"),
@@ -117,7 +129,7 @@ def test_a_prefix_does_no_harm() -> None:
     [
         ("<nVarValue>300<", "<nVarValue>300,0<", "variable 1 is not one number: '300,0'"),
         ("<nVarValue>300<", "<nVarValue>3<!-- -->00<", ""),  # a comment within a number changes nothing
-        ("<nVarValue>300<", "<nVarValue>3<x/>00<", "variable 1 is not one number: elements"),
+        ("<nVarValue>300<", "<nVarValue>3<x/>00<", "variable 1 is not one number: it holds elements"),
         ("<nVarValue>300<", "<nVarValue>nan<", "variable 1 is not one number: 'nan'"),
         ("<nVarValue>300<", "<nVarValue>1e99<", "its temperature is 1e+99, which cannot be"),
         ("<nVarValue>300<", "7<nVarValue>300<", ""),  # stray text is no part of a number
@@ -151,6 +163,22 @@ def test_two_properties_of_one_number_refuse_the_block() -> None:
     assert (told.block, told.code, told.lost) == (1, "block", 3)
 
 
+def test_two_compounds_of_one_number_are_nobody() -> None:
+    text = GOOD.replace("<nOrgNum>2</nOrgNum>", "<nOrgNum>1</nOrgNum>", 1)
+    reading = read(text)
+    assert {s.component.name for s in reading.sets} == set()
+    assert "its substance is 'nOrgNum 1', which several compounds of the file are" in reading.diagnostics[0].sentence
+
+
+def test_a_declaration_after_the_values_refuses_the_block() -> None:
+    late = "</NumValues><Component><RegNum><nOrgNum>2</nOrgNum></RegNum></Component>"
+    reading = read(GOOD.replace("</NumValues>", late, 1))
+    assert {s.block for s in reading.sets} == set(range(2, 12))
+    [told] = reading.diagnostics
+    assert (told.block, told.code, told.lost) == (1, "block", 3)
+    assert told.sentence == "a Component is declared after its first values"
+
+
 def test_a_value_given_twice_is_lost_twice() -> None:
     value = "<PropertyValue><nPropNumber>1</nPropNumber><nPropValue>5</nPropValue></PropertyValue></NumValues>"
     reading = read(GOOD.replace("</NumValues>", value, 1))
@@ -179,6 +207,35 @@ def test_reactions_are_passed_over() -> None:
     assert [(s.block, s.values.tolist()) for s in reading.sets] == [
         (s.block, s.values.tolist()) for s in read(GOOD).sets
     ]
+
+
+def test_values_of_properties_of_one_name_are_counted_together() -> None:
+    start = GOOD.index("<Property>", GOOD.index("Viscosity, Pa*s") - 400)
+    viscosity = GOOD[start : GOOD.index("</Property>", start) + len("</Property>")]
+    value = "<PropertyValue><nPropNumber>7</nPropNumber><nPropValue>5</nPropValue></PropertyValue>"
+    again = viscosity.replace("<nPropNumber>1<", "<nPropNumber>7<")
+    text = GOOD.replace(viscosity, viscosity + again)
+    row = text.index("</NumValues>", text.index(again))
+    assert read(text[:row] + value + text[row:]).unread["Viscosity, Pa*s"] == 2
+
+
+def test_rows_of_two_kinds_come_out_in_their_order() -> None:
+    """The second row of three has no uncertainty, so it is read apart from the others."""
+    value = "<nExpandUncertValue>0.8</nExpandUncertValue>"
+    assert GOOD.count(value) == 1
+    one = read(GOOD.replace(value, "")).sets[0]
+    assert one.rows.tolist() == [1, 2, 3]
+    assert one.values.tolist() == [218400.0, 1001500.0, 2960000.0]
+    assert [u > 0.0 for u in one.standard_uncertainty] == [True, False, True]
+
+
+def test_a_block_longer_than_what_waits_is_read_whole() -> None:
+    start = GOOD.index("<NumValues>")
+    row = GOOD[start : GOOD.index("</NumValues>") + len("</NumValues>")]
+    many = "".join(row.replace("<nVarValue>250<", f"<nVarValue>{250 + i / 100}<") for i in range(3000))
+    one = read(GOOD.replace(row, many, 1)).sets[0]
+    assert one.rows.tolist() == list(range(1, 3003))
+    assert one.temperature.tolist() == [*(250 + i / 100 for i in range(3000)), 300.0, 350.0]
 
 
 class Endless(io.RawIOBase):

@@ -108,9 +108,9 @@ def settled(value: Floats, stated: Floats, origin: NDArray[np.int8], rounding: F
     >>> found.uncertainty, found.origin, found.too_large
     (array([1.e-01,    nan, 2.e+00, 1.e-03]), array([1, 0, 1, 3], dtype=int8), array([False, False,  True, False]))
     """
-    zero, negative = stated == 0.0, stated < 0.0
-    missing = ~np.isfinite(stated) | zero | negative
-    floored = ~missing & (stated < rounding)
-    chosen = np.where(missing, np.nan, np.where(floored, rounding, stated))
-    code = np.where(missing, NO_UNCERTAINTY, np.where(floored, ROUNDING, origin)).astype(np.int8)
-    return Settled(chosen, code, zero, negative, ~missing & (stated > np.abs(value)), floored)
+    usable = stated > 0.0
+    floored = usable & (stated < rounding)
+    chosen = np.where(usable, np.fmax(stated, rounding), np.nan)
+    code = np.where(floored, ROUNDING, np.where(usable, origin, NO_UNCERTAINTY)).astype(np.int8)
+    too_large = usable & (stated > np.abs(value))
+    return Settled(chosen, code, stated == 0.0, stated < 0.0, too_large, floored)

@@ -7,7 +7,7 @@ diagnostic, never an exception that loses the rest.
 
 from __future__ import annotations
 
-from collections import Counter
+from collections import Counter, defaultdict
 from pathlib import Path
 from typing import BinaryIO
 
@@ -21,7 +21,8 @@ from eosmuster.sources.thermoml_block import Block
 from eosmuster.sources.thermoml_header import Reference, description, references
 from eosmuster.sources.thermoml_joining import joined
 from eosmuster.sources.thermoml_nodes import text, texts
-from eosmuster.sources.thermoml_stream import BLOCK, Node, read_parts
+from eosmuster.sources.thermoml_shape import BLOCK, ROW, Node, Shape, nodes
+from eosmuster.sources.thermoml_stream import read_parts
 
 
 def read_file(path: Path, shown_as: str = "") -> Reading:
@@ -76,20 +77,20 @@ class _File:
         self._unread: Counter[str] = Counter()
         self._values = 0
 
-    def take(self, kind: str, nodes: list[Node], skipped: int) -> bool:
+    def take(self, kind: str, shape: Shape, texts: list[str], skipped: int) -> bool:
         """Take one part; False if the rest of the block is not wanted."""
-        if kind == "NumValues":
-            return self._block.add(nodes)
+        if kind == ROW:
+            return self._block.add(shape, texts)
         if kind == BLOCK:
             self._close(skipped)
-        elif kind == "Citation":
-            self._source = cited(self._name, nodes)
+            return True
+        elements = nodes(shape, texts)
+        if kind == "Citation":
+            self._source = cited(self._name, elements)
         elif kind == "Compound":
-            self._compounds.add(nodes)
-        elif kind == "ReactionData":
-            self._block = Block(self._block.number, self._compounds)
+            self._compounds.add(elements)
         else:
-            self._block.header.add(kind, nodes)
+            self._block.declare(kind, elements)
         return True
 
     def _close(self, skipped: int) -> None:
@@ -126,34 +127,38 @@ class Compounds:
     """The compounds of a file; called with a block's references, gives the substance and the file's name for it."""
 
     def __init__(self) -> None:
-        self._described: dict[Reference, Description] = {}
+        self._described: dict[Reference, set[Description]] = defaultdict(set)
         self._found: dict[Description, Component | str] = {}
 
-    def add(self, nodes: list[Node]) -> None:
+    def add(self, elements: list[Node]) -> None:
         """Take a ``Compound``."""
-        self._described.update(dict.fromkeys(references(nodes), description(nodes)))
+        for reference in references(elements):
+            self._described[reference].add(description(elements))
 
     def __call__(self, pointers: tuple[Reference, ...]) -> tuple[Component, str]:
         """Find a substance; raises `InputError` with the reason if it cannot be told."""
-        said = next((self._described[one] for one in pointers if one in self._described), None)
-        if said is None:
+        found = [self._described[one] for one in pointers if one in self._described]
+        meant = set.intersection(*found) if found else set()
+        if len(meant) != 1:
             named = ", ".join(f"{kind} {number}" for kind, number in pointers) or "nothing"
-            raise InputError(f"its substance is {shown(named)}, which no compound of the file is")
+            which = "several compounds of the file are" if found else "no compound of the file is"
+            raise InputError(f"its substance is {shown(named)}, which {which}")
+        (said,) = meant
         if said not in self._found:
             try:
                 self._found[said] = resolve(said)
             except InputError as error:
                 self._found[said] = str(error)
-        found = self._found[said]
-        if isinstance(found, str):
-            raise InputError(found)
-        return found, next(iter(said.names), said.inchikey or said.cas)
+        resolved = self._found[said]
+        if isinstance(resolved, str):
+            raise InputError(resolved)
+        return resolved, next(iter(said.names), said.inchikey or said.cas)
 
 
-def cited(name: str, nodes: list[Node]) -> Source:
+def cited(name: str, elements: list[Node]) -> Source:
     """Read a ``Citation``: authors: journal volume (year) pages."""
-    journal = " ".join(filter(None, (text(nodes, "sPubName"), text(nodes, "sVol"))))
-    year = text(nodes, "yrPubYr")
-    where = " ".join(filter(None, (journal, f"({year})" if year else "", text(nodes, "sPage"))))
-    people = "; ".join(texts(nodes, "sAuthor"))
-    return Source(name, text(nodes, "sDOI"), ": ".join(filter(None, (people, where)))[:500])
+    journal = " ".join(filter(None, (text(elements, "sPubName"), text(elements, "sVol"))))
+    year = text(elements, "yrPubYr")
+    where = " ".join(filter(None, (journal, f"({year})" if year else "", text(elements, "sPage"))))
+    people = "; ".join(texts(elements, "sAuthor"))
+    return Source(name, text(elements, "sDOI"), ": ".join(filter(None, (people, where)))[:500])

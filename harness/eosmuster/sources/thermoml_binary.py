@@ -6,10 +6,9 @@ vapor at the same states in the other, which are joined on their states; or in o
 
 from __future__ import annotations
 
-from collections import defaultdict
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, replace
-from math import isnan, nan
+from functools import cached_property
 from typing import Self
 
 import numpy as np
@@ -18,6 +17,7 @@ from numpy.typing import NDArray
 from eosmuster.components import Component
 from eosmuster.errors import InputError
 from eosmuster.sources.measured import Diagnostic
+from eosmuster.sources.thermoml_columns import Group, Groups, Losses
 from eosmuster.sources.thermoml_header import (
     MOLE_FRACTION,
     PRESSURE,
@@ -27,15 +27,7 @@ from eosmuster.sources.thermoml_header import (
     Header,
     Reference,
 )
-from eosmuster.sources.thermoml_nodes import number, within
-from eosmuster.sources.thermoml_stream import Content, Node
-from eosmuster.sources.thermoml_values import (
-    Leaves,
-    fault_of_value,
-    read_properties,
-    read_uncertainty,
-    read_variables,
-)
+from eosmuster.sources.thermoml_shape import Shape
 from eosmuster.sources.thermoml_wanted import (
     BOILING,
     DIRECT,
@@ -105,8 +97,7 @@ class BinaryRows:
 
     Attributes
     ----------
-    seen : property number -> how many values of it the rows held
-    read : the numbers whose values are accounted for by states and diagnostics
+    read : the numbers of the properties whose values are accounted for by states and diagnostics
     """
 
     def __init__(
@@ -117,13 +108,9 @@ class BinaryRows:
         second: frozenset[str],
     ) -> None:
         self._header, self._components, self._written, self._second = header, components, written, second
-        self._variables = {c.number: c.factors for c in header.coordinates if c.number}
-        self._columns: dict[str, list[float]] = defaultdict(list)
-        self._uncertainty: dict[str, list[float]] = {slot(p): [] for p in header.properties}
-        self._faults: dict[str, list[int]] = defaultdict(list)
-        self._row = 0
-        self.seen: dict[str, int] = dict.fromkeys((p.number for p in header.properties), 0)
-        self.read = frozenset(self.seen)
+        self.read = frozenset(p.number for p in header.properties)
+        variables = {c.number: c.factors for c in header.coordinates if c.number}
+        self._rows = Groups(variables, {p.number: p.factors for p in header.properties}, self.read)
 
     @classmethod
     def of(cls, header: Header, known: Callable[[tuple[Reference, ...]], tuple[Component, str]]) -> Self | None:
@@ -137,63 +124,89 @@ class BinaryRows:
         complete = {slot(one) for one in _fractions(header)} == others | firsts and not others & firsts
         return cls(header, (a, b), (first, second), others) if complete and a.name != b.name else None
 
-    def add(self, row: list[Node]) -> None:
-        """Take the elements of one ``NumValues``."""
-        self._row += 1
-        variables, fault = read_variables(row, self._variables)
-        given, twice = read_properties(row, self.seen)
-        if twice or given.keys() - self.read:
-            fault = "a property is given twice, or is not declared"
-        state, uncertainty = self._state(variables, given)
-        fault = fault or _incomplete(state, given)
-        if fault:
-            self._faults[fault].extend([self._row] * len(given))
-            return
-        for name, value in state.items():
-            self._columns[name].append(value)
-        for name, value in uncertainty.items():
-            self._uncertainty[name].append(value)
+    def add(self, shape: Shape, texts: list[str]) -> None:
+        """Take one ``NumValues``."""
+        self._rows.add(shape, texts)
 
-    def _state(
-        self, variables: Mapping[str, tuple[float, float]], given: Mapping[str, tuple[Content, Leaves]]
-    ) -> tuple[dict[str, float], dict[str, float]]:
-        """Give the quantities of a row, SI, and the standard uncertainty of the measured ones."""
-        state, uncertainty = {}, {}
+    @property
+    def seen(self) -> dict[str, int]:
+        """Property number -> how many values of it the rows held."""
+        self._rows.groups()
+        return self._rows.seen
+
+    @cached_property
+    def _table(self) -> tuple[Floats, Losses]:
+        """Row numbers, quantities and uncertainties of the complete rows, in order; and the others."""
+        losses = Losses()
+        names, measured = _quantities(self._header), self._header.properties
+        tables = [self._complete(group, losses) for group in self._rows.groups()]
+        table = np.concatenate([np.empty((1 + len(names) + len(measured), 0)), *tables], axis=1)
+        return table[:, np.argsort(table[0], kind="stable")], losses
+
+    def _complete(self, group: Group, losses: Losses) -> Floats:
+        """Give the complete rows of a group; note the others."""
+        times = group.layout.times
+        values = sum(count for number, count in times.items() if number in self.read)
+        fault = group.layout.fault
+        if any(times.get(number) != 1 for number in self.read) or times.keys() - self.read:
+            fault = "a property is missing, not declared, or given twice"
+        table = (
+            self._states(group) if not fault else np.empty((1 + len(_quantities(self._header)) + len(self.read), 0))
+        )
+        wrong = {one.row: one.sentence for one in reversed(group.faults)} if not fault else {}
+        for row, why in _impossible(table, _quantities(self._header)):
+            wrong.setdefault(row, why)
+        losses.note(fault, group.rows.tolist() if fault else [], values)
+        for row, why in wrong.items():
+            losses.note(why, [row], values)
+        return table[:, ~np.isin(table[0], list(wrong))] if wrong else table
+
+    def _states(self, group: Group) -> Floats:
+        """Give row numbers, quantities and uncertainties of measured ones, SI, one below the other."""
+        table = [group.rows.astype(np.float64)]
         for c in self._header.coordinates:
-            state[slot(c)] = variables.get(c.number, (nan, nan))[0] if c.number else c.value
-        for p in self._header.properties:
-            content, leaves = given.get(p.number, ("", {}))
-            state[slot(p)] = number(leaves.get("nPropValue"))
-            u = read_uncertainty(within(content), p.factors)[0]
-            uncertainty[slot(p)] = u if u > 0.0 else nan
-        for values in (state, uncertainty):
-            if "pressure" in values:
-                values["pressure"] *= PRESSURE_FACTOR
-        return {name: 1.0 - x if name in self._second else x for name, x in state.items()}, uncertainty
+            given = group.variables[c.number].values if c.number else np.full(group.rows.size, c.value)
+            table.append(self._si(slot(c), given))
+        measured = [(slot(p), group.properties[p.number]) for p in self._header.properties]
+        table += (self._si(name, column.values) for name, column in measured)
+        for name, column in measured:
+            u = column.stated.uncertainty if column.stated else np.full(group.rows.size, np.nan)
+            u = np.where((u > 0.0) & (u < LARGEST), u, np.nan)
+            table.append(u * PRESSURE_FACTOR if name == "pressure" else u)
+        return np.array(table)
+
+    def _si(self, name: str, column: Floats) -> Floats:
+        if name in self._second:
+            return 1.0 - column
+        return np.where(column < LARGEST, column, np.nan) * (PRESSURE_FACTOR if name == "pressure" else 1.0)
 
     def equilibrium(self, block: int) -> Equilibrium:
         """Give what was read."""
+        table, _ = self._table
         names = [slot(one) for one in _quantities(self._header)]
+        measured = [slot(p) for p in self._header.properties]
         return Equilibrium(
             block=block,
             components=self._components,
             written=self._written,
             method=next((p.method for p in self._header.properties if p.method), ""),
-            columns={name: np.array(self._columns[name], np.float64) for name in names},
-            uncertainty={name: np.array(u, np.float64) for name, u in self._uncertainty.items()},
+            columns=dict(zip(names, table[1:], strict=False)),
+            uncertainty=dict(zip(measured, table[1 + len(names) :], strict=True)),
         )
 
     def diagnostics(self, file: str, block: int) -> list[Diagnostic]:
         """Say what was wrong with rows."""
-        return [
-            Diagnostic(file, block, "row", f"bubble points: {_rows(rows)} left out: {fault}", len(rows))
-            for fault, rows in self._faults.items()
-        ]
+        _, losses = self._table
+        return [Diagnostic(file, block, "row", f"bubble points: {said}", lost) for said, lost in losses.told()]
 
 
-def _rows(rows: Sequence[int]) -> str:
-    distinct = list(dict.fromkeys(rows))
-    return f"row {distinct[0]}" if len(distinct) == 1 else f"{len(distinct)} rows (the first is row {distinct[0]})"
+def _impossible(table: Floats, quantities: Sequence[Coordinate | Declared]) -> Iterator[tuple[int, str]]:
+    """Name the rows with a quantity that cannot be."""
+    for one, column in zip(quantities, table[1:], strict=False):
+        name = slot(one)
+        lowest, highest = (-1e-12, 1.0 + 1e-12) if name.endswith("fraction") else (SMALLEST, LARGEST)
+        for i in np.flatnonzero(~((column >= lowest) & (column <= highest))):
+            yield int(table[0, i]), f"its {name.replace('_', ' ')} is {column[i]:g}, which cannot be"
 
 
 def _quantities(header: Header) -> list[Coordinate | Declared]:
@@ -202,14 +215,3 @@ def _quantities(header: Header) -> list[Coordinate | Declared]:
 
 def _fractions(header: Header) -> list[Coordinate | Declared]:
     return [one for one in _quantities(header) if slot(one).endswith("fraction")]
-
-
-def _incomplete(state: Mapping[str, float], given: Mapping[str, tuple[Content, Leaves]]) -> str:
-    """Say what a row lacks, "" if nothing."""
-    for name, value in state.items():
-        if isnan(value):
-            faulty = [one for one, leaves in given.values() if isnan(number(leaves.get("nPropValue")))]
-            return fault_of_value(faulty[0]) if faulty else f"no {name.replace('_', ' ')}"
-        if not (0.0 <= value <= 1.0 if name.endswith("fraction") else SMALLEST < value < LARGEST):
-            return f"its {name.replace('_', ' ')} is {value:g}, which cannot be"
-    return ""

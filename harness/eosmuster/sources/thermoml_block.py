@@ -12,7 +12,7 @@ from eosmuster.sources.measured import Diagnostic, MeasuredSet, Source
 from eosmuster.sources.thermoml_binary import BinaryRows, is_binary
 from eosmuster.sources.thermoml_header import Header, Reference
 from eosmuster.sources.thermoml_rows import Rows
-from eosmuster.sources.thermoml_stream import VALUE, Node
+from eosmuster.sources.thermoml_shape import VALUE, Node, Shape, nodes
 from eosmuster.sources.thermoml_wanted import Refused, Wanted, is_ours, wanted
 
 Known = Callable[[tuple[Reference, ...]], tuple[Component, str]]
@@ -33,8 +33,8 @@ class Block:
     header : what it declares
     pure, binary : where its rows go, if they are wanted
     component, written : of a pure substance
-    refused : properties of ours that cannot be read, or one reason for the whole block
-    unread : what the rest of its values is counted as
+    refused : properties of ours that cannot be read
+    whole : why nothing of the block can be read, as code and sentence
     begun : whether it has values
     values : how many values were seen outside `pure` and `binary`
     """
@@ -51,17 +51,27 @@ class Block:
     begun: bool = False
     values: int = 0
 
-    def add(self, row: list[Node]) -> bool:
+    def declare(self, kind: str, elements: list[Node]) -> None:
+        """Take a declaration; one that comes after the first row makes the block unreadable."""
+        if not self.begun:
+            self.header.add(kind, elements)
+            return
+        taker = self.pure or self.binary
+        self.values += sum(taker.seen.values()) if taker is not None else 0
+        self.pure = self.binary = None
+        self.whole = "block", f"a {kind} is declared after its first values"
+
+    def add(self, shape: Shape, texts: list[str]) -> bool:
         """Take a row; False if the rest of the block is not wanted."""
         if not self.begun:
             self.begun = True
             self._begin()
         taker = self.pure or self.binary
         if taker is not None:
-            taker.add(row)
+            taker.add(shape, texts)
             return True
-        self.values += sum(name == VALUE for name, _ in row)
-        return not self.header.components  # a reaction is no block, and nothing would end the skipping
+        self.values += sum(name == VALUE for name, _ in nodes(shape, texts))
+        return False
 
     def _begin(self) -> None:
         header = self.header
@@ -96,31 +106,28 @@ class Block:
         if not self.begun:
             return [Diagnostic(file, self.number, "values", "it has no values")], Counter(), 0
         if taker is None:
-            return self._account_of_unread(file, self.values + skipped)
+            told, nobodys = self._unread(self.values + skipped)
+            return [Diagnostic(file, self.number, *one) for one in told], nobodys, self.values + skipped
         found = taker.diagnostics(file, self.number)
-        found += [
-            Diagnostic(
-                file, self.number, one.code, f"{one.declared.name}: {one.sentence}", taker.seen[one.declared.number]
-            )
-            for one in self.refused
-        ]
+        for one in self.refused:
+            lost = taker.seen[one.declared.number]
+            found.append(Diagnostic(file, self.number, one.code, f"{one.declared.name}: {one.sentence}", lost))
         accounted = {one.declared.number for one in self.refused} | taker.read
         names = {p.number: p.name for p in self.header.properties}
-        unread = Counter({names.get(n, "undeclared"): count for n, count in taker.seen.items() if n not in accounted})
+        unread: Counter[str] = Counter()
+        for number, count in taker.seen.items():
+            if number not in accounted:
+                unread[names.get(number, "undeclared")] += count
         return found, +unread, sum(taker.seen.values())
 
-    def _account_of_unread(self, file: str, values: int) -> tuple[list[Diagnostic], Counter[str], int]:
+    def _unread(self, values: int) -> tuple[list[Lost], Counter[str]]:
+        """Account for the values of a block of which nothing is read."""
         if self.whole is not None:
-            return [Diagnostic(file, self.number, *self.whole, values)], Counter(), values
+            return [(*self.whole, values)], Counter()
         if not self.header.components:
-            return [Diagnostic(file, self.number, "block", "it names no substance", values)], Counter(), values
-        if self.refused:
-            lost = [values] + [0] * (len(self.refused) - 1)  # what lies in which of several is not looked into
-            sentences = [(one.code, f"{one.declared.name}: {one.sentence}") for one in self.refused]
-            return (
-                [Diagnostic(file, self.number, *s, n) for s, n in zip(sentences, lost, strict=True)],
-                Counter(),
-                values,
-            )
+            return [("block", "it names no substance", values)], Counter()
+        if self.refused:  # which values are of which property is not looked into
+            first, *others = [(one.code, f"{one.declared.name}: {one.sentence}") for one in self.refused]
+            return [(*first, values), *((*one, 0) for one in others)], Counter()
         label = self.header.names if len(self.header.components) == 1 else f"{self.header.names} (mixture)"
-        return [], Counter({label: values}), values
+        return [], Counter({label: values})

@@ -8,8 +8,8 @@ from dataclasses import dataclass, field
 
 from eosmuster.sources.measured_substances import Description
 from eosmuster.sources.measured_uncertainty import coverage_factor
-from eosmuster.sources.thermoml_nodes import inside, number, text, texts, within
-from eosmuster.sources.thermoml_stream import Node
+from eosmuster.sources.thermoml_nodes import inside, number, only, text, texts, within
+from eosmuster.sources.thermoml_shape import Node
 
 TEMPERATURE, PRESSURE, MOLE_FRACTION = "Temperature, K", "Pressure, kPa", "Mole fraction"
 
@@ -111,7 +111,7 @@ class Header:
 
 def references(nodes: list[Node]) -> tuple[Reference, ...]:
     """Give all numbers that point at a compound, the file's own before CAS numbers."""
-    everywhere = [*nodes, *inside(nodes, "RegNum")]
+    everywhere = [*nodes, *(node for kind, content in nodes if kind == "RegNum" for node in within(content))]
     return tuple((kind, found) for kind in _NUMBERS for found in texts(everywhere, kind))
 
 
@@ -130,15 +130,17 @@ def description(nodes: list[Node]) -> Description:
 def declared(nodes: list[Node]) -> Declared:
     """Read a ``Property``."""
     method_id = inside(nodes, "Property-MethodID")
-    group = next((within(content) for _, content in inside(method_id, "PropertyGroup")), [])
+    groups = inside(method_id, "PropertyGroup")
+    group = within(groups[0][1]) if len(groups) == 1 else []
     kinds = [kind for kind, _ in group]
+    phases = [text(within(content), "ePropPhase") for kind, content in nodes if kind == "PropPhaseID"]
     method = "critical evaluation" if "CriticalEvaluation" in kinds else text(group, "eMethodName", "sMethodName")
     return Declared(
-        number=text(nodes, "nPropNumber"),
-        name=text(group, "ePropName"),
-        phase=text(inside(nodes, "PropPhaseID"), "ePropPhase"),
+        number=only(nodes, "nPropNumber"),
+        name=only(group, "ePropName"),
+        phase=" and ".join(dict.fromkeys(phases)),
         compound=references(method_id),
-        presentation=text(nodes, "ePresentation"),
+        presentation=only(nodes, "ePresentation"),
         method=method,
         predicted="Prediction" in kinds,
         factors=factors(nodes),
@@ -152,7 +154,7 @@ def variable(nodes: list[Node]) -> Coordinate:
         quantity=_quantity(inside(what, "VariableType")),
         phase=text(inside(nodes, "VarPhaseID"), "eVarPhase"),
         compound=references(what),
-        number=text(nodes, "nVarNumber") or "?",
+        number=only(nodes, "nVarNumber") or "?",
         factors=factors(nodes),
     )
 
@@ -164,7 +166,7 @@ def constraint(nodes: list[Node]) -> Coordinate:
         quantity=_quantity(inside(what, "ConstraintType")),
         phase=text(inside(nodes, "ConstraintPhaseID"), "eConstraintPhase"),
         compound=references(what),
-        value=number(text(nodes, "nConstraintValue")),
+        value=number(only(nodes, "nConstraintValue")),
         uncertainty=_constraint_uncertainty(inside(nodes, "ConstrUncertainty")),
     )
 
@@ -187,7 +189,8 @@ def _stated(nodes: list[Node], name: str) -> float | None:
 
 
 def _quantity(nodes: list[Node]) -> str:
-    return next((" ".join(content.split()) for _, content in nodes if isinstance(content, str)), "")
+    """Give the only quantity that is named; "" if it is not the only one."""
+    return only(nodes, nodes[0][0]) if len(nodes) == 1 else ""
 
 
 def _constraint_uncertainty(nodes: list[Node]) -> float:

@@ -3,9 +3,13 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
+from functools import lru_cache
 
-from eosmuster.sources.thermoml_stream import Content, Node
+import numpy as np
+from numpy.typing import NDArray
+
+from eosmuster.sources.thermoml_shape import Content, Node
 
 
 def within(content: Content | None) -> list[Node]:
@@ -36,6 +40,16 @@ def text(nodes: list[Node], *names: str) -> str:
     return next((found for name in names for found in texts(nodes, name)), "")
 
 
+def only(nodes: list[Node], name: str) -> str:
+    """Give the text of the only element of that name; "" if there is none, and if there are several.
+
+    >>> only([("nPropNumber", "1")], "nPropNumber"), only([("a", "1"), ("a", "2")], "a")
+    ('1', '')
+    """
+    found = [content for kind, content in nodes if kind == name]
+    return next(texts(nodes, name), "") if len(found) == 1 else ""
+
+
 def number(content: object) -> float:
     """Read a number as XML writes it; NaN for anything else, infinities among it.
 
@@ -43,17 +57,37 @@ def number(content: object) -> float:
     [0.7451, 1000.0, nan, nan, nan, nan, nan]
     """
     try:
-        value = float(content)  # type: ignore[arg-type]  # anything but a text is a TypeError
-    except (TypeError, ValueError):
+        value = float(content) if isinstance(content, str) and content.isascii() and "_" not in content else math.nan
+    except ValueError:
         return math.nan
-    return value if -math.inf < value < math.inf and "_" not in content else math.nan  # type: ignore[operator]
+    return value if math.isfinite(value) else math.nan
 
 
-def count(content: object) -> int:
-    """Read a small count; 0 for anything else.
+def numbers(texts: Sequence[str]) -> NDArray[np.float64]:
+    """Read a column of numbers, as `number` does.
 
-    >>> count(" 5 "), count("5.5"), count("-3"), count(None)
-    (5, 0, 0, 0)
+    >>> numbers(["310", "x", "INF"])
+    array([310.,  nan,  nan])
     """
-    digits = content.strip() if isinstance(content, str) else ""
+    everything = "".join(texts)
+    try:
+        plain = everything.isascii() and "_" not in everything
+        values = np.array(list(map(float, texts)) if plain else [number(text) for text in texts], np.float64)
+    except ValueError:
+        return np.array([number(text) for text in texts], np.float64)
+    values[~np.isfinite(values)] = np.nan
+    return values
+
+
+def counts(texts: Sequence[str]) -> NDArray[np.int64]:
+    """Read a column of small counts; 0 for anything else.
+
+    >>> counts([" 5 ", "5.5", "-3"])
+    array([5, 0, 0])
+    """
+    return np.array([_count(text.strip()) for text in texts], np.int64)
+
+
+@lru_cache(maxsize=64)
+def _count(digits: str) -> int:
     return int(digits) if len(digits) <= 3 and digits.isascii() and digits.isdigit() else 0
