@@ -9,6 +9,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 import pytest
+from hypothesis import settings
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -16,6 +17,10 @@ if TYPE_CHECKING:
     from eosmuster.api import Results
 
 ROOT = Path(__file__).resolve().parents[1]
+
+# the same examples in every run: a new one is looked for by the fuzzing scripts, not by a build
+settings.register_profile("repeatable", derandomize=True)
+settings.load_profile("repeatable")
 
 
 def pytest_configure(config: pytest.Config) -> None:

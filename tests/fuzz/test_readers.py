@@ -9,7 +9,7 @@ from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
 SHARES = st.floats(0.0, 1.0, exclude_max=True)
-SETTINGS = settings(max_examples=150, deadline=None, suppress_health_check=[HealthCheck.too_slow])
+SETTINGS = settings(derandomize=True, max_examples=150, deadline=None, suppress_health_check=[HealthCheck.too_slow])
 
 
 def files(samples: list[bytes], operations: tuple[str, ...]) -> st.SearchStrategy[bytes]:

@@ -291,3 +291,8 @@ def test_a_phase_nobody_knows_is_refused() -> None:
     assert told(reading) == [
         "phase: column 'density [kg/m3]': line 2 left out: the phase is 'solid'; valid: liquid, vapor, fluid"
     ]
+
+
+def test_nothing_but_delimiters_is_refused():
+    reading = laboratory.read_text(b",", "empty.csv")
+    assert [d.sentence for d in reading.diagnostics] == ["it holds nothing but empty cells"]

@@ -103,7 +103,10 @@ def _lines(text: str, descriptor: Descriptor) -> tuple[str, list[tuple[int, list
     delimiter = descriptor.delimiter or delimiter_of(header)
     if len(delimiter) != 1:
         raise InputError(f"its delimiter is declared as {shown(delimiter)}; valid is one character")
-    return delimiter, list(lines_of(text, delimiter))
+    lines = list(lines_of(text, delimiter))
+    if not lines:
+        raise InputError("it holds nothing but empty cells")
+    return delimiter, lines
 
 
 def _whole(name: str, descriptor: Descriptor, columns: dict[Key, Column]) -> tuple[dict[str, str], list[Diagnostic]]:
