@@ -194,6 +194,7 @@ BAD = {
     "parameter empty": ({"parameters": {"m": []}}, r"parameters.m = \[\] must hold at least one"),
     "coefficient no number": ({"parameters": {"m": [0.4, "x"]}}, r"parameters.m = 'x' is not a finite number"),
     "component's no number": ({"parameters": {"m": {"own": "x"}}}, r"parameters.m.own = 'x' is not a finite"),
+    "supercritical unknown": ({"supercritical": "Boston"}, r"supercritical = 'Boston' must be one of own, Boston-"),
     "translation no table": ({"translation": 5e-6}, r"translation = 5e-06 must hold exactly one of volume"),
     "translation empty": ({"translation": {}}, r"translation = a table must hold exactly one of"),
     "translation unknown": ({"translation": {"shift": 0.1}}, r"must hold exactly one of volume, fraction"),

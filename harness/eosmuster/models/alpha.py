@@ -3,6 +3,9 @@
 Each takes tau = 1 - T/Tc (formed as (Tc - T)/Tc, so that no digit is lost near the critical point) and its
 parameters, all broadcast against each other, and returns alpha - 1, exact where tau is small. The logarithmic
 slope d ln(alpha)/d ln(T) stands beside it. Every function gives alpha(Tc) = 1.
+
+Above Tc most functions go on as they are. Where the publication changes the rule there, `AlphaFunction.above` says
+what takes the function's place; the formulas below are those of T < Tc.
 """
 
 from __future__ import annotations
@@ -14,7 +17,12 @@ from types import MappingProxyType
 import numpy as np
 from numpy.typing import NDArray
 
+from eosmuster.models import alpha_jets as jets
+from eosmuster.models.alpha_jets import Jet
+
 Floats = NDArray[np.float64]
+
+Above = Callable[..., tuple[str, tuple[Floats, ...]]]
 
 
 @dataclass(frozen=True)
@@ -28,6 +36,8 @@ class AlphaFunction:
     excess : (tau, *parameters) -> alpha - 1
     log_slope : (tau, *parameters) -> d ln(alpha)/d ln(T)
     source : where it was published
+    jet : (tau, *parameters) -> alpha - 1, d alpha/d ln(T), d2 alpha/d ln(T)2
+    above : (*parameters) -> the function that replaces this one above Tc and its parameters; None if it goes on
     """
 
     name: str
@@ -35,6 +45,23 @@ class AlphaFunction:
     excess: Callable[..., Floats]
     log_slope: Callable[..., Floats]
     source: str
+    jet: Callable[..., Jet]
+    above: Above | None = None
+
+    def log_curvature(self, tau: Floats, *parameters: Floats) -> Floats:
+        """d2 ln(alpha)/d ln(T)2.
+
+        Examples
+        --------
+        >>> m, root = 0.8, np.sqrt(0.7)
+        >>> float(-m * (1 + m) * root / (2 * (1 + m * (1 - root)) ** 2))   # Soave's function, by hand
+        -0.471...
+        >>> float(ALPHA_FUNCTIONS["Soave"].log_curvature(np.array(0.3), m))
+        -0.471...
+        """
+        excess, first, second = self.jet(tau, *parameters)
+        slope = first / (1.0 + excess)
+        return np.asarray(second / (1.0 + excess) - slope * slope)
 
 
 def _one_less_root(tau: Floats) -> Floats:
@@ -135,7 +162,8 @@ def twu_pair_excess(
 ) -> Floats:
     """Alpha = alpha0 + omega (alpha1 - alpha0), both of Twu's form.
 
-    Twu, Coon and Cunningham, Fluid Phase Equilib. 105 (1995) 49 (PR) and 61 (SRK); subcritical parameters.
+    Twu, Coon and Cunningham, Fluid Phase Equilib. 105 (1995) 49 (PR) and 61 (SRK). They give other L, M, N above
+    Tc, which a model's record holds.
     """
     log_tr = np.log1p(-tau)
     first, second = np.expm1(_twu_log(log_tr, L0, M0, N0)), np.expm1(_twu_log(log_tr, L1, M1, N1))
@@ -176,11 +204,10 @@ def cismondi_mollerup_slope(tau: Floats, k: Floats) -> Floats:
 def _schmidt_wenzel_m(tau: Floats, omega: Floats) -> tuple[Floats, Floats]:
     """m of Schmidt and Wenzel and its derivative with respect to Tr."""
     tr = 1.0 - tau
-    m0 = np.where(omega <= 0.3671, 0.465 + omega * (1.347 - 0.528 * omega), 0.5361 + 0.9593 * omega)
+    m0, share = jets.schmidt_wenzel_bands(omega)
     inner = 5.0 * tr - 3.0 * m0 - 1.0
     light, light_slope = inner * inner / 70.0, inner / 7.0
     heavy, heavy_slope = 0.71 * (tr - 0.779) ** 2, 1.42 * (tr - 0.779)
-    share = np.clip((omega - 0.4) / 0.15, 0.0, 1.0)
     return np.asarray(m0 + light + share * (heavy - light)), np.asarray(
         light_slope + share * (heavy_slope - light_slope)
     )
@@ -203,21 +230,42 @@ def schmidt_wenzel_slope(tau: Floats, omega: Floats) -> Floats:
     return np.asarray((2.0 * tr * slope * x - m * root) / (1.0 + m * x))
 
 
+def stryjek_vera_above(kappa0: Floats, _kappa1: Floats) -> tuple[str, tuple[Floats, ...]]:
+    """kappa1 = 0 above Tc: Soave's function with kappa0."""
+    return "Soave", (kappa0,)
+
+
+def mathias_copeman_above(c1: Floats, _c2: Floats, _c3: Floats) -> tuple[str, tuple[Floats, ...]]:
+    """Only c1 is kept above Tc: Soave's function with c1."""
+    return "Soave", (c1,)
+
+
+def schmidt_wenzel_above(omega: Floats) -> tuple[str, tuple[Floats, ...]]:
+    """m keeps its value at Tc: alpha and its slope are continuous.
+
+    Ours: the paper's own rule for T > Tc could not be read, and m as it stands would grow with Tr**2.
+    """
+    m, _, _ = jets.schmidt_wenzel_m(np.asarray(0.0), omega)
+    return "Soave", (m,)
+
+
 _TWU_PAIR = ("omega", "L0", "M0", "N0", "L1", "M1", "N1")
 
 ALPHA_FUNCTIONS: Mapping[str, AlphaFunction] = MappingProxyType(
     {
         a.name: a
         for a in (
-            AlphaFunction("constant", (), constant_excess, constant_slope, "van der Waals 1873"),
-            AlphaFunction("power", ("n",), power_excess, power_slope, "Redlich and Kwong 1949"),
-            AlphaFunction("Soave", ("m",), soave_excess, soave_slope, "Soave 1972"),
+            AlphaFunction("constant", (), constant_excess, constant_slope, "van der Waals 1873", jets.constant),
+            AlphaFunction("power", ("n",), power_excess, power_slope, "Redlich and Kwong 1949", jets.power),
+            AlphaFunction("Soave", ("m",), soave_excess, soave_slope, "Soave 1972", jets.soave),
             AlphaFunction(
                 "Stryjek-Vera",
                 ("kappa0", "kappa1"),
                 stryjek_vera_excess,
                 stryjek_vera_slope,
                 "Stryjek and Vera 1986",
+                jets.stryjek_vera,
+                stryjek_vera_above,
             ),
             AlphaFunction(
                 "Mathias-Copeman",
@@ -225,16 +273,26 @@ ALPHA_FUNCTIONS: Mapping[str, AlphaFunction] = MappingProxyType(
                 mathias_copeman_excess,
                 mathias_copeman_slope,
                 "Mathias and Copeman 1983",
+                jets.mathias_copeman,
+                mathias_copeman_above,
             ),
-            AlphaFunction("Twu", ("L", "M", "N"), twu_excess, twu_slope, "Twu et al. 1991"),
-            AlphaFunction("Twu pair", _TWU_PAIR, twu_pair_excess, twu_pair_slope, "Twu, Coon and Cunningham 1995"),
-            AlphaFunction("Gasem", ("A", "B", "C"), gasem_excess, gasem_slope, "Gasem et al. 2001"),
+            AlphaFunction("Twu", ("L", "M", "N"), twu_excess, twu_slope, "Twu et al. 1991", jets.twu),
+            AlphaFunction(
+                "Twu pair",
+                _TWU_PAIR,
+                twu_pair_excess,
+                twu_pair_slope,
+                "Twu, Coon and Cunningham 1995",
+                jets.twu_pair,
+            ),
+            AlphaFunction("Gasem", ("A", "B", "C"), gasem_excess, gasem_slope, "Gasem et al. 2001", jets.gasem),
             AlphaFunction(
                 "Cismondi-Mollerup",
                 ("k",),
                 cismondi_mollerup_excess,
                 cismondi_mollerup_slope,
                 "Cismondi and Mollerup 2005",
+                jets.cismondi_mollerup,
             ),
             AlphaFunction(
                 "Schmidt-Wenzel",
@@ -242,6 +300,8 @@ ALPHA_FUNCTIONS: Mapping[str, AlphaFunction] = MappingProxyType(
                 schmidt_wenzel_excess,
                 schmidt_wenzel_slope,
                 "Schmidt and Wenzel 1980",
+                jets.schmidt_wenzel,
+                schmidt_wenzel_above,
             ),
         )
     }

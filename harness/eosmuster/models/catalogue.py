@@ -75,7 +75,8 @@ _RECORDS = (
         alpha="Twu pair",
         parameters=_twu_pair(0.141599, 0.919422, 2.496441, 0.500315, 0.799457, 3.291790),
         source="Twu, Coon and Cunningham, Fluid Phase Equilib. 105 (1995) 61",
-        status=_TRANSCRIPTION,
+        status=_TRANSCRIPTION + "; those above Tc from memory",
+        supercritical_parameters=_twu_pair(0.441411, 6.500018, -0.2, 0.032580, 1.289098, -8.0),
     ),
     ModelRecord(
         name="SRK-PM19",
@@ -119,7 +120,8 @@ _RECORDS = (
         ),
         source="Stryjek and Vera, Can. J. Chem. Eng. 64 (1986) 323, Table 1",
         status=_TRANSCRIPTION,
-        note="kappa1 is applied at all temperatures below critical, with the component's own Tc, pc and omega",
+        note="kappa1 is applied at all temperatures below critical and is 0 above, with the component's own Tc, pc "
+        "and omega",
     ),
     ModelRecord(
         name="PR-Twu91",
@@ -142,6 +144,7 @@ _RECORDS = (
         parameters=_twu_pair(0.125283, 0.911807, 1.948150, 0.511614, 0.784054, 2.812520),
         source="Twu, Coon and Cunningham, Fluid Phase Equilib. 105 (1995) 49",
         status=_TRANSCRIPTION,
+        supercritical_parameters=_twu_pair(0.401219, 4.963070, -0.2, 0.024955, 1.248089, -8.0),
     ),
     ModelRecord(
         name="PR-Gasem",
@@ -203,6 +206,7 @@ _RECORDS = (
         parameters=frozen(omega=_OMEGA),
         source="Schmidt and Wenzel, Chem. Eng. Sci. 35 (1980) 1503",
         status="from memory, consistent with our own calculation",
+        note="above Tc m keeps its value at Tc: the paper's own rule could not be read",
     ),
     ModelRecord(
         name="RKPR",

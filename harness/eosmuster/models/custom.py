@@ -11,6 +11,8 @@ from eosmuster.models.alpha import ALPHA_FUNCTIONS
 from eosmuster.models.catalogue import CATALOGUE
 from eosmuster.models.forms import FORMS, Form, constant_shape
 from eosmuster.models.records import (
+    OWN_RULE,
+    SUPERCRITICAL_RULES,
     CovolumeTranslation,
     CriticalTranslation,
     ModelRecord,
@@ -22,7 +24,7 @@ from eosmuster.models.records import (
 )
 from eosmuster.quantities import shown, to_si
 
-KEYS = ("name", "form", "alpha", "parameters", "translation", "source", "note")
+KEYS = ("name", "form", "alpha", "parameters", "supercritical", "translation", "source", "note")
 TRANSLATIONS = ("volume", "fraction_of_covolume", "rackett")
 
 
@@ -34,6 +36,7 @@ def record_from_plan(table: Mapping[str, object], where: str) -> ModelRecord:
     table : keys of `KEYS`; ``form`` is a published name or ``{delta1 = .., delta2 = ..}``; each parameter is a
         number, the coefficients of a polynomial in the acentric factor (constant first), or a table of numbers by
         component;
+        ``supercritical`` is ``own`` (the alpha function's own rule above Tc) or ``Boston-Mathias``;
         ``translation`` is ``{volume = {component = "5 cm3/mol"}}``, ``{fraction_of_covolume = {component = 0.05}}``
         or ``{rackett = [k, z0]}``, the constants of c = k (R Tc/pc)(z0 - z_RA)
     where : file and table, for messages
@@ -69,6 +72,7 @@ def record_from_plan(table: Mapping[str, object], where: str) -> ModelRecord:
         translation=_translation(table.get("translation"), where),
         note=str(table.get("note", "")),
         own=True,
+        supercritical=_rule(table.get("supercritical", OWN_RULE), where),
     )
 
 
@@ -77,6 +81,12 @@ def _text(table: Mapping[str, object], key: str, where: str) -> str:
     if not isinstance(value, str) or not value.strip():
         raise InputError(f"{where}: {key} = {shown(value)} must be a text that is not empty")
     return value.strip()
+
+
+def _rule(value: object, where: str) -> str:
+    if not isinstance(value, str) or value not in SUPERCRITICAL_RULES:
+        raise InputError(f"{where}: supercritical = {shown(value)} must be one of {', '.join(SUPERCRITICAL_RULES)}")
+    return value
 
 
 def _number(value: object, where: str) -> float:

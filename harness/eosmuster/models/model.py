@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 from eosmuster.components import Component
 from eosmuster.errors import InputError
 from eosmuster.models.alpha import ALPHA_FUNCTIONS, AlphaFunction
+from eosmuster.models.alpha_jets import Jet
 from eosmuster.models.critical import critical_point
 from eosmuster.models.records import (
     CompressibilityPolynomial,
@@ -25,6 +26,7 @@ from eosmuster.models.records import (
     Tabulated,
     VolumeTranslation,
 )
+from eosmuster.models.supercritical import Supercritical, supercritical_alpha
 from eosmuster.paths import references_folder
 from eosmuster.quantities import GAS_CONSTANT
 
@@ -42,6 +44,7 @@ class Parameters:
     form : index into them
     alpha : the alpha function, and its parameters in its own order
     translation : c in V = V_EOS - c, as a multiple of R Tc/pc; None for no translation at all
+    supercritical : alpha function and parameters above Tc; None if they are the same as below
     """
 
     critical_temperature: Floats
@@ -52,6 +55,7 @@ class Parameters:
     alpha: AlphaFunction
     alpha_parameters: tuple[Floats, ...]
     translation: Floats | None = None
+    supercritical: Supercritical | None = None
 
     def take(self, index: NDArray[np.intp] | int | slice) -> Parameters:
         """Parameters of the rows asked for, in that order (repeats allowed)."""
@@ -62,7 +66,25 @@ class Parameters:
             form=self.form[index],
             alpha_parameters=tuple(p[index] for p in self.alpha_parameters),
             translation=None if self.translation is None else self.translation[index],
+            supercritical=None if self.supercritical is None else self.supercritical.take(index),
         )
+
+    def alpha_jet(self, tau: Floats) -> Jet:
+        """alpha - 1 and its two derivatives with respect to ln(T), by the model's rule on each side of Tc.
+
+        Parameters
+        ----------
+        tau : 1 - T/Tc, of the parameters' shape; any shape if theirs is ()
+        """
+        above = tau < 0.0
+        if self.supercritical is None or not above.any():
+            return self.alpha.jet(tau, *self.alpha_parameters)
+        hot = self.supercritical.jet(tau)
+        if above.all():
+            return hot
+        cold = self.alpha.jet(tau, *self.alpha_parameters)
+        a, b, c = (np.where(above, x, y) for x, y in zip(hot, cold, strict=True))
+        return a, b, c
 
 
 @dataclass(frozen=True)
@@ -88,7 +110,10 @@ def bind(record: ModelRecord, components: Sequence[Component]) -> BoundModel:
     tc, pc = (np.array([pair[i] for pair in constants], float) for i in (0, 1))
     s, m = (np.array(x, float) for x in record.form.shape(omega, zc))
     alpha = ALPHA_FUNCTIONS[record.alpha]
-    values = tuple(_parameter(record.parameters[name], components, omega, zc) for name in alpha.parameters)
+    values, above = (
+        tuple(_parameter(given[name], components, omega, zc) for name in alpha.parameters)
+        for given in (record.parameters, {**record.parameters, **record.supercritical_parameters})
+    )
     shift = _translation(record, components, omega, tc, pc, s, m)
     reasons = [_unavailable(record, c, i, tc, s, values, shift) for i, c in enumerate(components)]
     missing = np.array([bool(r) for r in reasons], bool)
@@ -97,7 +122,8 @@ def bind(record: ModelRecord, components: Sequence[Component]) -> BoundModel:
         s, m, form = s[:1], m[:1], np.zeros(len(components), np.intp)
     else:
         form = np.arange(len(components), dtype=np.intp)
-    return BoundModel(record, Parameters(tc, pc, s, m, form, alpha, values, shift), tuple(reasons))
+    hot = supercritical_alpha(record, alpha, values, above, len(components))
+    return BoundModel(record, Parameters(tc, pc, s, m, form, alpha, values, shift, hot), tuple(reasons))
 
 
 def critical_compressibility(component: Component) -> float:

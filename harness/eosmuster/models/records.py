@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from types import MappingProxyType
 
 import numpy as np
@@ -102,6 +102,10 @@ class VolumeTranslation:
     volume: Tabulated | PerComponent
 
 
+OWN_RULE, BOSTON_MATHIAS_RULE = "own", "Boston-Mathias"
+SUPERCRITICAL_RULES = (OWN_RULE, BOSTON_MATHIAS_RULE)
+"""How alpha goes on above Tc: as published with the alpha function, or by Boston and Mathias's extrapolation."""
+
 Translation = CriticalTranslation | CovolumeTranslation | VolumeTranslation
 
 
@@ -121,6 +125,8 @@ class ModelRecord:
     note : what a user must know
     fitted : properties for which parameters were fitted to the reference library's own values
     own : whether the user's plan brought it
+    supercritical : one of `SUPERCRITICAL_RULES`
+    supercritical_parameters : alpha parameters whose values are others above Tc
     """
 
     name: str
@@ -134,6 +140,8 @@ class ModelRecord:
     note: str = ""
     fitted: tuple[str, ...] = ()
     own: bool = False
+    supercritical: str = OWN_RULE
+    supercritical_parameters: Mapping[str, Parameter] = field(default_factory=lambda: MappingProxyType({}))
 
 
 def frozen(**parameters: Parameter) -> Mapping[str, Parameter]:

@@ -15,37 +15,10 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
+from eosmuster.models.attraction import mean_attraction
 from eosmuster.models.critical import Critical, critical_point
 
 Floats = NDArray[np.float64]
-
-
-def mean_attraction(liquid: Floats, vapor: Floats, s: Floats | float, m: Floats | float) -> Floats:
-    """Mean of 1/P(v) over [v_L, v_V], accurate also where the two volumes meet.
-
-    The integral is a logarithm for real d1, d2 and an arctangent for complex ones; written with the difference
-    of the arguments formed first, nothing cancels near the critical point.
-    """
-    s, m = np.asarray(s, float), np.asarray(m, float)
-    delta = vapor - liquid
-    discriminant = s * s - 4.0 * m
-    root = np.sqrt(np.abs(discriminant))
-    real = (2.0 * liquid + s - root) * (2.0 * vapor + s + root) / 4.0  # (v_L + d2)(v_V + d1)
-    x = root * delta / np.where(discriminant >= 0.0, real, 1.0)
-    tiny = np.abs(x) < 1e-300  # covers van der Waals (d1 = d2) and the critical point itself
-    safe = np.where(tiny, 1.0, x)
-    logarithmic = np.where(tiny, 1.0, np.log1p(np.maximum(safe, -0.5)) / safe) / real
-    if np.all(discriminant >= 0.0):
-        return np.asarray(logarithmic)
-    angle_scale = np.where(root > 0.0, root, 1.0)
-    dot = 2.0 * (liquid * vapor + m) + s * (liquid + vapor)
-    tangent = root * delta / np.where(dot == 0.0, 1.0, dot)
-    arc = np.where(
-        tangent == 0.0,
-        2.0 / dot,
-        2.0 * np.arctan2(root * delta, dot) / (angle_scale * np.where(delta == 0.0, 1.0, delta)),
-    )
-    return np.asarray(np.where(discriminant >= 0.0, logarithmic, arc))
 
 
 def equal_pressure_residual(q: Floats, liquid: Floats, vapor: Floats, s: Floats, m: Floats) -> Floats:

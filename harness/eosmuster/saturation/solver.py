@@ -12,13 +12,13 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from eosmuster.models.attraction import mean_attraction
 from eosmuster.models.critical import critical_point
 from eosmuster.models.model import Parameters
 from eosmuster.quantities import GAS_CONSTANT
 from eosmuster.saturation import inverse, tables
 from eosmuster.saturation.nodes import LARGEST_U
 from eosmuster.saturation.prepared import Prepared, prepare
-from eosmuster.saturation.reduced import mean_attraction
 
 Floats = NDArray[np.float64]
 

@@ -15,10 +15,10 @@ from functools import cache, cached_property
 import numpy as np
 from numpy.typing import NDArray
 
+from eosmuster.models.attraction import mean_attraction
 from eosmuster.models.critical import critical_point
 from eosmuster.saturation import nodes as node_module
 from eosmuster.saturation.nodes import EDGES, LARGEST_U, NODES_A_PANEL, CurveNodes
-from eosmuster.saturation.reduced import mean_attraction
 
 Floats = NDArray[np.float64]
 Index = NDArray[np.intp]
@@ -181,7 +181,7 @@ def _at_critical(log_p: Floats) -> Floats:
     n = NODES_A_PANEL
     positions = node_module.node_positions()[:n]
     weights = barycentric(np.zeros(1), np.concatenate([-positions[::-1], positions]))[0]
-    return np.asarray(log_p[:, :n] @ (weights[n:] + weights[:n][::-1]))
+    return np.asarray(np.einsum("ij,j->i", log_p[:, :n], weights[n:] + weights[:n][::-1]))
 
 
 def _coefficients(functions: list[tuple[Floats, Floats]], resolution: Resolution) -> Floats:
@@ -191,11 +191,16 @@ def _coefficients(functions: list[tuple[Floats, Floats]], resolution: Resolution
     shape = (resolution.degree + 1, curves, resolution.intervals, len(functions))
     coefficients = np.empty(shape)
     for column, (ahead, behind) in enumerate(functions):
-        at_points = ahead @ matrix.T
-        at_points[:, : mirrored.shape[0]] += behind[:, : mirrored.shape[1]] @ mirrored.T
+        at_points = _product(ahead, matrix.T)
+        at_points[:, : mirrored.shape[0]] += _product(behind[:, : mirrored.shape[1]], mirrored.T)
         local = at_points.reshape(curves * resolution.intervals, resolution.degree + 1)
-        coefficients[..., column] = (to_powers @ local.T).reshape(shape[:3])
+        coefficients[..., column] = _product(to_powers, local.T).reshape(shape[:3])
     return coefficients
+
+
+def _product(a: Floats, b: Floats) -> Floats:
+    """Multiply matrices, the same on any machine: what threads share among them differs in its last bits."""
+    return np.asarray(np.einsum("ij,jk->ik", a, b))
 
 
 @cache
