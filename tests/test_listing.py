@@ -7,7 +7,7 @@ import re
 import pytest
 
 from eosmuster import components, listing
-from eosmuster.cli import TOPICS
+from eosmuster.commands.listing import TOPICS
 from eosmuster.components import Component, find
 from eosmuster.errors import InputError
 from eosmuster.inquiry import ask

@@ -9,12 +9,12 @@ from types import MappingProxyType
 from eosmuster.components import Component, catalogue, left_out
 from eosmuster.errors import InputError, suggestion
 from eosmuster.inquiry import Answer
+from eosmuster.listing_references import references_text
 from eosmuster.models.catalogue import CATALOGUE
 from eosmuster.plan import builtin
 from eosmuster.quantities import PROPERTIES, to_si
 from eosmuster.report.terminal import SaturationRow, saturation_table
 from eosmuster.report.text import plain_table
-from eosmuster.sources import handbook, library
 
 
 def chosen_models(names: Sequence[str] | None) -> tuple[str, ...]:
@@ -104,16 +104,6 @@ def components_text(width: int) -> str:
     for name, reason in left_out().items():
         lines += _wrapped(f"  {name}: {reason}", width)
     return "\n".join(lines)
-
-
-def references_text(width: int) -> str:
-    """List the sources and how much each gives."""
-    fluids = str(len(catalogue()))
-    rows = [[p.name, f"{library.LIBRARY} {library.version()}", fluids, "", ""] for p in PROPERTIES.values()]
-    rows += [[c.property, c.source, str(c.components), str(c.rows), str(c.excluded)] for c in handbook.counts()]
-    table = plain_table(["property", "source", "components", "rows", "excluded"], sorted(rows), width)
-    legend = "Rows are correlations or tabulated values; excluded ones are kept with the evidence, and not used."
-    return "\n".join([table, "", *_wrapped(legend, width)])
 
 
 def properties_text(width: int) -> str:

@@ -10,10 +10,12 @@ to 1, 2, 3 or 5 times a power of ten:
 - the largest uncertainty that ``references/uncertainty/coolprop.csv`` states for a fluid of the class in the band:
   nothing is assumed to be better than what is stated.
 
-Two properties follow from these. A saturated vapour density is p/(Z R T): vapour pressure's default and liquid
+Other properties follow from these. A saturated vapour density is p/(Z R T): vapour pressure's default and liquid
 density's are added. A normal boiling point has a relative uncertainty of U(p) over d ln p/d ln T, which at one
 atmosphere is about 10, and 5 for helium: vapour pressure's default between 0.6 and 0.7 of the critical temperature
-is divided by 5.
+is divided by 5. A single-phase density has, at any pressure, the default of the saturated liquid: at the same
+reduced temperature, up to 1.1 of it that of the band next to the critical point, above that of the lowest band. Heat
+capacities and speeds of sound have no handbook rows to be measured against, so theirs are floors of our own choice.
 
     python references/generators/uncertainty.py
 """
@@ -37,12 +39,27 @@ from eosmuster.components import FAMILIES, catalogue
 
 UNCERTAINTY = Path(__file__).resolve().parents[1] / "uncertainty"
 BOILING = "boiling_temperature"
+DENSITY, HEAT_CAPACITY, SOUND = "density", "isobaric_heat_capacity", "speed_of_sound"
 # band of reduced temperature -> floor, %: 0.5 % is what short equations state at worst; it is more where vapour
 # pressures are tiny and where the critical point takes every certainty
 FLOORS: dict[str, dict[tuple[float, float], float]] = {
     PRESSURE: {(0.0, 0.5): 5.0, (0.5, 0.6): 1.0, (0.6, 0.7): 0.5, (0.7, 1.0): 0.5},
     LIQUID: {(0.0, 0.9): 0.5, (0.9, 0.97): 1.0, (0.97, 1.0): 3.0},
     HEAT: {(0.0, 0.7): 1.0, (0.7, 0.9): 1.0, (0.9, 0.97): 2.0, (0.97, 1.0): 5.0},
+}
+HOTTEST = 1000.0  # reduced; helium's equation ends at 385
+NEXT_TO_CRITICAL = (0.97, 1.1)
+# band of a single-phase density -> band of the saturated liquid whose default it takes
+DENSITY_BANDS = {
+    (0.0, 0.9): (0.0, 0.9),
+    (0.9, 0.97): (0.9, 0.97),
+    NEXT_TO_CRITICAL: (0.97, 1.0),
+    (1.1, HOTTEST): (0.0, 0.9),
+}
+# short equations state 0.5 to 2 % of either; next to the critical point one rises without end, the other falls
+CALORIC: dict[str, dict[tuple[float, float], float]] = {
+    HEAT_CAPACITY: {(0.0, 0.9): 2.0, (0.9, 0.97): 5.0, NEXT_TO_CRITICAL: 20.0, (1.1, HOTTEST): 2.0},
+    SOUND: {(0.0, 0.9): 2.0, (0.9, 0.97): 3.0, NEXT_TO_CRITICAL: 10.0, (1.1, HOTTEST): 2.0},
 }
 HIGHEST_REDUCED = 0.995
 STEEPNESS = 5.0
@@ -127,6 +144,27 @@ def vapor_defaults(family: str) -> Iterator[tuple[tuple[float, float], float, st
         yield band, rounded_up(max(sum(parts), stated)), why
 
 
+def single_phase_defaults(family: str) -> Iterator[tuple[str, tuple[float, float], float, str]]:
+    """Give property, band, default and reason of the single-phase properties."""
+    for band, liquid in DENSITY_BANDS.items():
+        value, stated = default(family, LIQUID, liquid)[0], largest_stated(family, DENSITY, band)
+        why = f"that of the saturated liquid from {liquid[0]:g} to {liquid[1]:g} Tc, {value:g} %"
+        yield DENSITY, band, *at_least(value, why, stated)
+    for name, floors in CALORIC.items():
+        for band, floor in floors.items():
+            why = f"no handbook rows to measure against; floor {floor:g} %"
+            yield name, band, *at_least(floor, why, largest_stated(family, name, band))
+
+
+def at_least(value: float, why: str, stated: float) -> tuple[float, str]:
+    """Give a default that is not below what is stated, and why.
+
+    >>> at_least(2.0, "floor 2 %", 0.0), at_least(2.0, "floor 2 %", 3.0)
+    ((2.0, 'floor 2 %'), (3.0, 'floor 2 %; largest stated 3 %'))
+    """
+    return rounded_up(max(value, stated)), why + (f"; largest stated {stated:g} %" if stated else "")
+
+
 def defaults() -> Iterator[tuple[str, str, tuple[float, float], float, str]]:
     """Give class, property, band, default and reason of every row."""
     for family in CLASSES:
@@ -138,6 +176,8 @@ def defaults() -> Iterator[tuple[str, str, tuple[float, float], float, str]]:
         pressure = default(family, PRESSURE, (0.6, 0.7))[0]
         why = f"vapour pressure {pressure:g} % over d ln p/d ln T, taken as {STEEPNESS:g}"
         yield family, BOILING, (0.0, 1.0), rounded_up(pressure / STEEPNESS), why
+        for name, band, value, reason in single_phase_defaults(family):
+            yield family, name, band, value, reason
 
 
 def default_rows() -> Iterator[Cells]:

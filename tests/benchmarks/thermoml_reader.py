@@ -18,7 +18,7 @@ import measuring
 import numpy as np
 from measuring import figure, forked
 
-from eosmuster.sources.measured_files import read_folder, readings
+from eosmuster.sources.measured.files import read_folder, readings
 
 HEAD = """<?xml version="1.0" encoding="UTF-8"?>
 <!-- INVENTED, for a benchmark -->

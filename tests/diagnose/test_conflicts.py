@@ -6,6 +6,7 @@ import pytest
 from eosmuster.components import find
 from eosmuster.diagnose.conflicts import Source, find_conflict
 from eosmuster.plan.reading import parse_plan
+from eosmuster.quantities import SATURATION
 from eosmuster.sources import handbook, library
 from eosmuster.sweeping.series import collect
 from eosmuster.sweeping.watching import watch
@@ -119,3 +120,74 @@ reduced_temperature = {{ points = 21 }}
     watched = watch(series)
     assert watched.conflicts == ()
     assert set(watched.contested.values()) == {"no"}
+
+
+# ---------------------------------------------------------------- tables without common states, and witnesses
+
+
+def test_tables_without_common_states_are_compared_through_a_formula() -> None:
+    """Two measured sets agree 1.7 % off the formula: the formula stands alone. One vote each, not by points."""
+    big = tabulated("big", 0.983, [200.0 + 0.13 * i for i in range(700)])
+    small = tabulated("small", 0.982, [205.5, 230.5, 250.5, 280.5])
+    found = find_conflict("x", "liquid_density", [continuous("coolprop", 1.0), big, small])
+    assert found is not None
+    assert found.alone == ("coolprop",)
+    assert found.others == ("big", "small")
+    assert found.size_pct == pytest.approx(100.0 * (1.0 / 0.983 - 1.0), abs=0.2)
+
+
+def test_the_bridge_cancels() -> None:
+    """A formula 30 % off, which both tables contradict, shows all the same that they agree with each other."""
+    one, other = (
+        tabulated("one", 1.0, [210.0, 220.0, 230.0, 250.0]),
+        tabulated("other", 1.005, [205.0, 211.0, 228.0, 240.0]),
+    )
+    found = find_conflict("x", "liquid_density", [continuous("bridge", 1.3), one, other])
+    assert found is not None
+    assert found.alone == ("bridge",)
+
+
+def test_tables_that_reach_no_common_temperature_are_not_compared() -> None:
+    """Were they compared, the tables would outvote the formula, which is 3 % off one of them only."""
+    one, other = tabulated("one", 1.0, [210.0, 230.0, 240.0]), tabulated("other", 1.03, [260.0, 270.0, 290.0])
+    found = find_conflict("x", "liquid_density", [continuous("formula", 1.0), one, other])
+    assert found is not None
+    assert found.alone == ("other",)
+    assert (found.from_K, found.to_K) == (260.0, 290.0)
+
+
+def test_a_witness_is_heard_where_no_majority_tells() -> None:
+    one, other = continuous("right", 1.0), continuous("wrong", 1.2)
+    witness = tabulated("boiling point", 1.0, [250.0])
+    found = find_conflict("x", "saturation_pressure", [one, other], witnesses=[witness])
+    assert found is not None
+    assert found.alone == ("wrong",)
+    assert found.others == ("right", "boiling point")
+
+
+def test_a_witness_accuses_nobody() -> None:
+    witness = tabulated("boiling point", 1.5, [250.0])
+    agreeing = [continuous("a", 1.0), continuous("b", 1.001)]
+    assert find_conflict("x", "saturation_pressure", agreeing, witnesses=[witness]) is None
+    found = find_conflict("x", "saturation_pressure", [agreeing[0], continuous("c", 1.2)], witnesses=[witness])
+    assert found is not None
+    assert found.alone == ()
+
+
+@pytest.mark.parametrize("name", [name for name in SATURATION if name != "boiling_temperature"])
+def test_every_saturation_property_can_be_contested(name: str) -> None:
+    pair = [continuous("a", 1.0), continuous("b", 1.5)]
+    assert find_conflict("x", name, pair) is not None
+
+
+def test_very_many_tables_are_held_against_each_other_by_their_size() -> None:
+    """Of 300 measured sets the 100 with the most states are compared; the bad one is found, and names are few."""
+    tables = [tabulated(f"set {i}", 1.0, [205.0 + 0.3 * k + 0.001 * i for k in range(4 + i)]) for i in range(300)]
+    tables[299] = tabulated("big and bad", 1.5, [200.0 + 0.3 * k for k in range(310)])
+    tables[0] = tabulated("small and bad", 1.5, [210.0, 220.0, 230.0])
+    found = find_conflict("x", "liquid_density", [continuous("formula", 1.0), *tables])
+    assert found is not None
+    assert found.alone == ("big and bad",)
+    assert len(found.others) == 100  # the formula, and 99 sets
+    assert found.sentence.startswith("big and bad stands alone against formula, set 200, set 201, ")
+    assert "set 210 and 88 more by +50.00 %" in found.sentence

@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 from eosmuster.components import Component, find
 from eosmuster.diagnose.measured import CAUSES, Predictions, Suspicion, exchanged, suspicions
 from eosmuster.sources import library
-from eosmuster.sources.measured import MeasuredSet, Source
+from eosmuster.sources.measured.table import MeasuredSet, Source
 
 Floats = NDArray[np.float64]
 PROPANE, BUTANE, HEXANE, CYCLOHEXANE = map(find, ("propane", "butane", "hexane", "cyclohexane"))
@@ -139,7 +139,8 @@ def test_exchanged_substances_are_found_from_one_point() -> None:
         suspicion = only(suspicions(one, predicted, [other.name]), "other substance")
         assert f"the values lie on the curve of {other.name}" in suspicion.sentence
         found.append((one, suspicion))
-    [sentence] = exchanged(found)
+    [(first, sentence)] = exchanged(found)
+    assert first.component == HEXANE
     assert sentence.startswith("n-Hexane (block 1) and CycloHexane (block 2) are exchanged")
     assert exchanged(found[:1]) == []
 

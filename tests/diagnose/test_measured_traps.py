@@ -1,6 +1,7 @@
 """The four known traps among real files are named by their cause, and no good file is suspected of one.
 
-For the files of the folder that EOSMUSTER_THERMOML names, if it is set; see tests/sources/test_thermoml_real.py.
+For the files of the folder that EOSMUSTER_THERMOML names, if it is set, as in
+tests/sources/thermoml/test_real_files.py.
 """
 
 from __future__ import annotations
@@ -15,8 +16,8 @@ from numpy.typing import NDArray
 from eosmuster.components import Component
 from eosmuster.diagnose.measured import Predictions, Suspicion, exchanged, suspicions
 from eosmuster.sources import library
-from eosmuster.sources.measured import MeasuredSet
-from eosmuster.sources.thermoml import read_file
+from eosmuster.sources.measured.table import MeasuredSet
+from eosmuster.sources.thermoml.reader import read_file
 
 FOLDER = Path(os.environ.get("EOSMUSTER_THERMOML", ""))
 
@@ -66,7 +67,7 @@ def test_swapped_fluids() -> None:
         ("n-Hexane", "other substance", "CycloHexane"),
         ("CycloHexane", "other substance", "n-Hexane"),
     ]
-    assert "are exchanged: the values of density of each lie on the curve of the other" in exchanged(found)[0]
+    assert "are exchanged: the values of density of each lie on the curve of the other" in exchanged(found)[0][1]
 
 
 def test_a_logarithm_for_a_pressure() -> None:

@@ -20,11 +20,12 @@ from time import process_time
 import oracle
 
 from eosmuster.errors import InputError
-from eosmuster.sources import laboratory, thermoml
-from eosmuster.sources.measured import Reading
-from eosmuster.sources.measured_repeats import combined
-from eosmuster.sources.thermoml_shape import BLOCK, ROW, Shape, nodes
-from eosmuster.sources.thermoml_stream import read_parts
+from eosmuster.sources.laboratory import reader as laboratory
+from eosmuster.sources.measured.repeats import combined
+from eosmuster.sources.measured.table import Reading
+from eosmuster.sources.thermoml import reader as thermoml
+from eosmuster.sources.thermoml.shape import BLOCK, ROW, Shape, nodes
+from eosmuster.sources.thermoml.stream import read_parts
 
 FIXTURES = Path(__file__).resolve().parents[1] / "sources" / "fixtures" / "thermoml"
 THERMOML = [path.read_bytes() for path in sorted(FIXTURES.glob("*.xml"))]

@@ -8,7 +8,7 @@ import re
 from xml.etree import ElementTree
 
 from eosmuster.quantities import to_si
-from eosmuster.sources.measured import MeasuredSet, Reading
+from eosmuster.sources.measured.table import MeasuredSet, Reading
 
 SPACE = "{http://www.iupac.org/namespaces/ThermoML}"
 VALUES = f"{SPACE}PureOrMixtureData/{SPACE}NumValues/{SPACE}PropertyValue"

@@ -12,12 +12,17 @@ import pytest
 
 from eosmuster.components import FAMILIES, Component, catalogue, equation_citations, find
 from eosmuster.paths import references_folder
-from eosmuster.quantities import PROPERTIES
+from eosmuster.quantities import PROPERTIES, SATURATION, SINGLE_PHASE
 from eosmuster.sources import handbook, library, stated
+from eosmuster.sources.library_gate import reach
+from eosmuster.sources.library_states import phase_boundary
 from eosmuster.sources.stated import ASSUMED, ROUNDING, STATED, UNKNOWN
-from eosmuster.sources.uncertainty import library_uncertainty
+from eosmuster.sources.uncertainty import library_uncertainty, pressure_borders
 
 Rows = list[dict[str, str]]
+UNKNOWN_ALWAYS = {"residual_enthalpy", "residual_internal_energy", "residual_entropy", "joule_thomson_coefficient"}
+"""Of these nothing is stated, nor assumed: a residual's relative uncertainty means nothing where it vanishes."""
+
 PROPANE = find("propane")
 
 
@@ -45,7 +50,10 @@ def test_the_readme_tells_how_many_fluids_have_one() -> None:
     fluids = {name: {r["component"] for r in rows("coolprop.csv") if r["property"] == name} for name in PROPERTIES}
     pressure, liquid = len(fluids["saturation_pressure"]), len(fluids["liquid_density"])
     readme = (references_folder() / "README.md").read_text(encoding="utf-8")
-    assert f"({pressure} fluids in vapour pressure, {liquid} in liquid density)" in " ".join(readme.split())
+    assert f"({pressure} fluids in vapour pressure, {liquid} in liquid density" in " ".join(readme.split())
+    single = [len(fluids[name]) for name in ("density", "speed_of_sound", "isobaric_heat_capacity")]
+    told = "{} in single-phase density, {} in speed of sound, {} in isobaric heat capacity)".format(*single)
+    assert told in " ".join(readme.split())
 
 
 def test_every_statement_cites_the_equation_of_its_fluid() -> None:
@@ -74,11 +82,14 @@ def test_what_is_remembered_says_so_and_claims_little() -> None:
 
 
 def test_defaults_cover_every_class_property_and_temperature() -> None:
+    own = [name for name in PROPERTIES if name not in {*stated.STAND_INS, *UNKNOWN_ALWAYS}]
+    assert set(stated.STAND_INS.values()) <= set(own)
     for family in (*FAMILIES, "other"):
-        for name in PROPERTIES:
+        for name in own:
             bands = stated.defaults(family, name)
             assert bands[0].from_reduced == 0.0
-            assert bands[-1].to_reduced == 1.0
+            # helium's equation reaches furthest, to 385 Tc
+            assert bands[-1].to_reduced == (1.0 if name in SATURATION else 1000.0)
             assert all(a.to_reduced == b.from_reduced for a, b in itertools.pairwise(bands))
 
 
@@ -100,7 +111,7 @@ def test_no_default_is_below_what_is_stated_for_a_fluid_of_its_class() -> None:
 
 def test_no_default_is_better_than_what_is_known_of_good_equations() -> None:
     # 0.5 % is the worst that Lemmon and Span, J. Chem. Eng. Data 51 (2006) 785, state of their short equations
-    for name in ("saturation_pressure", "liquid_density", "vapor_density", "enthalpy_of_vaporization"):
+    for name in ("saturation_pressure", "liquid_density", "vapor_density", "enthalpy_of_vaporization", "density"):
         assert min(d.uncertainty_pct for family in FAMILIES for d in stated.defaults(family, name)) >= 0.5
 
 
@@ -135,7 +146,7 @@ def test_stated_and_assumed_are_told_apart() -> None:
     assert codes.dtype == np.int8
 
 
-@pytest.mark.parametrize("name", PROPERTIES)
+@pytest.mark.parametrize("name", SATURATION)
 def test_every_fluid_has_an_uncertainty_wherever_the_library_answers(name: str) -> None:
     for fluid in catalogue().values():
         within = library.limits(fluid)
@@ -150,7 +161,7 @@ def test_every_fluid_has_an_uncertainty_wherever_the_library_answers(name: str) 
 
 def test_the_default_behaviour_is_stated_only() -> None:
     T = np.linspace(100.0, 360.0, 27)
-    for name in PROPERTIES:
+    for name in SATURATION:
         plain = library.uncertainty_pct(PROPANE, name, T)
         _, codes = library_uncertainty(PROPANE, name, T)
         np.testing.assert_array_equal(np.isfinite(plain), codes == STATED)
@@ -180,9 +191,132 @@ def test_coverage_factors_scale_both_origins() -> None:
 
 def test_an_own_component_has_none() -> None:
     own = Component("x", critical_temperature=400.0, critical_pressure=4e6, acentric_factor=0.2)
-    values, codes = library_uncertainty(own, "saturation_pressure", [300.0])
-    assert np.isnan(values).all()
-    assert codes.tolist() == [UNKNOWN]
+    for name in PROPERTIES:
+        values, codes = library_uncertainty(own, name, [300.0], pressure=1e6)
+        assert np.isnan(values).all(), name
+        assert codes.tolist() == [UNKNOWN], name
+        assert library.uncertainty_borders(own, name, assumed=True) == ()
+        assert pressure_borders(own, name) == ()
+
+
+# ---------------------------------------------------------------- the library, single-phase states
+
+
+def test_density_by_temperature_and_pressure() -> None:
+    # Setzmann and Wagner, J. Phys. Chem. Ref. Data 20 (1991) 1061: 0.03 % below 12 MPa and 350 K, to 0.15 % beyond
+    methane, p = find("methane"), np.array([1e5, 1.1e7, 1.2e7, 1.3e7, 6e7])
+    found = library.uncertainty_pct(methane, "density", 300.0, pressure=p)
+    np.testing.assert_array_equal(found, [0.03, 0.03, 0.15, 0.15, np.nan])
+    grid = library.uncertainty_pct(methane, "density", [[300.0], [351.0]], pressure=p[:2])
+    np.testing.assert_array_equal(grid, [[0.03, 0.03], [np.nan, np.nan]])
+    # Tegeler, Span and Wagner, J. Phys. Chem. Ref. Data 28 (1999) 779: argon 0.02 %, 0.03 %, elsewhere 0.2 %
+    T, p = np.array([300.0, 300.0, 300.0, 600.0]), np.array([1e6, 2e7, 5e7, 1e6])
+    np.testing.assert_array_equal(
+        library.uncertainty_pct(find("argon"), "density", T, pressure=p), [0.02, 0.03, 0.2, 0.2]
+    )
+
+
+def test_a_statement_may_hold_for_one_phase() -> None:
+    # Zhou and Lemmon, Int. J. Thermophys. 37 (2016): R245ca, 0.1 % in the liquid from 243 K to 373 K; boils at 298 K
+    r245ca = find("R245ca")
+    found = library.uncertainty_pct(r245ca, "density", 350.0, pressure=[1e5, 5e6])
+    np.testing.assert_array_equal(found, [np.nan, 0.1])
+    # water's vapor and its liquid, remembered
+    found = library.uncertainty_pct(find("water"), "isobaric_heat_capacity", 400.0, pressure=[1e5, 5e6])
+    np.testing.assert_array_equal(found, [0.5, 0.2])
+    assert np.isnan(
+        library.uncertainty_pct(find("water"), "isobaric_heat_capacity", 400.0, pressure=[1e5, 5e6], remembered=False)
+    ).all()
+
+
+def test_next_to_the_critical_point_nothing_stated_counts() -> None:
+    # carbon dioxide: 304.1282 K, 7.3773 MPa; 0.05 % stated to 30 MPa and 523 K
+    co2 = find("carbon dioxide")
+    T, p = np.array([285.0, 300.0, 300.0, 330.0, 336.0]), np.array([9e6, 3e6, 9e6, 9e6, 9e6])
+    found = library.uncertainty_pct(co2, "density", T, pressure=p)
+    np.testing.assert_array_equal(found, [0.05, 0.05, np.nan, np.nan, 0.05])
+    assumed = library.uncertainty_pct(co2, "density", T, pressure=p, assumed=True)
+    default = stated.defaults("acid gas", "density")[2].uncertainty_pct
+    np.testing.assert_array_equal(assumed, [0.05, 0.05, default, default, 0.05])
+
+
+@pytest.mark.parametrize("name", SINGLE_PHASE)
+def test_single_phase_uncertainties_are_known_wherever_something_is_assumed(name: str) -> None:
+    for fluid in list(catalogue().values())[::5]:
+        ends = reach(fluid)
+        assert ends is not None
+        T = np.linspace(ends.critical_K[0] * 0.5, ends.highest_K, 7)[:, None]
+        values, codes = library_uncertainty(fluid, name, T, pressure=[1e5, 1e6, 1e7])
+        if name in UNKNOWN_ALWAYS:
+            assert set(codes.ravel()) == {UNKNOWN}
+        else:
+            assert np.isfinite(values).all(), fluid.name
+            assert set(codes.ravel()) <= {STATED, ASSUMED}
+        assert np.isnan(library_uncertainty(fluid, name, T)[0]).all(), "without a pressure nothing is known"
+
+
+def test_properties_that_follow_the_density() -> None:
+    T, p = np.array([300.0, 300.0, 345.0]), np.array([1e5, 5e6, 5e6])
+    density = library.uncertainty_pct(PROPANE, "density", T, pressure=p)
+    np.testing.assert_array_equal(library.uncertainty_pct(PROPANE, "compressibility_factor", T, pressure=p), density)
+    # a liquid's fugacity is reckoned from its vapour pressure: 0.02 % more
+    fugacity = library.uncertainty_pct(PROPANE, "fugacity_coefficient", T, pressure=p)
+    np.testing.assert_allclose(fugacity - density, [0.0, 0.02, 0.02], atol=1e-15)
+    twice = library.uncertainty_pct(PROPANE, "fugacity_coefficient", T, 4.0, pressure=p)
+    np.testing.assert_allclose(twice, 2.0 * fugacity)
+
+
+def test_saturated_phases_follow_their_single_phase() -> None:
+    T = np.array([300.0, 360.0, 400.0])
+    for name in ("liquid_heat_capacity", "vapor_heat_capacity"):
+        values, codes = library_uncertainty(PROPANE, name, T)
+        # 1 % to 350 K; then 5 % of the class, from 0.97 Tc on 20 %; none above
+        np.testing.assert_array_equal(
+            values, [1.0, stated.defaults("n-alkane", "isobaric_heat_capacity")[2].uncertainty_pct, np.nan]
+        )
+        assert codes.tolist() == [STATED, ASSUMED, UNKNOWN]
+    # water: each phase its own, remembered; whatever is next to the critical point is not stated
+    water = find("water")
+    assert float(library.uncertainty_pct(water, "liquid_heat_capacity", 400.0)) == 0.2
+    assert float(library.uncertainty_pct(water, "vapor_heat_capacity", 400.0)) == 0.5
+    enthalpy, entropy = (
+        library.uncertainty_pct(water, f"{name}_of_vaporization", T, assumed=True) for name in ("enthalpy", "entropy")
+    )
+    np.testing.assert_array_equal(entropy, enthalpy)
+
+
+@pytest.mark.parametrize("fluid", ["n-Propane", "Water", "Argon", "Nitrogen", "R134a", "R245ca", "Krypton"])
+@pytest.mark.parametrize("name", ["density", "speed_of_sound", "isobaric_heat_capacity", "fugacity_coefficient"])
+def test_single_phase_borders_hold_every_change(fluid: str, name: str) -> None:
+    component = catalogue()[fluid]
+    ends = reach(component)
+    assert ends is not None
+    for assumed in (False, True):
+        borders = library.uncertainty_borders(component, name, assumed=assumed)
+        T = np.linspace(ends.critical_K[0] * 0.5, min(ends.highest_K, 2.0 * ends.critical_K[0]), 400)
+        for p in (1e5, 3e6, 2e7):
+            values = library.uncertainty_pct(component, name, T, pressure=p, assumed=assumed)
+            changed = np.flatnonzero(np.diff(np.nan_to_num(values, nan=-1.0)) != 0.0)
+            boundary = phase_boundary(component, T)
+            for i in changed:
+                phases_meet = (boundary[i] > p) != (boundary[i + 1] > p)
+                assert phases_meet or any(T[i] <= border <= T[i + 1] for border in borders), (T[i], values[i : i + 2])
+    # and along an isotherm
+    borders = pressure_borders(component, name)
+    p = np.geomspace(1e5, 0.99 * ends.highest_Pa, 300)
+    for t in (0.8, 0.98, 1.5):
+        values = library.uncertainty_pct(component, name, t * ends.critical_K[0], pressure=p)
+        saturated = float(phase_boundary(component, t * ends.critical_K[0]))
+        for i in np.flatnonzero(np.diff(np.nan_to_num(values, nan=-1.0)) != 0.0):
+            assert any(p[i] <= border <= p[i + 1] for border in (*borders, saturated)), (t, p[i])
+
+
+def test_borders_of_what_follows() -> None:
+    borders = library.uncertainty_borders
+    for name, leader in stated.STAND_INS.items():
+        assert set(borders(PROPANE, leader, assumed=True)) <= set(borders(PROPANE, name, assumed=True)), name
+    assert pressure_borders(PROPANE, "saturation_pressure") == ()
+    assert pressure_borders(PROPANE, "liquid_heat_capacity") == ()
 
 
 # ---------------------------------------------------------------- handbook values

@@ -1,6 +1,8 @@
 """References against each other: where they disagree by more than they may, and which of them stands alone.
 
-Sources count as sources, not by their points, and medians decide, so that one bad value convicts nobody.
+Sources count as sources, not by their points, and medians decide, so that one bad value convicts nobody. Two
+tables without common states, as measured sets mostly are, are compared through a continuous source as a bridge:
+how far each lies from it where both have values, so that the bridge's own error cancels.
 """
 
 from __future__ import annotations
@@ -22,12 +24,20 @@ CONTESTED_ABOVE: Mapping[str, float] = MappingProxyType(
         "liquid_density": 1.0,
         "vapor_density": 2.0,
         "enthalpy_of_vaporization": 2.0,
+        "entropy_of_vaporization": 2.0,
+        "liquid_heat_capacity": 3.0,
+        "vapor_heat_capacity": 3.0,
     }
 )
 """Median disagreement in % above which a fluid is contested; ours: about the tightest default limit of a property."""
 
 FEWEST = 3
 """States in common from which two sources can be compared."""
+
+MOST_TABLES = 100
+"""Tables of one property of one component that are held against each other, those with the most states first."""
+
+_MOST_NAMED = 12
 
 
 @dataclass(frozen=True)
@@ -75,14 +85,31 @@ class Conflict:
     @property
     def sentence(self) -> str:
         """Say it in words."""
-        size = f"{self.size_pct:+.2f} % (median; {self.largest_pct:.2f} % at most)"
+        size = f"{_percent(self.size_pct, '+')} (median; {_percent(self.largest_pct)} at most)"
         span = f"by {size}, {self.from_K:.1f}-{self.to_K:.1f} K"
         if not self.alone:
-            return (
-                f"{self.others[0]} and {', '.join(self.others[1:])} disagree {span}; no majority tells which is right"
-            )
+            return f"{self.others[0]} and {listed(self.others[1:])} disagree {span}; no majority tells which is right"
         verb = "stands alone" if len(self.alone) == 1 else "stand apart"
-        return f"{', '.join(self.alone)} {verb} against {', '.join(self.others)} {span}"
+        return f"{listed(self.alone)} {verb} against {listed(self.others)} {span}"
+
+
+def listed(names: Sequence[str]) -> str:
+    """Name sources, the first of very many.
+
+    >>> listed([f"s{i}" for i in range(20)])
+    's0, s1, s2, s3, s4, s5, s6, s7, s8, s9, s10, s11 and 8 more'
+    """
+    more = len(names) - _MOST_NAMED
+    return f"{', '.join(names[:_MOST_NAMED])}{f' and {more} more' if more > 0 else ''}"
+
+
+def _percent(value: float, sign: str = "") -> str:
+    """Write a percentage: two decimals, or three digits where it is huge.
+
+    >>> _percent(3.951, "+"), _percent(2657964.3)
+    ('+3.95 %', '2.66e+06 %')
+    """
+    return f"{value:{sign}.2f} %" if abs(value) < 1e3 else f"{value:{sign}.3g} %"
 
 
 @dataclass(frozen=True)
@@ -93,7 +120,11 @@ class _Pair:
 
 
 def find_conflict(
-    component: str, name: str, sources: Sequence[Source], contested_above: float | None = None
+    component: str,
+    name: str,
+    sources: Sequence[Source],
+    contested_above: float | None = None,
+    witnesses: Sequence[Source] = (),
 ) -> Conflict | None:
     """Compare every source with every other one.
 
@@ -102,6 +133,8 @@ def find_conflict(
     name : the property
     contested_above : %, default `CONTESTED_ABOVE`; two sources disagree where the median of their absolute deviation
         exceeds this and their combined expanded uncertainty
+    witnesses : sources too small to accuse anybody by themselves (a boiling point is one state); they are heard only
+        where no majority tells which source is right
 
     Returns
     -------
@@ -115,10 +148,22 @@ def find_conflict(
     c stands alone against a, b by +3.95 % (median; 4.00 % at most), 200.0-300.0 K
     """
     threshold = CONTESTED_ABOVE[name] if contested_above is None else contested_above
+    found = _find(component, name, sources, threshold)
+    if found is None or found.alone or not witnesses:
+        return found
+    heard = _find(component, name, [*sources, *witnesses], threshold)
+    convicts = heard is not None and heard.alone and not {w.name for w in witnesses} & set(heard.alone)
+    return heard if convicts else found
+
+
+def _find(component: str, name: str, sources: Sequence[Source], threshold: float) -> Conflict | None:
+    sources = _largest(sources)
+    bridges = [one for one in sources if one.evaluate is not None]
+    ratios = [[_ratio(one, b) for b in bridges] if one.evaluate is None else [] for one in sources]
     pairs = {
         (i, j): pair
         for i, j in combinations(range(len(sources)), 2)
-        if (pair := _compare(sources[i], sources[j], threshold)) is not None
+        if (pair := _compare(sources[i], sources[j], threshold, ratios[i], ratios[j])) is not None
     }
     if not any(pair.disagree for pair in pairs.values()):
         return None
@@ -129,6 +174,13 @@ def find_conflict(
         (key for key in pairs if pairs[key].disagree), key=lambda k: float(np.median(np.abs(pairs[k].deviation)))
     )
     return _conflict(component, name, sources, pairs, ([worst[0]], [worst[1]]), alone=False)
+
+
+def _largest(sources: Sequence[Source]) -> list[Source]:
+    """Leave out the tables with the fewest states where there are more than `MOST_TABLES`; the order stays."""
+    sizes = {i: int(np.isfinite(s.values).sum()) for i, s in enumerate(sources) if s.evaluate is None}
+    kept = set(sorted(sizes, key=lambda i: -sizes[i])[:MOST_TABLES])
+    return [s for i, s in enumerate(sources) if i not in sizes or i in kept]
 
 
 def _sides(count: int, pairs: Mapping[tuple[int, int], _Pair]) -> tuple[list[int], list[int]]:
@@ -178,15 +230,47 @@ def _conflict(
     )
 
 
-def _compare(one: Source, other: Source, threshold: float) -> _Pair | None:
-    """Compare two sources on the states they have in common; None if these are too few."""
+_Ratio = tuple[Floats, Floats]
+"""Temperatures, and ratios of a table's values to a bridge's there."""
+
+
+def _compare(
+    one: Source, other: Source, threshold: float, ratios: Sequence[_Ratio], other_ratios: Sequence[_Ratio]
+) -> _Pair | None:
+    """Compare two sources on the states they have in common, or tables through a bridge; None if too few."""
     at, first, second = _common(one, other)
     known = np.isfinite(first) & np.isfinite(second) & (first != 0.0)
-    if known.sum() < min(FEWEST, max(at.size, 1)):
-        return None
-    deviation = 100.0 * (second[known] / first[known] - 1.0)
     allowed = max(threshold, _combined(one, other))
-    return _Pair(deviation, at[known], bool(np.median(np.abs(deviation)) > allowed))
+    if known.sum() >= min(FEWEST, max(at.size, 1)):
+        deviation = 100.0 * (second[known] / first[known] - 1.0)
+        return _Pair(deviation, at[known], bool(np.median(np.abs(deviation)) > allowed))
+    both = zip(ratios, other_ratios, strict=False)  # a formula has none
+    bridged = next((found for own, others in both if (found := _bridged(own, others)) is not None), None)
+    if bridged is None:
+        return None
+    at, deviation = bridged
+    return _Pair(deviation, at, bool(abs(np.median(deviation)) > allowed))
+
+
+def _ratio(one: Source, bridge: Source) -> _Ratio:
+    ratio = one.values / _value(bridge, one.temperature)
+    known = np.isfinite(ratio) & (ratio > 0.0)
+    return one.temperature[known], ratio[known]
+
+
+def _bridged(one: _Ratio, other: _Ratio) -> tuple[Floats, Floats] | None:
+    """Give temperatures and deviations (%) of the other's values from the first's median distance to a bridge.
+
+    None where either has fewer than `FEWEST` values between the temperatures that both reach.
+    """
+    (at, first), (places, second) = one, other
+    if min(at.size, places.size) < FEWEST:
+        return None
+    low, high = max(at.min(), places.min()), min(at.max(), places.max())
+    mine, its = (at >= low) & (at <= high), (places >= low) & (places <= high)
+    if min(int(mine.sum()), int(its.sum())) < FEWEST:
+        return None
+    return places[its], 100.0 * (second[its] / float(np.median(first[mine])) - 1.0)
 
 
 def _common(one: Source, other: Source) -> tuple[Floats, Floats, Floats]:

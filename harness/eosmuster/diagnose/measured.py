@@ -11,6 +11,7 @@ from collections.abc import Collection, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 from itertools import combinations
 from types import MappingProxyType
+from typing import TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
@@ -21,6 +22,7 @@ from eosmuster.diagnose.measured_set import MeasuredSet
 
 Floats = NDArray[np.float64]
 Flags = NDArray[np.bool_]
+Set = TypeVar("Set", bound=MeasuredSet)
 
 CAUSES: Mapping[str, str] = MappingProxyType(
     {
@@ -125,8 +127,8 @@ def suspicions(
     return (*found, *_outliers(measured, predicted, usable, log_ratio, median, spread))
 
 
-def exchanged(found: Sequence[tuple[MeasuredSet, Suspicion]]) -> list[str]:
-    """Find the pairs of one file whose values lie on each other's curves, one sentence each.
+def exchanged(found: Sequence[tuple[Set, Suspicion]]) -> list[tuple[Set, str]]:
+    """Find the pairs of one file whose values lie on each other's curves: the first set of each, and a sentence.
 
     Parameters
     ----------
@@ -134,8 +136,11 @@ def exchanged(found: Sequence[tuple[MeasuredSet, Suspicion]]) -> list[str]:
     """
     mixed_up = [(one, s) for one, s in found if s.cause == "other substance"]
     return [
-        f"{a.component.name} (block {a.block}) and {b.component.name} (block {b.block}) are exchanged: the values of "
-        f"{a.property} of each lie on the curve of the other"
+        (
+            a,
+            f"{a.component.name} (block {a.block}) and {b.component.name} (block {b.block}) are exchanged: the "
+            f"values of {a.property} of each lie on the curve of the other",
+        )
         for (a, s), (b, t) in combinations(mixed_up, 2)
         if a.property == b.property and s.other == b.component.name and t.other == a.component.name
     ]

@@ -1,4 +1,4 @@
-"""The precheck: constants, alpha functions and references, before any sweep."""
+"""The precheck: constants, alpha functions, references and measured files, before any sweep."""
 
 from __future__ import annotations
 
@@ -9,24 +9,21 @@ from numpy.typing import NDArray
 
 from eosmuster.components import Component
 from eosmuster.diagnose import alphas, constants
-from eosmuster.diagnose.conflicts import Conflict, Source, find_conflict
 from eosmuster.diagnose.findings import SEVERITIES, Finding
 from eosmuster.models.critical import critical_point
-from eosmuster.models.model import BoundModel, bind, parameter_file
+from eosmuster.models.model import BoundModel, Parameters, bind, parameter_file
 from eosmuster.plan.schema import Plan
 from eosmuster.plan.selection import model_records
+from eosmuster.prechecks.consistency import TOLERANCE, Identity, battery
+from eosmuster.prechecks.measured import measured_findings, measured_sources
+from eosmuster.prechecks.references import reference_findings
 from eosmuster.quantities import GAS_CONSTANT
 from eosmuster.sources import handbook, library
+from eosmuster.sweeping.measured import read
 
 Floats = NDArray[np.float64]
 
-STATES = 41
-"""Temperatures of the default grid at which references are held against each other."""
-
-WATCHED = ("saturation_pressure", "liquid_density", "vapor_density", "enthalpy_of_vaporization")
-
-SUBCRITICAL_ONLY = ("Twu pair", "Schmidt-Wenzel", "Stryjek-Vera", "Mathias-Copeman")
-"""Alpha functions whose catalogued parameters are for temperatures below critical."""
+CONSISTENCY = "thermodynamic consistency"
 
 _NAN = float("nan")
 
@@ -39,17 +36,56 @@ def silent(_what: str, _done: int, _of: int) -> None:
 
 
 def precheck(plan: Plan, progress: Progress = silent) -> list[Finding]:
-    """Check everything a plan stands on; contradictions first, then doubts and notes."""
+    """Check everything a plan stands on; contradictions first, then doubts and notes.
+
+    Raises
+    ------
+    InputError : a pattern of the plan's measured files that names none
+    """
+    reading = read(plan, progress)
+    factor = plan.decision.coverage_factor
+    measured = measured_sources(reading, factor)
     found = list(constant_findings(plan.components))
     for i, component in enumerate(plan.components):
         progress("references", i, len(plan.components))
-        found += [*reference_findings(plan, component), *excluded_findings(component)]
-    records, liquids = model_records(plan), liquid_states(plan)
+        found += reference_findings(component, measured.get(component.name, ()), factor)
+    found += measured_findings(reading, progress)
+    records, liquids, identities = model_records(plan), liquid_states(plan), list[Identity]()
     for i, record in enumerate(records):
         progress("models", i, len(records))
         bound = bind(record, plan.components)
         found += [*alpha_findings(bound, plan.components), *reach_findings(bound, plan, liquids)]
+        identities += battery(bound, plan.components)
+    found += consistency_findings(identities)
     return sorted(found, key=lambda f: SEVERITIES.index(f.severity))
+
+
+def consistency_findings(found: Sequence[Identity]) -> Iterator[Finding]:
+    """Name every identity that a candidate breaks; one note says how well the others hold."""
+    for one in found:
+        if not one.error <= TOLERANCE:
+            at = f"{one.component} at {one.temperature:.6g} K and {one.pressure:.6g} Pa"
+            sentence = f"{one.model} breaks '{one.identity}' by {one.error:.1e}, most for {at}"
+            yield Finding(
+                CONSISTENCY,
+                "contradiction",
+                one.component,
+                one.model,
+                one.error,
+                0.0,
+                one.temperature,
+                _NAN,
+                sentence,
+            )
+    held = [one for one in found if one.error <= TOLERANCE]
+    if held:
+        worst = max(held, key=lambda one: one.error)
+        count = len({one.identity for one in found})
+        sentence = (
+            f"{len(held)} of {len(found)} checks of {count} identities hold to {TOLERANCE:g}; the largest error of "
+            f"these is {worst.error:.1e} ({worst.identity}, {worst.model}, {worst.component})"
+        )
+        yield Finding(CONSISTENCY, "note", "", "all models", worst.error, 0.0, _NAN, _NAN, sentence)
 
 
 def constant_findings(components: Sequence[Component]) -> Iterator[Finding]:
@@ -112,90 +148,19 @@ def _critical_tables(component: Component) -> Iterator[Finding]:
     yield from constants.critical_table(component, values, {"critical_temperature": 0.01, "critical_pressure": 0.05})
 
 
-def reference_findings(plan: Plan, component: Component) -> Iterator[Finding]:
-    """Hold every reference of a component, the excluded ones too, against every other one of the same property."""
-    for name in WATCHED:
-        conflict = find_conflict(component.name, name, list(_sources(plan, component, name)))
-        if conflict is not None:
-            yield _from_conflict(conflict)
-
-
-def excluded_findings(component: Component) -> Iterator[Finding]:
-    """List the handbook entries that are kept but not used, each with the evidence its row carries."""
-    for name in (*WATCHED, "boiling_temperature") if component.cas else ():
-        for c in handbook.correlations(component.cas, name, include_excluded=True):
-            if c.excluded:
-                yield _excluded(component, name, c.source, c.note, (c.from_K, c.to_K))
-        for t in handbook.tables(component.cas, name, include_excluded=True):
-            if t.excluded:
-                ends = (float(t.temperature[0]), float(t.temperature[-1]))
-                yield _excluded(component, name, t.source, t.note, ends)
-
-
-def _excluded(component: Component, name: str, source: str, note: str, ends: tuple[float, float]) -> Finding:
-    sentence = f"{name.replace('_', ' ')} by {source} is not used: {note or 'no reason is given'}"
-    return Finding("excluded reference", "note", component.name, source, _NAN, _NAN, *ends, sentence)
-
-
-def _from_conflict(conflict: Conflict) -> Finding:
-    severity = "contradiction" if conflict.alone else "doubt"
-    subject = ", ".join(conflict.alone or conflict.others)
-    return Finding(
-        f"references of {conflict.quantity.replace('_', ' ')}",
-        severity,
-        conflict.component,
-        subject,
-        conflict.size_pct,
-        0.0,
-        conflict.from_K,
-        conflict.to_K,
-        conflict.sentence,
-    )
-
-
-def _sources(plan: Plan, component: Component, name: str) -> Iterator[Source]:
-    at = np.linspace(
-        max(0.45 * component.critical_temperature, component.triple_temperature or 0.0),
-        0.98 * component.critical_temperature,
-        STATES,
-    )
-    unknown = np.full(at.shape, _NAN)
-    if library.limits(component) is not None:
-        evaluate = _library_evaluator(component, name)
-        u = library.uncertainty_pct(component, name, at, plan.decision.coverage_factor)
-        yield Source(library.LIBRARY, at, evaluate(at), u, evaluate)
-    for c in handbook.correlations(component.cas, name, include_excluded=True) if component.cas else ():
-        yield Source(c.source, at, c(at), unknown, c)
-    tables: dict[str, list[handbook.Table]] = {}
-    for t in handbook.tables(component.cas, name, include_excluded=True) if component.cas else ():
-        tables.setdefault(t.source, []).append(t)  # rows left out by default stand in a table of their own
-    for source, parts in tables.items():
-        temperature = np.concatenate([t.temperature for t in parts])
-        values = np.concatenate([t.values for t in parts])
-        inside = (temperature < at[-1]) & (temperature >= at[0])
-        if inside.any():
-            kept = temperature[inside]
-            yield Source(source, kept, values[inside], np.full(kept.shape, _NAN))
-
-
-def _library_evaluator(component: Component, name: str) -> Callable[[Floats], Floats]:
-    return lambda t: library.saturation(component, t, [name]).values[name]
-
-
 def alpha_findings(bound: BoundModel, components: Sequence[Component]) -> Iterator[Finding]:
     """Say which model breaks which rule of a consistent alpha function for which component, and from where on."""
     record, p = bound.record, bound.parameters
-    highest = 1.0 if record.alpha in SUBCRITICAL_ONLY else alphas.HIGHEST
     for row, component in enumerate(components):
         if bound.unavailable[row]:
             continue
-        values = [parameter[row] for parameter in p.alpha_parameters]
+        one = p.take(row)
 
-        def alpha(tr: Floats, values: list[Floats] = values) -> Floats:
-            return 1.0 + p.alpha.excess(1.0 - tr, *values)
+        def alpha(tr: Floats, one: Parameters = one) -> Floats:
+            return 1.0 + one.alpha_jet(1.0 - tr)[0]
 
         tc = float(p.critical_temperature[row])
-        for breach in alphas.breaches(alpha, highest):
+        for breach in alphas.breaches(alpha):
             low, high = breach.from_reduced * tc, breach.to_reduced * tc
             below = breach.from_reduced < 1.0
             what = alphas.BROKEN[breach.rule]

@@ -6,18 +6,27 @@ import contextlib
 import math
 import os
 import textwrap
-from collections.abc import Iterator, Sequence
+from collections import Counter
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import fields
 from pathlib import Path
+from types import MappingProxyType
+from typing import Any
 
 from eosmuster.diagnose.findings import SEVERITIES, Finding
 from eosmuster.errors import InputError
 from eosmuster.plan.schema import Plan
+from eosmuster.prechecks.measured import FILE_CHECK, SET_CHECK
 from eosmuster.report.cells import text_cell
-from eosmuster.report.text import list_within, plain_table, some
+from eosmuster.report.text import list_within, one_line, plain_table, some
 
 GROUPED = ("alpha function", "reach of the form")
 """Checks that find much of the same kind: shown by model, one row for all its fluids."""
+
+MANY, MOST_SHOWN = (FILE_CHECK, SET_CHECK), 12
+"""Checks of which so many findings are shown of each severity: a folder may hold thousands of files."""
+
+_INDENTED: Mapping[str, Any] = MappingProxyType({"initial_indent": "  ", "subsequent_indent": "      "})
 
 
 def precheck_text(plan: Plan, findings: Sequence[Finding], width: int) -> str:
@@ -38,8 +47,17 @@ def precheck_text(plan: Plan, findings: Sequence[Finding], width: int) -> str:
 
 
 def _wrapped_rows(findings: Sequence[Finding], width: int) -> Iterator[str]:
+    """Lay out findings one by one; of those about measured files or sets the first ones and a count."""
+    seen: Counter[str] = Counter()
     for f in findings:
-        yield from textwrap.wrap(f"  {f.component}, {f.check}: {f.sentence}", width, subsequent_indent="      ")
+        seen[f.check] += 1
+        if f.check not in MANY or seen[f.check] <= MOST_SHOWN:
+            about = ", ".join(filter(None, (f.component, f.check)))
+            yield from textwrap.wrap(one_line(f"{about}: {f.sentence}"), width, **_INDENTED)
+    for check in MANY:
+        if seen[check] > MOST_SHOWN:
+            more = f"{check}: {seen[check] - MOST_SHOWN} more; --csv FILE writes every one"
+            yield from textwrap.wrap(more, width, **_INDENTED)
 
 
 def _by_model(findings: Sequence[Finding], width: int) -> Iterator[list[str]]:

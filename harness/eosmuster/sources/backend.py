@@ -1,4 +1,4 @@
-"""The reference library's state objects: saturated states one after the other, without any gate."""
+"""The reference library's state objects: saturated and single-phase states one after the other, without any gate."""
 
 from __future__ import annotations
 
@@ -25,8 +25,8 @@ def evaluate(name: str, given: str, value: Floats, outputs: Sequence[str], backe
     name : the library's name of the fluid
     given : ``T`` (K) or ``p`` (Pa)
     value : shape (n,)
-    outputs : ``temperature``, ``saturation_pressure``, ``liquid_density``, ``vapor_density``,
-        ``liquid_h``, ``vapor_h``
+    outputs : ``temperature``, ``saturation_pressure``, and ``liquid_`` or ``vapor_`` before ``density``, ``h``, ``s``
+        (of the library's own reference state) and ``cp``, isobaric
     backend : ``HEOS``, the multiparameter equations, or ``IF97``
 
     Returns
@@ -79,6 +79,59 @@ def density(name: str, phase: str, T: Floats, p: Floats) -> Floats:
     return result
 
 
+def single_phase(name: str, phase: str, T: Floats, p: Floats, outputs: Sequence[str]) -> Floats:
+    """Evaluate the equation at the stated phase's root of each state (T, p), one after the other.
+
+    Parameters
+    ----------
+    name : the library's name of the fluid
+    phase : ``liquid``, ``gas`` or ``supercritical``
+    T, p : shape (n,), K and Pa
+    outputs : methods of the library's state object without arguments, such as ``rhomolar`` or ``dalphar_dDelta``
+
+    Returns
+    -------
+    shape (len(outputs), n), SI and molar; NaN where there is no such root, or the library fails
+    """
+    from CoolProp import CoolProp
+
+    search, equation = state(name, phase=phase), state(name, phase="gas")
+    given, found, root = CoolProp.PT_INPUTS, CoolProp.DmolarT_INPUTS, search.rhomolar
+    read = [getattr(equation, output) for output in outputs]
+    result = np.full((T.size, len(outputs)), np.nan)
+    for row, t, x in zip(result, T.tolist(), p.tolist(), strict=True):
+        with suppress(ValueError):  # stays NaN: no such root, or out of range
+            search.update(given, x, t)
+            # the search leaves the derivatives of its last but one density behind, 1e-4 off near the critical point
+            equation.update(found, root(), t)
+            row[:] = [get() for get in read]
+    return result.T
+
+
+def ideal_curvature(name: str, T: Floats) -> Floats:
+    """Give tau^2 d2alpha0/dtau2 at temperatures in K, shape (n,): 1 - cp0/R; NaN where the library fails."""
+    from CoolProp import CoolProp
+
+    one, nearly_nothing = state(name, phase="gas"), 1e-10
+    result = np.full(T.shape, np.nan)
+    for i, t in enumerate(T.tolist()):
+        with suppress(ValueError):
+            one.update(CoolProp.DmolarT_INPUTS, nearly_nothing, t)
+            result[i] = float(one.tau()) ** 2 * one.d2alpha0_dTau2()
+    return result
+
+
+def melting_temperature(name: str, p: Floats) -> Floats:
+    """Give the temperature of the melting line at pressures in Pa, K; NaN where the library has no line."""
+    from CoolProp import CoolProp
+
+    one, result = state(name), np.full(p.shape, np.nan)
+    for i, x in enumerate(p.tolist() if one.has_melting_line() else ()):
+        with suppress(ValueError):  # stays NaN: below or above the line's pressures
+            result[i] = one.melting_line(CoolProp.iT, CoolProp.iP, x)
+    return result
+
+
 def state(name: str, backend: str = "HEOS", phase: str = "") -> AbstractState:
     """Give this thread's state object of a fluid, with its phase imposed where one is named."""
     return _state(name, backend, phase, threading.get_ident())
@@ -102,4 +155,5 @@ def _getter(of: AbstractState, output: str) -> Callable[[], float]:
         return of.T if output == "temperature" else of.p
     phase, _, quantity = output.partition("_")
     read = of.saturated_liquid_keyed_output if phase == "liquid" else of.saturated_vapor_keyed_output
-    return partial(read, CoolProp.iDmolar if quantity == "density" else CoolProp.iHmolar)
+    keys = {"density": CoolProp.iDmolar, "h": CoolProp.iHmolar, "s": CoolProp.iSmolar, "cp": CoolProp.iCpmolar}
+    return partial(read, keys[quantity])

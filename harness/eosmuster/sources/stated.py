@@ -6,6 +6,7 @@ k = 2. Every value comes with its origin, one of `ORIGINS`.
 
 from __future__ import annotations
 
+import math
 from collections import defaultdict
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
@@ -16,7 +17,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from eosmuster.components import Component, catalogue
-from eosmuster.sources.rows import number, rows
+from eosmuster.sources.rows import Row, number, rows
 
 Floats = NDArray[np.float64]
 Codes = NDArray[np.int8]
@@ -30,6 +31,17 @@ UNKNOWN, STATED, ASSUMED, ROUNDING = range(len(ORIGINS))
 COVERAGE_FACTOR = 2.0
 """Of every value in the tables."""
 
+STAND_INS: Mapping[str, str] = MappingProxyType(
+    {
+        "entropy_of_vaporization": "enthalpy_of_vaporization",  # T (s'' - s') = h'' - h'
+        "liquid_heat_capacity": "isobaric_heat_capacity",
+        "vapor_heat_capacity": "isobaric_heat_capacity",
+        "compressibility_factor": "density",  # Z = p/(rho R T)
+        "fugacity_coefficient": "density",  # an integral over Z
+    }
+)
+"""Property -> the one whose relative uncertainty it takes, which has rows in the tables."""
+
 LIBRARY_FILE, HANDBOOK_FILE = "uncertainty/coolprop.csv", "uncertainty/handbook.csv"
 DEFAULTS_FILE = "uncertainty/class_defaults.csv"
 
@@ -42,6 +54,8 @@ class Statement:
     ----------
     component, property : of what
     from_K, to_K : ends of the range it is stated for, both included
+    from_Pa, to_Pa : of a single-phase property, the same in pressure; else 0 and infinity
+    phase : ``liquid``, ``vapor`` or ``supercritical``, if it is stated for that phase alone; else ""
     uncertainty_pct : expanded, in %
     coverage_factor : ``2``, or ``unstated``, which is taken as 2
     source : the paper; for a handbook the key into the bibliography
@@ -56,6 +70,9 @@ class Statement:
     coverage_factor: str
     source: str
     how_read: str
+    from_Pa: float = 0.0
+    to_Pa: float = math.inf
+    phase: str = ""
 
 
 @dataclass(frozen=True)
@@ -89,6 +106,16 @@ def largest(found: Iterable[Statement], temperature: ArrayLike) -> Floats:
     return result
 
 
+def largest_at(found: Iterable[Statement], T: Floats, p: Floats, phase: NDArray[np.str_]) -> Floats:
+    """Give the largest uncertainty stated at states (K, Pa and phase, one shape); NaN where nothing is stated."""
+    result = np.full(T.shape, np.nan)
+    for s in found:
+        covered = (s.from_K <= T) & (s.to_K >= T) & (s.from_Pa <= p) & (s.to_Pa >= p)
+        covered &= (phase == s.phase) | (s.phase == "")
+        result = np.where(covered, np.fmax(result, s.uncertainty_pct), result)
+    return result
+
+
 def defaults(family: str, name: str) -> tuple[Default, ...]:
     """Give what is assumed for a chemical class and property, by rising reduced temperature.
 
@@ -101,8 +128,8 @@ def defaults(family: str, name: str) -> tuple[Default, ...]:
 def assumed_pct(component: Component, name: str, temperature: ArrayLike) -> Floats:
     """Give what is assumed for a component's class at temperatures in K, same shape.
 
-    NaN at and above the critical temperature of the catalogue (the component's own, if it is not catalogued). At a
-    border of two bands the upper one holds.
+    Reduced by the critical temperature of the catalogue (the component's own, if it is not catalogued); at it and
+    above, a saturated state has none. At a border of two bands the upper one holds.
 
     >>> from eosmuster.components import find
     >>> assumed_pct(find("propane"), "liquid_density", [300.0, 350.0, 400.0]).tolist()
@@ -139,8 +166,18 @@ def _statements(file: str) -> Mapping[tuple[str, str], tuple[Statement, ...]]:
     for where, row in rows(file):
         ends = (number(where, row, "from_K"), number(where, row, "to_K"), number(where, row, "uncertainty_pct"))
         texts = (row["coverage_factor"], row["source"], row["how_read"])
-        found[row["component"], row["property"]].append(Statement(row["component"], row["property"], *ends, *texts))
+        one = Statement(
+            row["component"], row["property"], *ends, *texts, *_pressures(where, row), row.get("phase", "")
+        )
+        found[row["component"], row["property"]].append(one)
     return MappingProxyType({key: tuple(group) for key, group in found.items()})
+
+
+def _pressures(where: str, row: Row) -> tuple[float, float]:
+    """Give both ends in Pa; an empty cell leaves its end open, and a table of saturated states has no such column."""
+    open_ends = {"from_Pa": 0.0, "to_Pa": math.inf}
+    low, high = (number(where, row, end) if row.get(end) else default for end, default in open_ends.items())
+    return low, high
 
 
 @cache

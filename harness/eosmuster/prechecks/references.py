@@ -1,0 +1,191 @@
+"""References of a component against each other and along temperature, the excluded and the measured ones too."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator, Sequence
+
+import numpy as np
+from numpy.typing import NDArray
+
+from eosmuster.components import Component
+from eosmuster.diagnose.conflicts import Conflict, Source, find_conflict
+from eosmuster.diagnose.findings import Finding
+from eosmuster.diagnose.monotonic import RISES, turned
+from eosmuster.quantities import STANDARD_ATMOSPHERE
+from eosmuster.sources import handbook, library
+from eosmuster.sources.critical import critical_constants
+
+Floats = NDArray[np.float64]
+
+STATES = 41
+"""Temperatures of the default grid at which references are held against each other."""
+
+WATCHED = ("saturation_pressure", "liquid_density", "vapor_density", "enthalpy_of_vaporization")
+
+REPEATED = "no evidence of its own"
+"""Said in the note of a row that repeats another: it has no vote."""
+
+_NAN = float("nan")
+
+
+def reference_findings(
+    component: Component, measured: Sequence[tuple[str, Source]] = (), coverage_factor: float = 2.0
+) -> Iterator[Finding]:
+    """Hold every reference of a component against every other one of the same property, and along temperature.
+
+    Parameters
+    ----------
+    measured : property and source of what a plan's files hold of the component
+    coverage_factor : of the library's uncertainty
+
+    Yields
+    ------
+    conflicts, then references that turn, then the excluded ones with the evidence their rows carry
+    """
+    accused: set[tuple[str, str]] = set()
+    for name in WATCHED:
+        sources = [
+            *sources_of(component, name, coverage_factor),
+            *(source for about, source in measured if about == name),
+        ]
+        conflict = conflict_of(component, name, sources)
+        if conflict is not None:
+            accused |= {(name, source) for source in conflict.alone}
+            yield _from_conflict(conflict)
+        for source in _whole_range(component, name, sources):
+            yield from _turn_findings(component, name, source)
+    yield from excluded_findings(component, accused)
+
+
+def conflict_of(component: Component, name: str, sources: Sequence[Source]) -> Conflict | None:
+    """Find who contradicts whom; normal boiling points are heard where no majority tells who is right."""
+    witnesses = list(_boiling_points(component)) if name == "saturation_pressure" else []
+    return find_conflict(component.name, name, sources, witnesses=witnesses)
+
+
+def excluded_findings(component: Component, accused: set[tuple[str, str]]) -> Iterator[Finding]:
+    """List the handbook entries that are kept but not used, each with its evidence.
+
+    A correlation or a whole table that is out is a doubt, and those in use are named; but a note where it is
+    `accused` (property, source) already, where it repeats another, and where single values are out.
+    """
+    for name in (*WATCHED, "boiling_temperature") if component.cas else ():
+        for c in handbook.correlations(component.cas, name, include_excluded=True):
+            if c.excluded:
+                whole = REPEATED not in c.note and (name, c.source) not in accused
+                yield _excluded(component, name, c.source, c.note, (c.from_K, c.to_K), whole)
+        every = handbook.tables(component.cas, name, include_excluded=True)
+        used = {t.source for t in every if not t.excluded}
+        for t in every:
+            if t.excluded:
+                whole = t.source not in used and (name, t.source) not in accused and name != "boiling_temperature"
+                ends = (float(t.temperature[0]), float(t.temperature[-1]))
+                yield _excluded(component, name, t.source, t.note, ends, whole)
+    for row in critical_constants(component.cas, include_excluded=True) if component.cas else ():
+        if row.excluded:
+            yield _excluded(component, "critical constants", row.source, row.note, (_NAN, _NAN), False)
+
+
+def _excluded(
+    component: Component, name: str, source: str, note: str, ends: tuple[float, float], whole: bool
+) -> Finding:
+    sentence = f"{name.replace('_', ' ')} by {source} is not used: {note or 'no reason is given'}"
+    others = used_sources(component, name) if whole else []
+    if others:
+        sentence += f"; it stands against what is in use: {', '.join(others)}"
+    severity = "doubt" if whole else "note"
+    return Finding("excluded reference", severity, component.name, source, _NAN, _NAN, *ends, sentence)
+
+
+def used_sources(component: Component, name: str) -> list[str]:
+    """Name the sources of a property that are handed out by default."""
+    found = [library.LIBRARY] if library.limits(component) is not None else []
+    if component.cas:
+        asked = "saturation_pressure" if name == "boiling_temperature" else name
+        found += [c.source for c in handbook.correlations(component.cas, asked)]
+        found += [t.source for t in handbook.tables(component.cas, name)]
+    return list(dict.fromkeys(found))
+
+
+def _from_conflict(conflict: Conflict) -> Finding:
+    severity = "contradiction" if conflict.alone else "doubt"
+    subject = ", ".join(conflict.alone or conflict.others)
+    return Finding(
+        f"references of {conflict.quantity.replace('_', ' ')}",
+        severity,
+        conflict.component,
+        subject,
+        conflict.size_pct,
+        0.0,
+        conflict.from_K,
+        conflict.to_K,
+        conflict.sentence,
+    )
+
+
+def _turn_findings(component: Component, name: str, source: Source) -> Iterator[Finding]:
+    for turn in turned(component.name, name, source):
+        yield Finding(
+            "order along temperature",
+            "contradiction",
+            component.name,
+            source.name,
+            turn.size_pct,
+            0.0,
+            turn.from_K,
+            turn.to_K,
+            turn.sentence,
+        )
+
+
+def _whole_range(component: Component, name: str, sources: Sequence[Source]) -> Iterator[Source]:
+    """Give the sources as they are looked at along temperature: formulas over all of their own range."""
+    if name not in RISES:
+        return
+    ends = {c.source: (c.from_K, c.to_K) for c in handbook.correlations(component.cas, name, include_excluded=True)}
+    for source in sources:
+        if source.evaluate is None or source.name not in ends:
+            yield source
+            continue
+        low, high = ends[source.name]
+        low, high = max(low, component.triple_temperature or 0.0), min(high, component.critical_temperature)
+        if low < high:
+            at = np.linspace(low, high, 5 * STATES)
+            yield Source(source.name, at, source.evaluate(at), np.full(at.shape, _NAN), source.evaluate)
+
+
+def sources_of(
+    component: Component, name: str, coverage_factor: float = 2.0, *, include_excluded: bool = True
+) -> Iterator[Source]:
+    """Give the reference library and every handbook source of a property, but for those that repeat another."""
+    tc = component.critical_temperature
+    at = np.linspace(max(0.45 * tc, component.triple_temperature or 0.0), 0.98 * tc, STATES)
+    unknown = np.full(at.shape, _NAN)
+    if library.limits(component) is not None:
+        evaluate = _library_evaluator(component, name)
+        u = library.uncertainty_pct(component, name, at, coverage_factor)
+        yield Source(library.LIBRARY, at, evaluate(at), u, evaluate)
+    for c in handbook.correlations(component.cas, name, include_excluded=include_excluded) if component.cas else ():
+        if REPEATED not in c.note:
+            yield Source(c.source, at, c(at), unknown, c)
+    tables: dict[str, list[handbook.Table]] = {}
+    for t in handbook.tables(component.cas, name, include_excluded=include_excluded) if component.cas else ():
+        tables.setdefault(t.source, []).append(t)  # rows left out by default stand in a table of their own
+    for source, parts in tables.items():
+        temperature = np.concatenate([t.temperature for t in parts])
+        values = np.concatenate([t.values for t in parts])
+        inside = (temperature < at[-1]) & (temperature >= at[0])
+        if inside.any():
+            order = np.flatnonzero(inside)[np.argsort(temperature[inside], kind="stable")]
+            yield Source(source, temperature[order], values[order], np.full(order.shape, _NAN))
+
+
+def _library_evaluator(component: Component, name: str) -> Callable[[Floats], Floats]:
+    return lambda t: library.saturation(component, t, [name]).values[name]
+
+
+def _boiling_points(component: Component) -> Iterator[Source]:
+    """Give the printed normal boiling points as states of the vapor pressure curve, the excluded ones too."""
+    for t in handbook.tables(component.cas, "boiling_temperature", include_excluded=True) if component.cas else ():
+        pressure = np.full(t.values.shape, STANDARD_ATMOSPHERE)
+        yield Source(f"the boiling point of {t.source}", t.values, pressure, np.full(t.values.shape, _NAN))

@@ -1,0 +1,1 @@
+"""Measured data in ThermoML: the reader, and what it is made of."""
