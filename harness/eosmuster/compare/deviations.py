@@ -97,6 +97,18 @@ def statistics(deviation: Floats, temperature: Floats) -> Statistics:
     )
 
 
+def means(values: Floats, counted: NDArray[np.bool_]) -> Floats:
+    """Give the mean of each row over what is counted; NaN where nothing is.
+
+    Examples
+    --------
+    >>> means(np.array([[1.0, 3.0, np.nan]]), np.array([[True, True, False]]))
+    array([2.])
+    """
+    count = counted.sum(axis=1)
+    return np.asarray(np.where(counted, values, 0.0).sum(axis=1) / np.where(count > 0, count, np.nan))
+
+
 def _quantile(ordered: Floats, points: NDArray[np.intp], share: float) -> Floats:
     """Quantile of the first `points` entries of each ascending row; a row without entries starts with NaN."""
     position = share * np.maximum(points - 1, 0)

@@ -216,6 +216,23 @@ def passing_limit_pct(
     return np.where(hopeless, np.nan, largest)
 
 
+def surely_passing_limit_pct(deviation_pct: Floats, uncertainty_pct: ArrayLike, verdict: NDArray[np.int8]) -> Floats:
+    """Give each candidate's smallest limit at which every point would surely be inside: abs(deviation) + U.
+
+    Shape (m,); NaN where a point is unsolved, none was judged, or U is unknown at any of the judged points.
+
+    Examples
+    --------
+    >>> surely_passing_limit_pct(np.array([[1.0, -2.5]]), [0.1, 0.2], np.zeros((1, 2), np.int8))
+    array([2.7])
+    >>> surely_passing_limit_pct(np.array([[1.0, -2.5]]), [0.1, np.nan], np.zeros((1, 2), np.int8))
+    array([nan])
+    """
+    judged = ~np.isnan(deviation_pct)
+    unknown = (judged & np.isnan(np.asarray(uncertainty_pct, np.float64))).any(axis=1)
+    return np.where(unknown, np.nan, passing_limit_pct(deviation_pct, uncertainty_pct, verdict, "guarded"))
+
+
 def false_acceptance_pct(probability_inside: Floats, verdict: NDArray[np.int8]) -> Floats:
     """Give each candidate's risk of false acceptance: mean of 1 - p over its `inside` points, in percent.
 
