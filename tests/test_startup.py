@@ -8,7 +8,7 @@ from collections.abc import Mapping
 
 import pytest
 
-HEAVY = ("CoolProp", "pandas", "scipy")
+HEAVY = ("CoolProp", "pandas", "scipy", "jinja2", "xlsxwriter")
 
 _COMMAND = """
 import json, sys

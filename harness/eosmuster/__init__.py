@@ -18,29 +18,39 @@ from typing import TYPE_CHECKING, Any
 if TYPE_CHECKING:
     from eosmuster.api import Results, SaturatedStates, saturate, sweep
     from eosmuster.components import Component
+    from eosmuster.drifting.comparing import Drift, drift
     from eosmuster.errors import EosmusterError, InputError, NothingJudged
+    from eosmuster.replaying import Replay, replay
 
 __version__ = "0.1.0"
 
 _HOME = {
     "Component": "components",
+    "Drift": "drifting.comparing",
     "EosmusterError": "errors",
     "InputError": "errors",
     "NothingJudged": "errors",
+    "Replay": "replaying",
     "Results": "api",
     "SaturatedStates": "api",
+    "drift": "drifting.comparing",
+    "replay": "replaying",
     "saturate": "api",
     "sweep": "api",
 }
 
 __all__ = [
     "Component",
+    "Drift",
     "EosmusterError",
     "InputError",
     "NothingJudged",
+    "Replay",
     "Results",
     "SaturatedStates",
     "__version__",
+    "drift",
+    "replay",
     "saturate",
     "sweep",
 ]

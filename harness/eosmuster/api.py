@@ -20,7 +20,7 @@ from eosmuster.plan import builtin
 from eosmuster.plan.reading import load_plan
 from eosmuster.plan.schema import Plan
 from eosmuster.quantities import shown
-from eosmuster.record import POINT_VERDICTS, Block, Record, SummaryRow, WindowRow
+from eosmuster.record import POINT_VERDICTS, Block, Record, Region, SummaryRow, WindowRow
 from eosmuster.saturation import solver
 
 if TYPE_CHECKING:
@@ -122,6 +122,7 @@ class Results:
     ----------
     record : everything that was measured
     points, summary, windows : pandas tables with the columns of the files
+    regions : polygons in temperature and pressure, of single-phase properties
     """
 
     def __init__(self, record: Record) -> None:
@@ -144,11 +145,24 @@ class Results:
         """One row a window."""
         return _rows(self.record.windows, WindowRow)
 
-    def save(self, folder: str | os.PathLike[str], *, points: bool = True, overwrite: bool = False) -> Path:
+    @property
+    def regions(self) -> tuple[Region, ...]:
+        """Largest region of each candidate; `eosmuster.compare.polygons.contains` tells what lies in one."""
+        return self.record.regions
+
+    def save(
+        self,
+        folder: str | os.PathLike[str],
+        *,
+        points: bool = True,
+        dossier: bool = True,
+        workbook: bool = False,
+        overwrite: bool = False,
+    ) -> Path:
         """Write the results folder: complete or not at all."""
         from eosmuster.report.folder import save
 
-        return save(self.record, folder, points=points, overwrite=overwrite)
+        return save(self.record, folder, points=points, dossier=dossier, workbook=workbook, overwrite=overwrite)
 
 
 def sweep(plan: str | os.PathLike[str] | Plan) -> Results:

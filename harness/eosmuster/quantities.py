@@ -31,7 +31,8 @@ class Property:
     label : what people read
     unit : the SI unit of every value in the files
     dimension : key into the unit tables
-    phase : ``liquid``, ``vapor`` or ``two-phase``
+    phase : ``liquid``, ``vapor`` or ``two-phase``; of a single-phase property "", since the plan states its phase
+    absolute : whether people read its deviations in its unit: a temperature, or what passes through zero
     """
 
     name: str
@@ -39,6 +40,12 @@ class Property:
     unit: str
     dimension: str
     phase: str
+    absolute: bool = False
+
+    @property
+    def kind(self) -> str:
+        """``saturation`` (one degree of freedom) or ``single-phase`` (two)."""
+        return "saturation" if self.phase else "single-phase"
 
 
 PROPERTIES: Mapping[str, Property] = MappingProxyType(
@@ -46,13 +53,31 @@ PROPERTIES: Mapping[str, Property] = MappingProxyType(
         p.name: p
         for p in (
             Property("saturation_pressure", "saturation pressure", "Pa", "pressure", "two-phase"),
-            Property("boiling_temperature", "boiling temperature", "K", "temperature", "two-phase"),
+            Property("boiling_temperature", "boiling temperature", "K", "temperature", "two-phase", absolute=True),
             Property("liquid_density", "saturated liquid density", "mol/m3", "density", "liquid"),
             Property("vapor_density", "saturated vapor density", "mol/m3", "density", "vapor"),
             Property("enthalpy_of_vaporization", "enthalpy of vaporization", "J/mol", "energy", "two-phase"),
+            Property("entropy_of_vaporization", "entropy of vaporization", "J/(mol K)", "entropy", "two-phase"),
+            Property("liquid_heat_capacity", "saturated liquid heat capacity", "J/(mol K)", "entropy", "liquid"),
+            Property("vapor_heat_capacity", "saturated vapor heat capacity", "J/(mol K)", "entropy", "vapor"),
+            Property("density", "density", "mol/m3", "density", ""),
+            Property("compressibility_factor", "compressibility factor", "1", "ratio", ""),
+            Property("residual_enthalpy", "residual enthalpy", "J/mol", "energy", "", absolute=True),
+            Property("residual_internal_energy", "residual internal energy", "J/mol", "energy", "", absolute=True),
+            Property("residual_entropy", "residual entropy", "J/(mol K)", "entropy", "", absolute=True),
+            Property("isobaric_heat_capacity", "isobaric heat capacity", "J/(mol K)", "entropy", ""),
+            Property("speed_of_sound", "speed of sound", "m/s", "speed", ""),
+            Property(
+                "joule_thomson_coefficient", "Joule-Thomson coefficient", "K/Pa", "throttling", "", absolute=True
+            ),
+            Property("fugacity_coefficient", "fugacity coefficient", "1", "ratio", ""),
         )
     }
 )
+
+SATURATION = tuple(p.name for p in PROPERTIES.values() if p.kind == "saturation")
+SINGLE_PHASE = tuple(p.name for p in PROPERTIES.values() if p.kind == "single-phase")
+"""Names of the properties of each kind of state, in the order in which they are shown."""
 
 # unit -> (factor, offset): SI value = (value + offset) * factor
 _TEMPERATURE = {
@@ -79,8 +104,12 @@ _MOLAR_MASS = {"kg/mol": (1.0, 0.0), "g/mol": (1e-3, 0.0), "kg/kmol": (1e-3, 0.0
 _MOLAR_DENSITY = {"mol/m3": (1.0, 0.0), "kmol/m3": (1e3, 0.0), "mol/L": (1e3, 0.0)}
 _MASS_DENSITY = {"kg/m3": (1.0, 0.0), "g/cm3": (1e3, 0.0), "kg/L": (1e3, 0.0)}
 _MOLAR_ENERGY = {"J/mol": (1.0, 0.0), "kJ/mol": (1e3, 0.0)}
+_MOLAR_ENTROPY = {"J/(mol K)": (1.0, 0.0), "kJ/(mol K)": (1e3, 0.0)}
+_SPEED = {"m/s": (1.0, 0.0)}
+_THROTTLING = {"K/Pa": (1.0, 0.0), "K/bar": (1e-5, 0.0), "K/MPa": (1e-6, 0.0)}
 _MOLAR_VOLUME = {"m3/mol": (1.0, 0.0), "cm3/mol": (1e-6, 0.0), "L/mol": (1e-3, 0.0)}
 _FRACTION = {"%": (0.01, 0.0)}
+_LOGARITHM = {"ln": (1.0, 0.0), "% of ln": (0.01, 0.0)}
 
 UNITS: Mapping[str, Mapping[str, tuple[float, float]]] = MappingProxyType(
     {
@@ -91,8 +120,13 @@ UNITS: Mapping[str, Mapping[str, tuple[float, float]]] = MappingProxyType(
         "density": _MOLAR_DENSITY,
         "mass_density": _MASS_DENSITY,
         "energy": _MOLAR_ENERGY,
+        "entropy": _MOLAR_ENTROPY,
+        "speed": _SPEED,
+        "throttling": _THROTTLING,
         "molar_volume": _MOLAR_VOLUME,
         "fraction": _FRACTION,
+        "logarithm": _LOGARITHM,
+        "ratio": {"1": (1.0, 0.0)},
     }
 )
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from typing import Any
@@ -11,7 +12,7 @@ from numpy.typing import NDArray
 
 Floats = NDArray[np.float64]
 
-RECORD_VERSION = 1
+RECORD_VERSION = 2
 
 POINT_VERDICTS = ("inside", "outside", "undecided", "unfit_reference", "unsolved", "no_reference")
 """Verdict codes of a point: `Block.verdict` holds the index into this tuple."""
@@ -23,6 +24,18 @@ WINDOW_ENDS = (
     "limit_step",
     "undecided",
     "critical_point",
+    "reference_limit",
+    "no_reference",
+    "plan_limit",
+    "unsolved",
+)
+
+
+REGION_EDGES = (
+    "limit",
+    "limit_step",
+    "undecided",
+    "phase_boundary",
     "reference_limit",
     "no_reference",
     "plan_limit",
@@ -77,7 +90,16 @@ class Block:
 
 @dataclass(frozen=True)
 class SummaryRow:
-    """One component x candidate x property x reference source; field order is the file's column order."""
+    """One component x candidate x property x reference source; field order is the file's column order.
+
+    Attributes
+    ----------
+    surely_passing_limit_pct : the smallest limit at which every point would be inside by more than the reference's
+        uncertainty; NaN where that is not known at every point
+    max_at_Pa : pressure of the largest deviation, where states have one of their own
+    mean_predicted, mean_reference : over the states with both, SI: tells which of the two has moved between two runs
+    mean_limit_pct, mean_uncertainty_pct : over the states with a reference
+    """
 
     component: str
     candidate: str
@@ -105,6 +127,12 @@ class SummaryRow:
     verdict: str
     no_reference: int = 0
     note: str = ""
+    surely_passing_limit_pct: float = math.nan
+    max_at_Pa: float = math.nan
+    mean_predicted: float = math.nan
+    mean_reference: float = math.nan
+    mean_limit_pct: float = math.nan
+    mean_uncertainty_pct: float = math.nan
 
 
 @dataclass(frozen=True)
@@ -122,6 +150,44 @@ class WindowRow:
 
 
 @dataclass(frozen=True)
+class Ring:
+    """A closed line in the T-p plane; the first vertex is not repeated.
+
+    Attributes
+    ----------
+    temperature, pressure : (k,), K and Pa
+    reasons : (k,), one of `REGION_EDGES`: why the region ends at the edge from vertex i to vertex i + 1
+    """
+
+    temperature: Floats
+    pressure: Floats
+    reasons: tuple[str, ...]
+
+
+@dataclass(frozen=True)
+class Region:
+    """The largest connected T-p region over which a candidate stays inside, for a single-phase property.
+
+    Attributes
+    ----------
+    outline : counter-clockwise in (T, p)
+    holes : clockwise
+    share : of the plan's rectangle of temperatures and pressures, by area as the plan's grid is spaced
+    connected : number of separate regions, of which this is the largest
+    """
+
+    component: str
+    candidate: str
+    property: str
+    reference_source: str
+    phase: str
+    outline: Ring
+    holes: tuple[Ring, ...] = ()
+    share: float = math.nan
+    connected: int = 1
+
+
+@dataclass(frozen=True)
 class Record:
     """One run: its plan, its points in blocks, and the views drawn from them.
 
@@ -130,6 +196,7 @@ class Record:
     plan_name, plan_title, plan_text : the plan as it was given
     blocks : the points
     summary, windows : rows in the order of the files
+    regions : of single-phase properties
     left_out : (what, why) of components or references that were not used
     decision : the decision rule in words and numbers
     constants : component -> constant -> {"value", "unit", "source"}; besides "cas", "class" and "notes", a list
@@ -139,6 +206,10 @@ class Record:
     conflicts : (component, property, sentence) of references that disagree, and who stands alone
     references : the plan's references in its order: the first that knows a fluid is the one the answer is given by
     display : temperature / pressure / density -> unit of what people read
+    part : (number, of how many) where this is a part of a run: with the components of the whole plan in all that they
+        share, and the points of the part's
+    plan_folder : folder beside which the plan's measured files lie; "" if it names none. It changes from one machine
+        to the next and is no part of the results
     """
 
     plan_name: str
@@ -156,4 +227,7 @@ class Record:
     references: tuple[str, ...] = ()
     conflicts: tuple[tuple[str, str, str], ...] = ()
     files: tuple[tuple[str, str], ...] = ()
+    regions: tuple[Region, ...] = ()
+    part: tuple[int, int] | None = None
+    plan_folder: str = ""
     version: int = RECORD_VERSION

@@ -81,7 +81,33 @@ BAD: dict[str, tuple[str, str]] = {
         states("temperature = [300]\npressure = [1e5]"),
         "states: temperature and pressure are both given, but a saturated pure substance has one degree of freedom",
     ),
-    "single phase": (states("[states.single_phase]\ntemperature = [300]"), r"single_phase: .*not built yet"),
+    "one coordinate for a single phase": (
+        states("[states.single_phase]\ntemperature = [300]"),
+        r"states.single_phase.pressure: missing; a single phase .* two degrees of freedom \(phase rule\)",
+    ),
+    "saturation property without saturated states": (
+        states("[states.single_phase]\ntemperature = [300]\npressure = [1e5]"),
+        r"properties: saturation_pressure belongs to saturated states, .* one degree of freedom",
+    ),
+    "single-phase property without single-phase states": (
+        BASE.replace("saturation_pressure", "density"),
+        r"properties: density belongs to single-phase states, .* two degrees of freedom \(phase rule\)",
+    ),
+    "single-phase states without a property": (
+        states("temperature = [300]\n[states.single_phase]\ntemperature = [300]\npressure = [1e5]"),
+        r"\[states.single_phase\] has no property to judge; name some out of density, ",
+    ),
+    "unknown phase": (
+        states("[states.single_phase]\ntemperature = [300]\npressure = [1e5]\nphase = 'solid'"),
+        "states.single_phase.phase: unknown 'solid'",
+    ),
+    "too many single-phase states": (
+        states(
+            "[states.single_phase]\ntemperature = {from = 200, to = 300, points = 999}\n"
+            "pressure = {from = 1e5, to = 2e5, points = 999}"
+        ),
+        "states.single_phase: 998001 states",
+    ),
     "unknown coordinate": (states("temprature = [300]"), "states: unknown key 'temprature'; nearest: temperature"),
     "no state": (states("temperature = []"), "states.temperature: 0 states"),
     "temperature unit": (states('temperature = ["20 C"]'), r"states.temperature: '20 C' has an unknown unit 'C'"),
@@ -140,7 +166,7 @@ BAD: dict[str, tuple[str, str]] = {
     "too many points": (
         BASE.replace('["propane"]', '"all"').replace('["saturation_pressure"]', '"all"')
         + "[states]\nreduced_temperature = { points = 100000 }",
-        r"asks for \d+ components x \d+ models x 5 properties x 100000 states = \d+ points; the most is 20000000",
+        r"asks for \d+ components x \d+ models x 8 properties x 100000 states = \d+ points; the most is 20000000",
     ),
     # tolerances
     "limit zero": (BASE + '[tolerance]\nsaturation_pressure = "0 %"', "tolerance.saturation_pressure: .*not above 0"),

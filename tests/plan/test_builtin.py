@@ -10,9 +10,10 @@ from eosmuster.plan import builtin
 from eosmuster.plan.limits import DEFAULT_RULES
 from eosmuster.plan.schema import REFERENCES, Decision, Grid, Plan
 from eosmuster.plan.tolerances import governing_rule
-from eosmuster.quantities import PROPERTIES
+from eosmuster.quantities import SATURATION, SINGLE_PHASE
 
-SERVICES = [name for name in builtin.names() if name != builtin.DEFAULT]
+SERVICES = ["ammonia-refrigeration", "lpg-storage"]
+SINGLE_PHASE_SERVICES = ["ammonia-compressor", "lpg-pump"]
 
 
 @pytest.fixture(scope="module")
@@ -21,7 +22,7 @@ def broad() -> Plan:
 
 
 def test_names() -> None:
-    assert builtin.names() == ("broad", "ammonia-refrigeration", "lpg-storage")
+    assert builtin.names() == ("broad", "ammonia-compressor", "ammonia-refrigeration", "lpg-pump", "lpg-storage")
 
 
 @pytest.mark.parametrize("name", builtin.names())
@@ -39,7 +40,7 @@ def test_each_loads_and_leaves_nothing_idle(name: str) -> None:
     assert plan.title
     assert plan.service
     assert plan.left_out == ()
-    assert plan.references_use == REFERENCES
+    assert plan.references_use == (("coolprop",) if name in SINGLE_PHASE_SERVICES else REFERENCES)
 
 
 def test_broad_is_what_the_design_says(broad: Plan) -> None:
@@ -62,10 +63,21 @@ def test_broad_asks_for_more_than_forty_four_thousand_points(broad: Plan) -> Non
     assert len(broad.components) * (len(broad.models) - 3) * broad.grid.points * len(broad.properties) > 44_000
 
 
+@pytest.mark.parametrize("name", SINGLE_PHASE_SERVICES)
+def test_single_phase_plans_state_two_coordinates_and_a_limit_for_every_property(name: str) -> None:
+    plan = builtin.load(name)
+    grid = plan.single_phase
+    assert grid is not None
+    assert grid.phase in ("liquid", "vapor")
+    assert grid.points == len(grid.temperature) * len(grid.pressure) > 150
+    assert set(plan.properties) < set(SINGLE_PHASE)
+    assert {rule.property for rule in plan.tolerances if rule.level == "property"} == set(plan.properties)
+
+
 @pytest.mark.parametrize("name", SERVICES)
 def test_service_plans_judge_every_property_over_existing_states(name: str) -> None:
     plan = builtin.load(name)
-    assert plan.properties == tuple(PROPERTIES)
+    assert plan.properties == SATURATION[:5]
     for component in plan.components:
         states = plan.grid.states_for(component)
         assert (component.triple_temperature or 0.0) < states[0]

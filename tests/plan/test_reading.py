@@ -10,8 +10,8 @@ import pytest
 
 from eosmuster.plan.limits import DEFAULT_RULES
 from eosmuster.plan.reading import load_plan, parse_plan
-from eosmuster.plan.schema import REFERENCES, Decision, Display, Grid, Limit, Plan, ToleranceRule
-from eosmuster.quantities import PROPERTIES
+from eosmuster.plan.schema import REFERENCES, Decision, Display, Gate, Grid, Limit, Plan, ToleranceRule
+from eosmuster.quantities import PROPERTIES, SATURATION, SINGLE_PHASE
 
 MINIMAL = 'components = ["propane"]\nproperties = ["saturation_pressure"]\n'
 
@@ -135,7 +135,7 @@ def test_tolerances_follow_the_defaults(example: Plan) -> None:
 def test_settings(example: Plan) -> None:
     assert example.decision == Decision("simple", 3.0, 1 / 3)
     assert (example.references_use, example.reference_files) == (("coolprop",), ())
-    assert example.gate_fail_on == ("unsolved",)
+    assert example.gate == Gate(("unsolved",))
     assert example.display == Display("K", "bar", "mol/L")
 
 
@@ -147,7 +147,7 @@ def test_what_is_not_said_is_the_default() -> None:
     assert plan.tolerances == DEFAULT_RULES
     assert plan.decision == Decision("guarded", 2.0, 1 / 3)
     assert plan.references_use == REFERENCES
-    assert plan.gate_fail_on == ("outside", "unsolved")
+    assert plan.gate == Gate(("outside", "unsolved"))
     assert plan.display == Display("degC", "bar", "kg/m3")
     assert plan.left_out == ()
 
@@ -156,7 +156,29 @@ def test_what_is_not_said_is_the_default() -> None:
 def test_all_models_and_properties(written: str) -> None:
     plan = parse(f'components = ["propane"]\nmodels = {written}\nproperties = {written}')
     assert plan.models == parse(MINIMAL).models
-    assert plan.properties == tuple(PROPERTIES)
+    assert plan.properties == SATURATION
+    table = "[states.single_phase]\ntemperature = [300]\npressure = [1e5]\n"
+    components = 'components = ["propane"]\nproperties = "all"\n'
+    assert parse(f"{components}{table}").properties == SINGLE_PHASE
+    assert parse(f"{components}[states]\ntemperature = [300]\n{table}").properties == tuple(PROPERTIES)
+
+
+def test_single_phase_states_are_every_temperature_with_every_pressure() -> None:
+    plan = parse("""
+        components = ["propane"]
+        properties = ["density"]
+        [states.single_phase]
+        temperature = ["40 degC", "20 degC"]
+        pressure = { from = "1 bar", to = "100 bar", points = 5, spacing = "logarithmic" }
+        phase = "supercritical"
+        supercritical_alpha = "Boston-Mathias"
+    """)
+    grid = plan.single_phase
+    assert grid is not None
+    assert grid.temperature == (293.15, 313.15)
+    assert grid.pressure == pytest.approx((1e5, 10**5.5, 1e6, 10**6.5, 1e7), rel=1e-13)
+    assert (grid.points, grid.phase, grid.supercritical_alpha) == (10, "supercritical", "Boston-Mathias")
+    assert grid.logarithmic
 
 
 def test_names_ignore_case_and_groups_may_overlap_with_names() -> None:

@@ -1,5 +1,6 @@
-import contextlib
+import csv
 import errno
+import io
 import json
 import os
 import shutil
@@ -13,7 +14,7 @@ from eosmuster.report import folder as folder_module
 from eosmuster.report.folder import checked, save
 from eosmuster.report.manifest import file_hash
 
-FILES = {"points.csv", "summary.csv", "windows.csv", "summary.md", "manifest.json"}
+FILES = {"points.csv", "summary.csv", "windows.csv", "summary.md", "dossier.html", "manifest.json"}
 NO_PROCESS = 4_194_304  # above the largest process number of Linux
 
 
@@ -142,6 +143,25 @@ class TestRefused:
         monkeypatch.setattr(os, "mkdir", denied)
         assert "Permission denied" in self.refused(record, tmp_path / "results")
 
+    @pytest.mark.parametrize("part", ["parent", "results"])
+    def test_a_place_that_is_not_writable_is_refused_before_the_work(self, record, tmp_path, monkeypatch, part):
+        target = save(record, tmp_path / "parent" / "results", overwrite=False)
+        allowed = os.access
+        monkeypatch.setattr(os, "access", lambda path, mode: Path(path).name != part and allowed(path, mode))
+        with pytest.raises(InputError, match=rf"{part} is not writable; choose another --out"):
+            checked(target, overwrite=True)
+
+    def test_a_folder_in_the_place_of_a_file(self, record, tmp_path):
+        place = save(record, tmp_path / "results", overwrite=False)
+        (place / "points.csv").unlink()
+        (place / "points.csv").mkdir()
+        assert "'points.csv'" in self.refused(record, place)
+
+    def test_a_mounted_file_system(self, record, tmp_path, monkeypatch):
+        (tmp_path / "results").mkdir()
+        monkeypatch.setattr(os.path, "ismount", lambda path: Path(path).name == "results")
+        assert "is a mounted file system" in self.refused(record, tmp_path / "results")
+
     def test_a_folder_that_cannot_be_read(self, record, tmp_path, monkeypatch):
         def denied(path):
             raise PermissionError(errno.EACCES, "Permission denied", str(path))
@@ -155,112 +175,44 @@ class TestRefused:
         assert list(tmp_path.iterdir()) == []
 
 
-class Fault:
-    """Fail once, at call number `at` of everything that changes the disk, before or after it is done."""
+class TestViews:
+    def test_one_that_not_every_record_has(self, record, tmp_path, monkeypatch):
+        monkeypatch.setitem(folder_module.VIEWS, "extra.csv", lambda record, file: file.write(b"x\n"))
+        monkeypatch.setitem(folder_module.ONLY_IF, "extra.csv", lambda record: record.plan_title == "with it")
+        assert not (save(record, tmp_path / "results", overwrite=True) / "extra.csv").exists()
+        place = save(replace(record, plan_title="with it"), tmp_path / "results", overwrite=True)
+        assert "extra.csv" in assert_complete(place)["outputs"]
+        save(record, tmp_path / "results", overwrite=True)
+        assert not (place / "extra.csv").exists()
+        assert_complete(place)
 
-    def __init__(self, monkeypatch, error, at, after):
-        self.error, self.at, self.after, self.calls, self.open = error, at, after, 0, Path.open
-        for owner, name in ((os, "mkdir"), (os, "rename"), (Path, "open")):
-            monkeypatch.setattr(owner, name, self.wrap(getattr(owner, name)))
-
-    def wrap(self, function):
-        def wrapped(*args, **kwargs):
-            if function is self.open and "w" not in (args[1:2] or [kwargs.get("mode", "r")])[0]:
-                return function(*args, **kwargs)
-            self.tick(not self.after)
-            result = function(*args, **kwargs)
-            with contextlib.ExitStack() as stack:
-                if hasattr(result, "write"):
-                    result = Faulty(stack.enter_context(result), self)
-                self.tick(self.after, count=False)
-                stack.pop_all()
-            return result
-
-        return wrapped
-
-    def tick(self, now, count=True):
-        self.calls += count
-        if now and self.calls == self.at:
-            self.at = -1
-            raise self.error
-
-
-class Faulty:
-    """An open file whose writes are counted as well."""
-
-    def __init__(self, file, fault):
-        self.file, self.fault = file, fault
-
-    def write(self, data):
-        self.fault.tick(True)
-        return self.file.write(data)
-
-    def writelines(self, lines):
-        for line in lines:
-            self.write(line)
-
-    def __enter__(self):
-        return self
-
-    def __exit__(self, *args):
-        return self.file.__exit__(*args)
-
-    def __getattr__(self, name):
-        return getattr(self.file, name)
-
-
-def outcome_of(record, target):
-    """Save, and say what went wrong, if anything."""
-    try:
-        save(record, target, overwrite=True)
-    except InputError as error:
-        return str(error)
-    except KeyboardInterrupt:
-        return "interrupted"
-    return ""
-
-
-@pytest.mark.parametrize(
-    ("error", "after"),
-    [
-        (OSError(errno.ENOSPC, "No space left on device"), False),
-        (KeyboardInterrupt(), False),
-        (KeyboardInterrupt(), True),
-    ],
-    ids=["disk full", "interrupted before", "interrupted after"],
-)
-@pytest.mark.parametrize("old", [False, True], ids=["new place", "old results"])
-def test_a_fault_anywhere_leaves_the_old_results_or_the_new_ones(
-    block, record_of, tmp_path, monkeypatch, old, error, after
-):
-    record = record_of([block(states=2)])
-    faults = 0
-    for at in range(1, 200):
-        work = tmp_path / f"{at}"
-        target = work / "sub" / "results"
-        work.mkdir()
-        if old:
-            save(record_of([block(states=3)], title="old"), target, overwrite=False)
-        before = contents(work)
+    def test_files_of_another_version_may_be_replaced(self, record, tmp_path, monkeypatch):
         with monkeypatch.context() as patch:
-            fault = Fault(patch, error, at, after)
-            raised = outcome_of(record, target)
-        failed = fault.at == -1
-        expected = "interrupted" if isinstance(error, KeyboardInterrupt) else "No space left on device"
-        assert (expected in raised) if failed else raised == ""
-        faults += failed
-        if contents(work) != before:
-            assert assert_complete(target)["plan"]["title"] == "An invented run"
-            assert [entry.name for entry in target.parent.iterdir()] == ["results"]
-        else:
-            assert failed
-            assert old or list(work.iterdir()) == []
-        shutil.rmtree(work)
-        if fault.calls < at:
-            break
-    # two folders, five files and eleven writes into them, a rename
-    assert faults >= 18
-    assert not failed
+            patch.setitem(folder_module.VIEWS, "later.csv", lambda record, file: file.write(b"x\n"))
+            place = save(record, tmp_path / "results", overwrite=True)
+        save(record, place, overwrite=True)
+        assert "later.csv" not in assert_complete(place)["outputs"]
+        assert [entry.name for entry in tmp_path.iterdir()] == ["results"]
+
+    def test_every_file_that_depends_on_the_record_is_a_view(self):
+        assert set(folder_module.ONLY_IF) <= set(folder_module.VIEWS)
+
+
+def test_names_of_users_are_inert_in_every_table(block, record_of, nasty_names, tmp_path):
+    names = (*nasty_names, "<script>alert(1)</script>", "\u200f=1+1", 'a"\n=2', "\u2067x\u2069", "é" * 300)
+    record = record_of([block(name, (name, "PR"), 3, source=name, seed=i) for i, name in enumerate(names)])
+    place = save(record, tmp_path / "results", overwrite=False)
+    for file, rows in (("points.csv", 6), ("summary.csv", 2), ("windows.csv", 1)):
+        header, *table = csv.reader(io.StringIO((place / file).read_bytes().decode("utf-8"), newline=""))
+        assert len(table) == rows * len(names) + (file == "summary.csv")
+        assert {len(row) for row in table} == {len(header)}
+        text = [row[header.index(c)] for row in table for c in ("component", "candidate", "reference_source")]
+        assert not [cell for cell in text if cell.startswith(tuple("=+-@\t\r\n"))]
+        assert {cell.removeprefix("'") for cell in text if cell} >= {name for name in names if name}
+    lines = (place / "summary.md").read_text(encoding="utf-8").splitlines()
+    assert not [line for line in lines if "<script" in line]
+    assert not [line for line in lines if set(line) & set("\x1b\u202e\u2067\u200f")]
+    assert_complete(place)
 
 
 def test_an_error_in_a_view_is_not_called_a_bad_folder(record, tmp_path, monkeypatch):
@@ -273,6 +225,50 @@ def test_an_error_in_a_view_is_not_called_a_bad_folder(record, tmp_path, monkeyp
     assert list(tmp_path.iterdir()) == []
 
 
+def test_what_came_in_while_the_results_were_written_stays(record, tmp_path, monkeypatch):
+    target = save(record, tmp_path / "results", overwrite=True)
+    before = contents(target)
+    monkeypatch.setitem(
+        folder_module.VIEWS, "summary.md", lambda record, file: (target / "notes.txt").write_text("mine") and None
+    )
+    with pytest.raises(InputError, match=r"'notes\.txt'"):
+        save(record, target, overwrite=True)
+    assert contents(target) == before | {"notes.txt": b"mine"}
+    assert [entry.name for entry in tmp_path.iterdir()] == ["results"]
+
+
+def test_results_that_came_back_are_not_overwritten_unless_that_is_allowed(record, tmp_path):
+    target = save(record, tmp_path / "results", overwrite=True)
+    before = contents(target)
+    target.rename(tmp_path / f".results.{NO_PROCESS}.old")
+    with pytest.raises(InputError, match="earlier run"):
+        save(record, target, overwrite=False)
+    assert contents(target) == before
+    assert [entry.name for entry in tmp_path.iterdir()] == ["results"]
+
+
+def test_a_link_is_followed_and_stays(record, tmp_path):
+    (tmp_path / "far").mkdir()
+    (tmp_path / "near").mkdir()
+    (tmp_path / "near" / "link").symlink_to(tmp_path / "far" / "results")
+    for title in ("first", "second"):
+        place = save(replace(record, plan_title=title), tmp_path / "near" / "link", overwrite=True)
+        assert place == (tmp_path / "far" / "results").resolve()
+        assert assert_complete(place)["plan"]["title"] == title
+    assert (tmp_path / "near" / "link").is_symlink()
+    assert [entry.name for folder in ("near", "far") for entry in (tmp_path / folder).iterdir()] == [
+        "link",
+        "results",
+    ]
+
+
+def test_a_name_as_long_as_a_name_may_be(record, tmp_path):
+    for title in ("first", "second"):
+        place = save(replace(record, plan_title=title), tmp_path / ("x" * 255), overwrite=True)
+        assert assert_complete(place)["plan"]["title"] == title
+    assert [len(entry.name) for entry in tmp_path.iterdir()] == [255]
+
+
 class TestLeftBehind:
     """What a killed process left beside the target."""
 
@@ -282,21 +278,29 @@ class TestLeftBehind:
         (place / file).write_text("half")
         return place
 
-    def test_a_half_folder_of_a_dead_process_goes(self, record, tmp_path):
-        half = self.left(tmp_path, f".results.{NO_PROCESS}.part")
-        own_number_before_a_restart = self.left(tmp_path, f".results.{os.getpid()}.part")
+    def test_half_folders_go(self, record, tmp_path):
+        # under a lock all others are dead, whoever has their numbers now
+        for number in (NO_PROCESS, os.getpid(), os.getppid()):
+            self.left(tmp_path, f".results.{number}.part")
+        (tmp_path / ".results.lock").touch()
         save(record, tmp_path / "results", overwrite=True)
-        assert not half.exists()
-        assert not own_number_before_a_restart.exists()
+        assert [entry.name for entry in tmp_path.iterdir()] == ["results"]
+
+    def test_where_nothing_can_be_locked_those_of_the_living_stay(self, record, tmp_path, monkeypatch):
+        monkeypatch.setattr("eosmuster.report.locking.fcntl", None)
+        for number in (NO_PROCESS, os.getpid(), os.getppid()):
+            self.left(tmp_path, f".results.{number}.part")
+        save(record, tmp_path / "results", overwrite=True)
+        assert {entry.name for entry in tmp_path.iterdir()} == {"results", f".results.{os.getppid()}.part"}
 
     @pytest.mark.parametrize(
         ("name", "file"),
         [
-            (f".results.{os.getppid()}.part", "points.csv"),  # alive
             (f".results.{NO_PROCESS}.part", "thesis.txt"),
             (".results.x.part", "points.csv"),
             (f".other.{NO_PROCESS}.part", "points.csv"),
             (f"results.{NO_PROCESS}.part", "points.csv"),
+            (f".results.{NO_PROCESS}.other", "points.csv"),
         ],
     )
     def test_anything_else_stays(self, record, tmp_path, name, file):

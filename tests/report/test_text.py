@@ -70,3 +70,11 @@ def test_encodings_that_lack_a_character():
     assert for_encoding("a…", "utf-8") == "a…"
     assert for_encoding("a…水", "latin-1") == "a~?"
     assert for_encoding("a…", None) == "a~"
+
+
+@pytest.mark.parametrize("text", ["plain text", "水とアンモニア", "e\u0301" * 9, "a水b" * 5, "    blanks   "])
+@pytest.mark.parametrize("width", [0, 1, 2, 5, 7, 30])
+def test_shortened_keeps_as_much_as_fits(text, width):
+    whole = max(n for n in range(len(text) + 1) if cells_of(text[:n]) <= max(width - 1, 0))
+    expected = text if cells_of(text) <= width else (text[:whole].rstrip() + "…")[:width]
+    assert shortened(text, width) == expected

@@ -36,8 +36,12 @@ SUMMARY = [
 WINDOWS = ["component", "candidate", "property", "reference_source", "from_K", "to_K", "from_end", "to_end"]
 # fmt: on
 
-BEYOND_THE_CONTRACT = {"no_reference", "note"}
-"""Columns of summary.csv that the contract does not name: states without a reference, and reasons."""
+BEYOND_THE_CONTRACT = {
+    *("no_reference", "note", "surely_passing_limit_pct", "max_at_Pa"),
+    *("mean_predicted", "mean_reference", "mean_limit_pct", "mean_uncertainty_pct"),
+}
+"""Columns of summary.csv that the contract does not name: states without a reference, reasons, and the means by which
+two runs are told apart."""
 
 ROW = ["component", "candidate", "property", "reference_source"]
 JUDGED = ("inside", "outside", "undecided", "unfit_reference")

@@ -14,7 +14,9 @@ from eosmuster.models.model import bind
 from eosmuster.quantities import PROPERTIES
 from eosmuster.record import POINT_VERDICTS
 from eosmuster.saturation import solver
-from eosmuster.sweeping.judging import NOTES, independence, summarise, unavailable_row
+from eosmuster.singlephase import solver as single_phase
+from eosmuster.sweeping.judging import NOTES, SATURATION_NOTES, independence, summarise, unavailable_row
+from eosmuster.sweeping.planes import SINGLE_PHASE_NOTES
 from eosmuster.sweeping.series import Nodes, Series
 
 
@@ -67,14 +69,23 @@ def test_an_unavailable_row_counts_nothing(name: str) -> None:
 
 def test_every_status_of_the_solver_has_a_note() -> None:
     """Notes 2 to 5 stand for statuses in the solver's own order; `unavailable` never gets as far as a point."""
-    from eosmuster.sweeping.judging import _NOTE_OF_STATUS
-
-    said = {status: NOTES[_NOTE_OF_STATUS[i]] for i, status in enumerate(solver.STATUSES)}
+    said = {status: NOTES[SATURATION_NOTES[i]] for i, status in enumerate(solver.STATUSES)}
     assert said["solved"] == ""
     assert said["above_critical"] == "above the candidate's own critical point"
     assert said["no_two_phase"] == "the candidate has no two phases here"
     assert said["too_cold"] == "colder than the candidate's tabulated curve"
     assert said["invalid"] == "no value could be computed"
+
+
+def test_every_status_of_the_single_phase_solver_has_a_note() -> None:
+    said = {status: NOTES[SINGLE_PHASE_NOTES[i]] for i, status in enumerate(single_phase.STATUSES)}
+    assert said == {
+        "solved": "",
+        "no_such_phase": "the candidate has no root of the stated phase there",
+        "invalid": "no value could be computed",
+        "unavailable": "no value could be computed",
+        "no_volume": "the volume translation takes off more than the volume",
+    }
 
 
 def test_points_above_a_candidate_s_own_critical_point_are_unsolved(swept: Swept) -> None:

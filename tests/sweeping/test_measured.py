@@ -1,5 +1,6 @@
 """Measured files of a plan: judged against like a table, and held against the library. All data here are invented."""
 
+import json
 from pathlib import Path
 
 import numpy as np
@@ -9,6 +10,8 @@ from eosmuster.components import find
 from eosmuster.errors import InputError
 from eosmuster.plan.reading import load_plan
 from eosmuster.sources import library
+from eosmuster.sources.measured.table import MeasuredSet, Source
+from eosmuster.sweeping.measured import citations, measure
 from eosmuster.sweeping.run import run
 
 PLAN = """
@@ -35,6 +38,17 @@ def swept(folder: Path, text: str):
     (folder / "lab" / "psat.csv").write_text(text, encoding="utf-8")
     (folder / "plan.toml").write_text(PLAN, encoding="utf-8")
     return run(load_plan(folder / "plan.toml"))
+
+
+def measured(component, name: str, values: np.ndarray, source: Source) -> MeasuredSet:
+    n, nothing = values.size, np.full(values.size, np.nan)
+    zero = np.zeros(n, np.int64)
+    rows = {"rows": zero, "temperature": nothing, "pressure": nothing, "values": values}
+    uncertainties = {"standard_uncertainty": nothing, "rounding": nothing}
+    of_state = {"temperature_uncertainty": nothing, "pressure_uncertainty": nothing}
+    flags = {"origin": zero.astype(np.int8), "level_assumed": zero.astype(bool), "repeats": zero.astype(bool)}
+    where = (source, 1, 1, component, component.name, name, "two-phase", "saturated", "")
+    return MeasuredSet(*where, **rows, **uncertainties, **of_state, digits=zero, **flags)
 
 
 def csv(rows: list[tuple[str, float, float, float]]) -> str:
@@ -85,6 +99,31 @@ def test_what_cannot_be_read_is_said(tmp_path: Path) -> None:
     record = swept(tmp_path, csv([*rows, ("unobtainium", 300.0, 1e5, 100.0)]))
     assert any("unobtainium" in why for _, why in record.left_out)
     assert any(b.reference_source.startswith("measured:") for b in record.blocks)
+
+
+def test_sources_are_cited_with_the_files_they_were_read_from(tmp_path: Path) -> None:
+    """What a manifest and a dossier cite: the DOI, else what the descriptor says, else that there is nothing."""
+    p, lab = pressures("propane"), tmp_path / "lab"
+    lab.mkdir()
+    for name in ("named.csv", "bare.csv"):
+        text = csv([("propane", t, x, x * 1e-3) for t, x in zip(T, p, strict=True)])
+        (lab / name).write_text(text, encoding="utf-8")
+    descriptor = {"fields": [{"name": "substance"}], "sources": [{"title": "Nobody: campaign 7 (invented)"}]}
+    (lab / "named.json").write_text(json.dumps(descriptor), encoding="utf-8")
+    (tmp_path / "plan.toml").write_text(PLAN, encoding="utf-8")
+    found = measure(load_plan(tmp_path / "plan.toml"), lambda *_: None)
+    assert found.citations == {"measured:lab/bare.csv": "lab/bare.csv, which names no publication"}
+    assert {one.source for one in found.series} == {"measured:lab/bare.csv"}  # the other repeats its points
+    (lab / "bare.csv").unlink()
+    found = measure(load_plan(tmp_path / "plan.toml"), lambda *_: None)
+    assert found.citations == {"measured:lab/named.csv": "Nobody: campaign 7 (invented) (read from lab/named.csv)"}
+
+
+def test_one_paper_in_two_files_is_cited_once() -> None:
+    paper = [Source(f"lab/{name}.xml", "10.1234/x", "Nobody, N.: On propane (2031)") for name in "ab"]
+    sets = [measured(find("propane"), "saturation_pressure", np.ones(1), source=source) for source in paper]
+    text = "Nobody, N.: On propane (2031). doi:10.1234/x (read from lab/a.xml, lab/b.xml)"
+    assert citations(sets) == {"measured:10.1234/x": text}
 
 
 def test_a_pattern_without_files_is_one_sentence(tmp_path: Path) -> None:

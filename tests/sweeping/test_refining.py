@@ -113,19 +113,19 @@ def pairs(broad_summary: pd.DataFrame, count: int) -> list[tuple[str, str, str, 
 
 
 def test_a_dense_scan_finds_the_same_windows(broad_summary: pd.DataFrame, broad_windows: pd.DataFrame) -> None:
-    """2000 temperatures between the first state and the last, where the sweep itself had 41."""
+    """100,000 temperatures between the first state and the last, where the sweep itself had 41."""
     rows = broad_summary.set_index(KEY)
     windows = broad_windows.groupby(KEY)
     changes = 0
-    for key in pairs(broad_summary, 40):
-        scan = np.linspace(rows.loc[key, "from_K"], rows.loc[key, "to_K"], 2000)
+    for key in pairs(broad_summary, 50):
+        scan = np.linspace(rows.loc[key, "from_K"], rows.loc[key, "to_K"], 100_000)
         low, high = windows.get_group(key)[["from_K", "to_K"]].to_numpy().T
         found = ((scan[:, None] >= low) & (scan[:, None] <= high)).any(axis=1)
         inside = margin(key, scan) >= 0.0
         near = (np.abs(scan[:, None] - np.concatenate([low, high])) < 2.0 * NEAR_K).any(axis=1)
         assert (inside == found)[~near].all(), (key, scan[(inside != found) & ~near])
         changes += int((np.diff(inside.astype(int)) != 0).sum())
-    assert changes > 40
+    assert changes > 50
 
 
 def test_windows_are_disjoint_ascending_and_within_the_plan(

@@ -14,7 +14,7 @@ from eosmuster.errors import InputError, NothingJudged
 from eosmuster.models.catalogue import CATALOGUE
 from eosmuster.plan.reading import parse_plan
 from eosmuster.plan.selection import model_records
-from eosmuster.quantities import PROPERTIES
+from eosmuster.quantities import PROPERTIES, SATURATION
 from eosmuster.record import POINT_VERDICTS, Block
 from eosmuster.sources import handbook
 from eosmuster.sweeping.run import run
@@ -79,13 +79,13 @@ def by_temperature(swept: Swept) -> Any:
     return swept(ALL_PROPERTIES)
 
 
-def test_all_five_properties_are_judged(by_temperature: Any) -> None:
+def test_all_saturation_properties_are_judged(by_temperature: Any) -> None:
     points = by_temperature.points
     library = points[points["reference_source"] == "coolprop"]
-    assert set(library["property"]) == set(PROPERTIES)
+    assert set(library["property"]) == set(SATURATION)
     assert set(library["verdict"]) <= set(POINT_VERDICTS)
     counts = library.groupby(["component", "candidate", "property"]).size()
-    assert len(counts) == 2 * 3 * 5
+    assert len(counts) == 2 * 3 * len(SATURATION)
     assert set(counts) == {41}
     units = {p.name: (p.unit, p.phase) for p in PROPERTIES.values()}
     for name, rows in points.groupby("property"):
@@ -198,13 +198,13 @@ def test_pressures_of_the_plan_stand_in_every_row_they_give(by_pressure: Any) ->
         assert np.isin(b.pressure, PRESSURES).all(), (b.property, b.reference_source)
         correlations += b.reference_source != "coolprop"
     assert correlations >= 10
-    assert {b.property for b in by_pressure.record.blocks} == set(PROPERTIES)
+    assert {b.property for b in by_pressure.record.blocks} == set(SATURATION)
 
 
 def test_temperatures_at_given_pressures_are_the_reference_s_own(by_pressure: Any) -> None:
     from CoolProp.CoolProp import PropsSI
 
-    for name in PROPERTIES:
+    for name in SATURATION:
         b = block(by_pressure, name)
         assert np.array_equal(b.pressure, PRESSURES)
         assert b.temperature == pytest.approx(PropsSI("T", "P", PRESSURES, "Q", 0, "n-Propane"), rel=1e-10)
@@ -249,14 +249,14 @@ def test_pressures_beyond_the_library_are_left_out_and_said(swept: Swept) -> Non
 def test_one_state_is_enough(swept: Swept, states: str) -> None:
     results = swept(f"{ALL_PROPERTIES}[states]\n{states}\n[references]\nuse = ['coolprop']\n")
     assert {b.temperature.size for b in results.record.blocks} == {1}
-    assert len(results.record.blocks) == 10
+    assert len(results.record.blocks) == 2 * len(SATURATION)
     assert all(w.from_K == w.to_K for w in results.record.windows)
 
 
 def test_states_beyond_every_reference_are_rows_without_one(swept: Swept) -> None:
     text = 'components = ["propane"]\nmodels = ["PR"]\nproperties = "all"\n[references]\nuse = ["coolprop"]\n'
     results = swept(f"{text}[states]\ntemperature = [50.0, 300.0, 400.0]\n")
-    for name in PROPERTIES:
+    for name in SATURATION:
         b = block(results, name)
         assert [POINT_VERDICTS[v] for v in b.verdict[0]][::2] == ["no_reference", "no_reference"]
         assert [b.notes[n] for n in b.note[0]][::2] == ["the reference has no value here"] * 2

@@ -22,7 +22,7 @@ def names() -> tuple[str, ...]:
     Examples
     --------
     >>> names()
-    ('broad', 'ammonia-refrigeration', 'lpg-storage')
+    ('broad', 'ammonia-compressor', 'ammonia-refrigeration', 'lpg-pump', 'lpg-storage')
     """
     found = sorted(path.stem for path in _FOLDER.glob("*.toml"))
     return (DEFAULT, *(name for name in found if name != DEFAULT))

@@ -51,15 +51,41 @@ _BANDS: dict[str, tuple[tuple[float, float, str], ...]] = {
         (0.0, 3.0, "duties of evaporators and condensers (common practice: 2 to 5 %)"),
         (0.9, 6.0, "it goes to zero at the critical point, so a small error weighs more and more (ours)"),
     ),
+    "entropy_of_vaporization": (
+        (0.0, 3.0, "the enthalpy of vaporization over the temperature, so its limit (ours)"),
+        (0.9, 6.0, "it goes to zero at the critical point, so a small error weighs more and more (ours)"),
+    ),
+    "liquid_heat_capacity": (
+        (0.0, 10.0, "the residual part of a cubic's liquid is its weak side: 5 to 15 % (common practice)"),
+        (0.9, 20.0, "it diverges at the critical point (ours)"),
+    ),
+    "vapor_heat_capacity": (
+        (0.0, 5.0, "mostly the ideal gas, which the reference gives to both (ours)"),
+        (0.9, 20.0, "it diverges at the critical point (ours)"),
+    ),
+    "density": ((0.0, 3.0, "line, vessel and compressor sizing (common practice: 2 to 5 %)"),),
+    "compressibility_factor": ((0.0, 3.0, "as the density, which it is the other side of (ours)"),),
+    "isobaric_heat_capacity": ((0.0, 5.0, "duties of exchangers (common practice: about 5 %)"),),
+    "speed_of_sound": ((0.0, 5.0, "surge and relief of gases; in liquids it shows how stiff the model is (ours)"),),
+    "fugacity_coefficient": ((0.0, 2.0, "an equilibrium calculation passes it on one to one (ours)"),),
 }
 
 _BOILING = "about 2 % in pressure at the normal boiling point of a hydrocarbon; lax for cryogenic gases (ours)"
 
+# Properties that pass through zero have absolute limits: no percentage of zero says anything.
+_ABSOLUTE = (
+    ("boiling_temperature", Limit(0.5, "kelvin"), _BOILING),
+    ("residual_enthalpy", Limit(200.0, "J/mol"), "1 % of the work and heat of a usual compressor stage (ours)"),
+    ("residual_internal_energy", Limit(200.0, "J/mol"), "as the residual enthalpy (ours)"),
+    ("residual_entropy", Limit(1.0, "J/(mol K)"), "the residual enthalpy's limit at 200 K (ours)"),
+    ("joule_thomson_coefficient", Limit(1e-6, "K/Pa"), "0.1 K/bar: 1 K over a valve that takes 10 bar (ours)"),
+)
+
 
 def _default_rules() -> tuple[ToleranceRule, ...]:
     general = [_band_rule(name, bands, i) for name, bands in _BANDS.items() for i in range(len(bands))]
-    boiling = ToleranceRule("boiling_temperature", Limit(0.5, "kelvin"), "default", rationale=_BOILING)
-    return (*general, boiling, *(_for_class(r, c) for c in _CLASS_FACTORS for r in general))
+    absolute = [ToleranceRule(name, limit, "default", rationale=why) for name, limit, why in _ABSOLUTE]
+    return (*general, *absolute, *(_for_class(r, c) for c in _CLASS_FACTORS for r in general))
 
 
 def _band_rule(name: str, bands: tuple[tuple[float, float, str], ...], i: int) -> ToleranceRule:

@@ -12,10 +12,10 @@ from eosmuster.plan import own, selection, settings
 from eosmuster.plan.files import parse_toml, read_text
 from eosmuster.plan.limits import DEFAULT_RULES
 from eosmuster.plan.rules import read_rules
-from eosmuster.plan.schema import Plan, ToleranceRule
-from eosmuster.plan.states import read_states
+from eosmuster.plan.schema import Grid, Plan, ToleranceRule
+from eosmuster.plan.states import check_states, read_states
 from eosmuster.plan.tables import Table
-from eosmuster.quantities import PROPERTIES
+from eosmuster.quantities import PROPERTIES, SATURATION, SINGLE_PHASE
 
 MOST_POINTS = 20_000_000
 """Components x models x properties x states of one plan."""
@@ -43,14 +43,15 @@ def load_plan(path: str | Path) -> Plan:
 
     Parameters
     ----------
-    path : a UTF-8 TOML file of at most 5 MB; its stem becomes the plan's name
+    path : a UTF-8 TOML file of at most 5 MB; its name without ``.toml`` or ``.eos.toml`` becomes the plan's
 
     Raises
     ------
     InputError : the file cannot be read, or anything `parse_plan` refuses
     """
     path = Path(path)
-    return replace(parse_plan(read_text(path), path.stem, str(path)), path=str(path))
+    name = path.stem.removesuffix(".eos") or path.stem
+    return replace(parse_plan(read_text(path), name, str(path)), path=str(path))
 
 
 def parse_plan(text: str, name: str, where: str) -> Plan:
@@ -72,7 +73,8 @@ def parse_plan(text: str, name: str, where: str) -> Plan:
     find_component = selection.component_finder(own_components)
     own_models = own.read_models(table, find_component)
     components = selection.select_components(table, own_components)
-    properties = _read_properties(table)
+    saturated, single_phase = read_states(table)
+    properties = _read_properties(table, saturated is not None, single_phase is not None)
     rules = read_rules(table, find_component, selection.find_family)
     plan = Plan(
         name=name,
@@ -84,26 +86,30 @@ def parse_plan(text: str, name: str, where: str) -> Plan:
         models=selection.select_models(table, tuple(m.name for m in own_models)),
         own_models=own_models,
         properties=properties,
-        grid=read_states(table),
+        grid=saturated or Grid(),
         tolerances=(*DEFAULT_RULES, *rules),
         decision=settings.read_decision(table),
         references_use=settings.read_references(table),
-        gate_fail_on=settings.read_gate(table),
         display=settings.read_display(table),
         constants=settings.read_constants(table),
         reference_files=settings.read_files(table),
+        single_phase=single_phase,
         left_out=(*selection.left_out(table), *_idle_rules(rules, components, properties)),
     )
-    return _refuse_too_many(plan, where)
+    return _refuse_too_many(replace(plan, gate=settings.read_gate(table, plan, find_component)), where)
 
 
-def _read_properties(plan: Table) -> tuple[str, ...]:
+def _read_properties(plan: Table, saturated: bool, single_phase: bool) -> tuple[str, ...]:
+    """Read the properties; ``all`` means those of every kind of state that the plan has."""
     found = plan.chosen("properties", (*PROPERTIES, selection.ALL), ())
     if not found:
         raise InputError(
             f"{plan.at('properties')}: an empty sweep: no property; name some out of {', '.join(PROPERTIES)}"
         )
-    return tuple(PROPERTIES) if selection.ALL in found else found
+    if selection.ALL in found:
+        return (*(SATURATION if saturated else ()), *(SINGLE_PHASE if single_phase else ()))
+    check_states(found, saturated, single_phase, plan.at("properties"))
+    return found
 
 
 def _idle_rules(
@@ -122,11 +128,15 @@ def _idle_rules(
 
 
 def _refuse_too_many(plan: Plan, where: str) -> Plan:
-    sizes = (len(plan.components), len(plan.models), len(plan.properties), plan.grid.points)
-    points = sizes[0] * sizes[1] * sizes[2] * sizes[3]
+    pairs = len(plan.components) * len(plan.models)
+    single = sum(PROPERTIES[name].kind == "single-phase" for name in plan.properties)
+    kinds = [
+        (len(plan.properties) - single, "properties", plan.grid.points),
+        (single, "single-phase properties", plan.single_phase.points if plan.single_phase else 0),
+    ]
+    points = sum(pairs * count * states for count, _, states in kinds)
     if points > MOST_POINTS:
-        product = "{} components x {} models x {} properties x {} states".format(*sizes)
-        raise InputError(
-            f"{where}: asks for {product} = {points} points; the most is {MOST_POINTS}, so split the plan"
-        )
+        product = " + ".join(f"{count} {what} x {states} states" for count, what, states in kinds if count)
+        asked = f"{len(plan.components)} components x {len(plan.models)} models x {product} = {points} points"
+        raise InputError(f"{where}: asks for {asked}; the most is {MOST_POINTS}, so split the plan")
     return plan

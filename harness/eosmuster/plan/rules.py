@@ -21,10 +21,14 @@ _EXCEPTION_KEYS = (
 
 # dimension of a property -> dimension a limit may be written in -> kind of that limit
 _KINDS = {
-    "pressure": {"fraction": "percent", "pressure": "pascal"},
+    "pressure": {"fraction": "percent", "pressure": "pascal", "logarithm": "logarithm"},
     "temperature": {"fraction": "percent", "temperature_difference": "kelvin"},
     "density": {"fraction": "percent", "density": "mol/m3", "mass_density": "kg/m3"},
     "energy": {"fraction": "percent", "energy": "J/mol"},
+    "entropy": {"fraction": "percent", "entropy": "J/(mol K)"},
+    "speed": {"fraction": "percent", "speed": "m/s"},
+    "throttling": {"fraction": "percent", "throttling": "K/Pa"},
+    "ratio": {"fraction": "percent", "ratio": "one"},
 }
 
 
@@ -61,17 +65,23 @@ def read_limit(value: object, property_name: str, where: str) -> Limit:
     Limit(value=2.0, kind='percent')
     >>> read_limit("500 mbar", "saturation_pressure", "example")
     Limit(value=50000.0, kind='pascal')
+    >>> read_limit("2 % of ln", "saturation_pressure", "example")
+    Limit(value=2.0, kind='logarithm')
+    >>> read_limit(0.02, "compressibility_factor", "example")
+    Limit(value=0.02, kind='one')
     """
     kinds = _KINDS[PROPERTIES[property_name].dimension]
     number, unit = split_quantity(value, tuple(kinds), where)
     example = 'write it with its unit, e.g. "2 %"'
-    if not unit:
+    if not unit and "ratio" not in kinds:
         raise InputError(f"{where}: the limit {shown(value)} has no unit; {example}")
+    unit = unit or "1"
     if not 0.0 < number < math.inf:
         raise InputError(f"{where}: the limit {shown(value)} is not above 0 and finite; {example}")
     dimension = next(d for d in kinds if unit in UNITS[d])
     # percent stays percent: 7 % by way of 0.07 would be 7.000000000000001 %
-    factor = 1.0 if dimension == "fraction" else UNITS[dimension][unit][0]
+    percent = dimension in {"fraction", "logarithm"}
+    factor = UNITS[dimension][unit][0] / (0.01 if percent else 1.0)
     return Limit(number * factor, kinds[dimension])
 
 

@@ -38,13 +38,21 @@ A range of reduced temperatures makes a rule more specific than the same rule wi
 specific than one that names a class or a component.
 """
 
+PHASES = ("liquid", "vapor", "supercritical", "stable")
+"""Phases of single-phase states: the root of the stated phase is evaluated, or the stable one."""
+
 LIMIT_KINDS = {
     "percent": "%",
+    "logarithm": "% of ln",
     "kelvin": "K",
     "pascal": "Pa",
     "mol/m3": "mol/m3",
     "kg/m3": "kg/m3",
     "J/mol": "J/mol",
+    "J/(mol K)": "J/(mol K)",
+    "m/s": "m/s",
+    "K/Pa": "K/Pa",
+    "one": "",
 }
 """Kind of a limit -> the unit of its value."""
 
@@ -53,8 +61,12 @@ UNCERTAINTIES = ("read", "remembered", "assumed")
 """Which uncertainties of references decide: those that were read in a source; those noted down from memory as well;
 or a default of ours by chemical class too, wherever nothing is stated."""
 REFERENCES = ("coolprop", "handbook")
+MEASURED = "measured"
+"""What a plan's own files are called among its references."""
 GATE_REASONS = ("outside", "unsolved", "undecided", "unfit_reference", "no_reference", "unavailable")
 """What a gate can fail on: every verdict but ``inside``, and what a model cannot do for a component."""
+FIRST_REFERENCE = "first"
+"""In a gate: the first of the plan's references that knows the fluid, by which a report gives its answer."""
 
 
 @dataclass(frozen=True)
@@ -104,20 +116,47 @@ def default_temperatures(component: Component, points: int) -> Floats:
 
 
 @dataclass(frozen=True)
+class SinglePhaseGrid:
+    """The single-phase states of a plan: every temperature with every pressure, as the phase rule has it.
+
+    Attributes
+    ----------
+    temperature : K, strictly increasing
+    pressure : Pa, strictly increasing
+    phase : one of `PHASES`
+    supercritical_alpha : one of `eosmuster.models.records.SUPERCRITICAL_RULES`, of all models but the plan's own
+    logarithmic : whether pressures are evenly spaced in their logarithm, so that areas of regions are measured there
+    """
+
+    temperature: tuple[float, ...]
+    pressure: tuple[float, ...]
+    phase: str = "stable"
+    supercritical_alpha: str = "own"
+    logarithmic: bool = False
+
+    @property
+    def points(self) -> int:
+        """Number of states."""
+        return len(self.temperature) * len(self.pressure)
+
+
+@dataclass(frozen=True)
 class Limit:
     """The largest deviation that is still inside: "2 %" means from -2 % to +2 %.
 
     Attributes
     ----------
     value : positive, in the unit of its kind
-    kind : a key of `LIMIT_KINDS`
+    kind : a key of `LIMIT_KINDS`; ``logarithm`` limits 100 abs(ln(predicted/reference)), for a saturation pressure
     """
 
     value: float
     kind: str
 
     def __str__(self) -> str:
-        return f"{self.value:g} {LIMIT_KINDS[self.kind]}"
+        if self.kind == "K/Pa":  # nobody thinks in kelvin per pascal
+            return f"{self.value * 1e5:g} K/bar"
+        return f"{self.value:g} {LIMIT_KINDS[self.kind]}".rstrip()
 
     def percent_of(self, reference: Floats) -> Floats:
         """Express the limit in percent of the reference value at each point.
@@ -128,7 +167,8 @@ class Limit:
 
         Returns
         -------
-        shape (n,): a relative limit as it is, an absolute one as 100 value / abs(reference)
+        shape (n,): a relative limit as it is, an absolute one as 100 value / abs(reference), a logarithmic one
+        as its narrower side 100 (1 - exp(-value/100)), so that what is inside is inside on both sides
 
         Examples
         --------
@@ -138,6 +178,8 @@ class Limit:
         reference = np.asarray(reference, dtype=np.float64)
         if self.kind == "percent":
             return np.full_like(reference, self.value)
+        if self.kind == "logarithm":
+            return np.full_like(reference, -100.0 * math.expm1(-self.value / 100.0))
         with np.errstate(divide="ignore"):
             return 100.0 * self.value / np.abs(reference)
 
@@ -200,6 +242,24 @@ class Decision:
 
 
 @dataclass(frozen=True)
+class Gate:
+    """Which verdicts fail a build, and which rows of the summary are asked.
+
+    Attributes
+    ----------
+    fail_on : subset of `GATE_REASONS`
+    components, candidates, properties : names out of the plan's; empty for all of them
+    references : out of the plan's references, ``measured`` and `FIRST_REFERENCE`; empty for all of them
+    """
+
+    fail_on: tuple[str, ...] = ("outside", "unsolved")
+    components: tuple[str, ...] = ()
+    candidates: tuple[str, ...] = ()
+    properties: tuple[str, ...] = ()
+    references: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True)
 class Display:
     """Units of what people read; files stay SI."""
 
@@ -224,12 +284,14 @@ class Plan:
     own_models : records of the models that the plan itself defines
     properties : keys of `eosmuster.quantities.PROPERTIES`
     grid : the saturated states
+    single_phase : the single-phase states, None if the plan has none
     tolerances : the default rules, then the plan's: everything `tolerances.limit_pct` needs
     references_use : subset of `REFERENCES`
     reference_files : patterns of measured files, relative to the plan's folder
-    gate_fail_on : subset of `GATE_REASONS`
+    gate : what fails a build
     constants : where catalogued components have Tc, pc and omega from: ``library``, or a cited critical table
     left_out : (what, why) of everything the plan names or selects that is not swept
+    part : (number, of how many) where only a part of the components is swept, see `eosmuster.plan.parts`
     """
 
     name: str
@@ -246,7 +308,15 @@ class Plan:
     decision: Decision = field(default_factory=Decision)
     references_use: tuple[str, ...] = REFERENCES
     reference_files: tuple[str, ...] = ()
-    gate_fail_on: tuple[str, ...] = ("outside", "unsolved")
+    gate: Gate = field(default_factory=Gate)
     display: Display = field(default_factory=Display)
     left_out: tuple[tuple[str, str], ...] = ()
     constants: str = "library"
+    single_phase: SinglePhaseGrid | None = None
+    part: tuple[int, int] | None = None
+
+    @property
+    def rows(self) -> range:
+        """Numbers of the components that are swept: all of them, or those of the part."""
+        number, of = self.part or (1, 1)
+        return range(number - 1, len(self.components), of)

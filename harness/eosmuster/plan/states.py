@@ -1,4 +1,7 @@
-"""The table ``[states]`` of a plan: one coordinate of the saturated states, as a list or a range."""
+"""The table ``[states]`` of a plan: one coordinate of the saturated states, two of single-phase states.
+
+The phase rule decides how many: a pure substance has two degrees of freedom, less one for a second phase.
+"""
 
 from __future__ import annotations
 
@@ -8,9 +11,10 @@ from itertools import pairwise
 import numpy as np
 
 from eosmuster.errors import InputError
-from eosmuster.plan.schema import COORDINATES, Grid
+from eosmuster.models.records import SUPERCRITICAL_RULES
+from eosmuster.plan.schema import COORDINATES, PHASES, Grid, SinglePhaseGrid
 from eosmuster.plan.tables import Table
-from eosmuster.quantities import shown, to_si
+from eosmuster.quantities import PROPERTIES, SATURATION, SINGLE_PHASE, shown, to_si
 
 MOST_STATES = 100_000
 """States of one component in one plan."""
@@ -19,25 +23,74 @@ _ONE_OF = f"give exactly one of {', '.join(COORDINATES)}"
 _UNITS = {"temperature": "K", "pressure": "Pa"}
 
 
-def read_states(plan: Table) -> Grid:
-    """Read the grid; without a table ``[states]`` it is the default one.
+def read_states(plan: Table) -> tuple[Grid | None, SinglePhaseGrid | None]:
+    """Read the saturated and the single-phase states; without a table ``[states]`` the former are the default ones.
+
+    Returns
+    -------
+    each None where the plan has none of its kind
 
     Raises
     ------
     InputError : none or several coordinates, values out of range, given twice, or too many
     """
     if "states" not in plan.data:
-        return Grid()
+        return Grid(), None
     states = plan.table("states")
     states.check_keys((*COORDINATES, "single_phase"))
-    if "single_phase" in states.data:
-        raise InputError(
-            f"{states.at('single_phase')}: single-phase states are not built yet; for saturation {_ONE_OF}"
-        )
+    single_phase = _read_single_phase(states.table("single_phase")) if "single_phase" in states.data else None
     given = [c for c in COORDINATES if c in states.data]
+    if single_phase is not None and not given:
+        return None, single_phase
     if len(given) != 1:
         raise InputError(f"{states.at()}: {_phase_rule(given)}, so {_ONE_OF}")
-    return _read_coordinate(states, given[0])
+    return _read_coordinate(states, given[0]), single_phase
+
+
+def check_states(properties: tuple[str, ...], saturated: bool, single_phase: bool, where: str) -> None:
+    """Refuse properties without states of their kind, and states of a kind that no property asks for.
+
+    Raises
+    ------
+    InputError : naming the phase rule and what to add
+    """
+    kinds = {PROPERTIES[name].kind for name in properties}
+    if "single-phase" in kinds and not single_phase:
+        name = next(n for n in properties if n in SINGLE_PHASE)
+        raise InputError(
+            f"{where}: {name} belongs to single-phase states, which have two degrees of freedom (phase rule); "
+            "give them in [states.single_phase] as temperature and pressure"
+        )
+    if "saturation" in kinds and not saturated:
+        name = next(n for n in properties if n in SATURATION)
+        raise InputError(
+            f"{where}: {name} belongs to saturated states, which have one degree of freedom (phase rule); "
+            f"add one of {', '.join(COORDINATES)} to [states]"
+        )
+    if single_phase and "single-phase" not in kinds:
+        raise InputError(
+            f"{where}: [states.single_phase] has no property to judge; name some out of {', '.join(SINGLE_PHASE)}"
+        )
+
+
+def _read_single_phase(table: Table) -> SinglePhaseGrid:
+    table.check_keys(("temperature", "pressure", "phase", "supercritical_alpha"))
+    missing = [c for c in ("temperature", "pressure") if c not in table.data]
+    if missing:
+        raise InputError(
+            f"{table.at(missing[0])}: missing; a single phase of a pure substance has two degrees of freedom "
+            "(phase rule), so give temperature and pressure"
+        )
+    temperature, pressure = (_read_coordinate(table, c) for c in ("temperature", "pressure"))
+    _check_count(temperature.points * pressure.points, table.at(), least=1)
+    ratio = np.diff(np.log(pressure.values))
+    return SinglePhaseGrid(
+        temperature.values,
+        pressure.values,
+        phase=table.one_of("phase", PHASES, "stable"),
+        supercritical_alpha=table.one_of("supercritical_alpha", SUPERCRITICAL_RULES, "own"),
+        logarithmic=ratio.size > 1 and bool(np.ptp(ratio) <= 1e-9 * ratio.mean()),
+    )
 
 
 def _phase_rule(given: list[str]) -> str:

@@ -51,10 +51,12 @@ def manifest(
         "format_version": FORMAT_VERSION,
         "record_version": record.version,
         "plan": {"name": record.plan_name, "title": record.plan_title, "text": record.plan_text},
+        **({"part": {"number": record.part[0], "of": record.part[1]}} if record.part else {}),
         "decision": jsonable(record.decision),
         "points": {"rows": sum(block.predicted.size for block in record.blocks), "written": points},
         "summary": {"rows": len(record.summary)},
         "windows": {"rows": len(record.windows)},
+        "regions": {"rows": len(record.regions)},
         "measured_files": dict(record.files),
         "contested": [{"component": c, "property": p, "finding": s} for c, p, s in record.conflicts],
         "left_out": [{"what": what, "why": why} for what, why in record.left_out],
@@ -63,7 +65,7 @@ def manifest(
         "citations": jsonable(record.citations),
         "references": reference_hashes(),
         "outputs": dict(sorted(outputs.items())),
-        "volatile": _volatile(started),
+        "volatile": _volatile(started) | {"plan_folder": record.plan_folder or None},
     }
 
 

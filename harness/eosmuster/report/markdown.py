@@ -111,7 +111,7 @@ def _coverage_row(standing: Standing, room: Room) -> list[str]:
         str(standing.points),
         words.percent(standing.share) if standing.points else "-",
         str(standing.unsolved),
-        words.largest(standing.worst),
+        words.largest(standing),
         escaped(standing.worst.component if standing.worst else "-", room.text),
         escaped(list_within(standing.fluids["inside"], room.text)),
         escaped(list_within(standing.failing, 2 * room.text)),

@@ -114,7 +114,7 @@ def _standings(view: Overview, width: int) -> Iterator[str]:
         **{head: [str(len(s.fluids[verdict])) for s in shown] for head, verdict in verdicts.items()},
         "unsolved": [str(s.unsolved) for s in shown],
         "inside": [words.percent(s.share) if s.points else "-" for s in shown],
-        "largest": [words.largest(s.worst) for s in shown],
+        "largest": [words.largest(s) for s in shown],
     }
     # a count that is nought for every candidate says less than the names it makes room for
     columns = {head: column for head, column in columns.items() if head == "held" or set(column) != {"0"}}

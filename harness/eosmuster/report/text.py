@@ -56,9 +56,13 @@ def shortened(text: str, width: int) -> str:
     """
     if cells_of(text) <= width:
         return text
-    while text and cells_of(text) > width - 1:
-        text = text[:-1]
-    return (text.rstrip() + ELLIPSIS)[: max(width, 0)]
+    kept, room = 0, width - 1
+    for character in text:
+        room -= cells_of(character)
+        if room < 0:
+            break
+        kept += 1
+    return (text[:kept].rstrip() + ELLIPSIS)[: max(width, 0)]
 
 
 def list_within(names: Sequence[str], width: int) -> str:

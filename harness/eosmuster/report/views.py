@@ -50,6 +50,7 @@ class Standing:
     points, inside, unsolved : counts of points
     worst : the row with the largest deviation, None if there is no deviation at all
     held_by_all : fluids for which every point is inside against every reference source
+    largest : its largest deviation, in the unit of `deviation_unit`; NaN if there is none
     """
 
     candidate: str
@@ -59,6 +60,7 @@ class Standing:
     unsolved: int
     worst: SummaryRow | None
     held_by_all: int = 0
+    largest: float = float("nan")
 
     @property
     def held(self) -> int:
@@ -86,7 +88,7 @@ class Overview:
     standings : one a candidate, worst first
     fluids : worst first: those that the fewest candidates hold
     cells : (fluid, candidate) -> what the candidate does there
-    limits : smallest and largest limit, in K for a temperature and else in percent; NaN if not known
+    limits : smallest and largest limit, in the unit of `deviation_unit`; NaN if not known
     reduced : smallest and largest reduced temperature; NaN if not known
     sources : reference sources in order of appearance
     """
@@ -109,7 +111,7 @@ class Overview:
     def limit_text(self) -> str:
         """The limits in words, e.g. ``limit 0.5 K`` or ``limits 1 to 10 %``."""
         low, high = (f"{limit:.3g}" for limit in self.limits)
-        unit = "K" if is_temperature(self.name) else "%"
+        unit, _ = deviation_unit(self.name)
         if low == "nan":
             return "limits of the plan"
         return f"limit {low} {unit}" if low == high else f"limits {low} to {high} {unit}"
@@ -124,6 +126,22 @@ class Overview:
 def is_temperature(name: str) -> bool:
     """Tell whether a property is a temperature: people read its deviations in K."""
     return name in PROPERTIES and PROPERTIES[name].unit == "K"
+
+
+def deviation_unit(name: str) -> tuple[str, float]:
+    """Give the unit in which people read deviations of a property, and how many of it make one SI unit.
+
+    Percent (and 1) but for properties that pass through zero, and temperatures.
+
+    Examples
+    --------
+    >>> deviation_unit("density"), deviation_unit("residual_enthalpy"), deviation_unit("joule_thomson_coefficient")
+    (('%', 1.0), ('J/mol', 1.0), ('K/bar', 100000.0))
+    """
+    known = PROPERTIES.get(name)
+    if known is None or not known.absolute:
+        return "%", 1.0
+    return ("K/bar", 1e5) if known.unit == "K/Pa" else (known.unit, 1.0)
 
 
 def overviews(record: Record) -> tuple[Overview, ...]:
@@ -160,7 +178,8 @@ def together(rows: Sequence[SummaryRow]) -> Cell:
         verdict = "undecided"
     else:
         verdict = "partly" if inside else "outside"
-    return Cell(verdict, sum(row.points for row in rows), inside, sum(row.unsolved for row in rows))
+    judged = sum(row.points - row.no_reference for row in rows)
+    return Cell(verdict, judged, inside, sum(row.unsolved for row in rows))
 
 
 def worst_rows(rows: Iterable[SummaryRow]) -> list[SummaryRow]:
@@ -180,6 +199,8 @@ def signed_maximum(blocks: Mapping[tuple[str, str, str], Block], row: SummaryRow
         return None
     candidate = block.candidates.index(row.candidate)
     size = np.abs(block.deviation_pct[candidate])
+    if deviation_unit(row.property)[0] != "%":
+        size = size * np.abs(block.reference)
     return None if not size.size or np.isnan(size).all() else (block, candidate, int(np.nanargmax(size)))
 
 
@@ -228,7 +249,10 @@ def _overview(name: str, rows: Sequence[SummaryRow], blocks: Sequence[Block], re
         of_fluid.setdefault(fluid, []).append(cell)
     fluids = _by_severity(of_fluid)
     place = {fluid: i for i, fluid in enumerate(fluids)}
-    standings = [_standing(c, of_one, cells, place) for c, of_one in _grouped(rows_of_answer, "candidate").items()]
+    sizes = _own_sizes(name, blocks)
+    standings = [
+        _standing(c, of_one, cells, place, sizes) for c, of_one in _grouped(rows_of_answer, "candidate").items()
+    ]
     # stable: of equals the plan's first comes last, where the best are
     standings.reverse()
     standings.sort(key=lambda s: (s.held, s.share, -s.unsolved))
@@ -244,16 +268,38 @@ def _by_severity(cells: Mapping[str, Sequence[Cell]]) -> tuple[str, ...]:
     return tuple(sorted(cells, key=good))
 
 
+def _own_sizes(name: str, blocks: Sequence[Block]) -> dict[tuple[str, str, str], float]:
+    """Give the largest deviations in the property's own unit, by fluid, candidate and source; none in percent."""
+    unit, factor = deviation_unit(name)
+    found = {}
+    for block in blocks if unit != "%" else ():
+        size = np.abs(block.deviation_pct * block.reference) / 100.0 * factor
+        for candidate, one in zip(block.candidates, size, strict=True):
+            if not np.isnan(one).all():
+                found[block.component, candidate, block.reference_source] = float(np.nanmax(one))
+    return found
+
+
 def _standing(
-    candidate: str, rows: Sequence[SummaryRow], cells: Mapping[tuple[str, str], Cell], place: Mapping[str, int]
+    candidate: str,
+    rows: Sequence[SummaryRow],
+    cells: Mapping[tuple[str, str], Cell],
+    place: Mapping[str, int],
+    sizes: Mapping[tuple[str, str, str], float],
 ) -> Standing:
     mine = {row.component: cells[row.component, candidate] for row in rows}
     ordered = sorted(mine, key=lambda fluid: (mine[fluid].share, place[fluid]))
     fluids = {verdict: tuple(f for f in ordered if mine[f].verdict == verdict) for verdict in SUMMARY_VERDICTS}
-    worst = max(rows, key=_size)
+
+    def size(row: SummaryRow) -> float:
+        return sizes.get((row.component, row.candidate, row.reference_source), -1.0) if sizes else _size(row)
+
+    worst = max(rows, key=size)
     points, inside, unsolved = (sum(getattr(c, n) for c in mine.values()) for n in ("points", "inside", "unsolved"))
     by_all = sum(cell.by_all for cell in mine.values())
-    return Standing(candidate, fluids, points, inside, unsolved, worst if _size(worst) >= 0 else None, by_all)
+    known = size(worst) >= 0
+    largest = size(worst) if known else float("nan")
+    return Standing(candidate, fluids, points, inside, unsolved, worst if known else None, by_all, largest)
 
 
 def _size(row: SummaryRow) -> float:
@@ -261,8 +307,10 @@ def _size(row: SummaryRow) -> float:
 
 
 def _limits(name: str, blocks: Sequence[Block]) -> tuple[float, float]:
-    scaled = [b.limit_pct * np.abs(b.reference) / 100.0 if is_temperature(name) else b.limit_pct for b in blocks]
-    return _span(scaled)
+    unit, factor = deviation_unit(name)
+    if unit == "%":
+        return _span([b.limit_pct for b in blocks])
+    return _span([b.limit_pct * np.abs(b.reference) / 100.0 * factor for b in blocks])
 
 
 def _reduced(blocks: Sequence[Block]) -> tuple[float, float]:

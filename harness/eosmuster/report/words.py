@@ -7,10 +7,10 @@ from typing import Any
 
 import numpy as np
 
-from eosmuster.quantities import PROPERTIES, UNITS, from_si
-from eosmuster.record import POINT_VERDICTS, Block, Record, SummaryRow
+from eosmuster.quantities import PROPERTIES, SINGLE_PHASE, UNITS, from_si
+from eosmuster.record import POINT_VERDICTS, Block, Record, Region, SummaryRow
 from eosmuster.report.text import list_within, number, one_line, shortened, some
-from eosmuster.report.views import Overview, is_temperature
+from eosmuster.report.views import Overview, Standing, deviation_unit
 
 _BEST = 5  # candidates named in the answer
 _FEW = 6  # fluids whose windows are named there
@@ -61,6 +61,8 @@ def _listed(start: str, names: Sequence[str], width: int) -> str:
 def _where(record: Record, overview: Overview) -> list[str]:
     """Say for each fluid that the best candidate does not hold where it is inside all the same."""
     best = overview.standings[-1]
+    if any(r.property == overview.name for r in record.regions):
+        return _where_in_plane(record, overview, best)
     windows: dict[str, list[str]] = {fluid: [] for fluid in best.failing}
     for w in record.windows:
         if w.property != overview.name or w.candidate != best.candidate or w.component not in windows:
@@ -72,6 +74,30 @@ def _where(record: Record, overview: Overview) -> list[str]:
             windows[w.component].append(span + source)
     spans = [f"{fluid} {' and '.join(found) or 'nowhere'}" for fluid, found in windows.items()]
     return [*spans, *(f"{fluid} unavailable" for fluid in best.fluids["unavailable"])]
+
+
+def _where_in_plane(record: Record, overview: Overview, best: Standing) -> list[str]:
+    """Say for each fluid how much of the plane of temperature and pressure the largest region of the best takes."""
+    found = []
+    for fluid in best.failing:
+        answering = overview.cells[fluid, best.candidate].sources
+        mine = [
+            r
+            for r in record.regions
+            if (r.component, r.candidate, r.property) == (fluid, best.candidate, overview.name)
+            and r.reference_source in answering
+        ]
+        found.append(f"{fluid} {' and '.join(region_span(record, r) for r in mine) or 'nowhere'}")
+    return [*found, *(f"{fluid} unavailable" for fluid in best.fluids["unavailable"])]
+
+
+def region_span(record: Record, region: Region) -> str:
+    """Write how far a region reaches in temperature, and its share of the plan's plane."""
+    span = " to ".join(
+        number(shown_temperature(record, float(t)), 5)
+        for t in (min(region.outline.temperature), max(region.outline.temperature))
+    )
+    return f"{span} ({percent(region.share)} of the plane)"
 
 
 def legend(record: Record) -> str:
@@ -93,13 +119,12 @@ def percent(share: float) -> str:
     return f"{whole if share in (0.0, 1.0) else min(max(whole, 1), 99)} %"
 
 
-def largest(row: SummaryRow | None) -> str:
-    """Write the size of the largest deviation of a row; temperatures in K."""
-    if row is None:
+def largest(standing: Standing) -> str:
+    """Write the size of a candidate's largest deviation, in the unit people read deviations of the property in."""
+    if standing.worst is None:
         return "-"
-    if is_temperature(row.property):
-        return f"{row.max_pct / 100.0 * row.max_at_K:.3g} K"
-    return f"{number(float(row.max_pct), 3)} %"
+    unit, _ = deviation_unit(standing.worst.property)
+    return f"{number(standing.largest, 3)} {unit}"
 
 
 def counts(record: Record) -> str:
@@ -164,11 +189,17 @@ def shown_temperature(record: Record, kelvin: float) -> float:
     return round(from_si(kelvin, temperature_unit(record), "temperature"), 2)
 
 
+def shown_pressure(record: Record, pascal: float) -> str:
+    """Write a pressure in the unit people read, with the unit."""
+    unit = record.display.get("pressure", "Pa")
+    return f"{number(from_si(pascal, unit, 'pressure'), 4)} {unit}"
+
+
 def point(record: Record, row: SummaryRow, place: tuple[Block, int, int] | None) -> list[str]:
     """Write the point of a row's largest deviation as cells.
 
-    Temperature, reduced temperature, predicted, reference, their unit, deviation, limit, verdict; pressures
-    and temperatures in the units people read, a deviation of a temperature in K.
+    Temperature, reduced temperature, predicted, reference, their unit, deviation, limit, verdict, all in the units
+    people read; deviation and limit in that of `eosmuster.report.views.deviation_unit`.
     """
     if place is None:  # the record holds no such point
         at = number(shown_temperature(record, row.max_at_K), 5)
@@ -176,11 +207,15 @@ def point(record: Record, row: SummaryRow, place: tuple[Block, int, int] | None)
     block, candidate, state = place
     unit, shown = _for_people(record, row, block.unit)
     deviation, limit = float(block.deviation_pct[candidate, state]), float(block.limit_pct[state])
-    if is_temperature(row.property):
-        deviation, limit = (x * float(block.reference[state]) / 100.0 for x in (deviation, limit))
-    per = "K" if is_temperature(row.property) else "%"
+    per, factor = deviation_unit(row.property)
+    if per != "%":
+        of_one = float(block.reference[state]) / 100.0 * factor
+        deviation, limit = deviation * of_one, limit * abs(of_one)
+    at = number(shown_temperature(record, float(block.temperature[state])), 5)
+    if block.property in SINGLE_PHASE:
+        at += f" ({shown_pressure(record, float(block.pressure[state]))})"
     return [
-        number(shown_temperature(record, float(block.temperature[state])), 5),
+        at,
         number(float(block.reduced_temperature[state]), 3),
         number(shown(float(block.predicted[candidate, state])), 6),
         number(shown(float(block.reference[state])), 6),
@@ -194,7 +229,7 @@ def point(record: Record, row: SummaryRow, place: tuple[Block, int, int] | None)
 def _for_people(record: Record, row: SummaryRow, unit: str) -> tuple[str, Callable[[float], float]]:
     """Choose the unit people read a property in, the file's own where there is no other, and how to get there."""
     dimension = PROPERTIES[row.property].dimension if row.property in PROPERTIES else ""
-    wanted = record.display.get(dimension, unit)
+    wanted = record.display.get(dimension, "K/bar" if unit == "K/Pa" else unit)
     if wanted in UNITS.get(dimension, {}):
         return wanted, lambda value: from_si(value, wanted, dimension)
     molar_mass = record.constants.get(row.component, {}).get("molar_mass", {}).get("value")

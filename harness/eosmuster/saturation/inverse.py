@@ -62,13 +62,15 @@ def newton(part: Prepared, target: Floats, work: tables.Workspace, theta: Floats
     if theta is None:
         zero = np.zeros_like(target)
         theta = np.maximum(target / _residual(part, zero, zero, work)[1], 0.0)
+    settled = np.zeros(target.shape, np.bool_)  # each by itself: what else is in the block must not move its digits
     for _ in range(_MOST_STEPS):
         residual, slope = _residual(part, theta, target, work)
         # theta stays non-negative; at most double it, so that a poor start cannot leave the tables in one leap
         following = np.minimum(np.maximum(theta - residual / slope, 0.0), 3.0 * theta + 1.0)
-        largest = np.abs(following - theta) / (1.0 + theta)
-        theta = following
-        if not (largest > 1e-7).any():  # quadratic convergence: what remains is below 1e-14
+        moving = np.abs(following - theta) / (1.0 + theta) > 1e-9
+        theta = np.where(settled, theta, following)
+        settled |= ~moving  # quadratic convergence: what remains is far below rounding
+        if settled.all():
             break
     return _tau(theta, target)
 

@@ -41,10 +41,17 @@ def prepare(parameters: Parameters, count: int) -> Prepared:
     """Find or build the curves of `parameters` for about `count` states."""
     s, m = parameters.s, parameters.m
     table = tables.shipped_table(float(s[0]), float(m[0])) if s.size == 1 else None
+    # in an array of several substances a state's digits must not depend on what else is asked: only one substance
+    # alone is served as the number of its states has it
+    alone = parameters.critical_temperature.ndim == 0
     if table is None:
-        resolution = tables.FINE if count > _MANY * s.size else tables.COARSE
+        resolution = tables.FINE if alone and count > _MANY * s.size else tables.COARSE
         table = _built_table(s.tobytes(), m.tobytes(), resolution)
-    first: NDArray[np.intp] | int = 0 if s.size == 1 else parameters.form * table.resolution.intervals
+    first: NDArray[np.intp] | int = 0
+    if s.size > 1:
+        first = parameters.form * table.resolution.intervals
+    elif not alone:
+        first = np.broadcast_to(np.intp(0), parameters.critical_temperature.shape)  # every state by itself
     omega_b = critical_point(s, m).omega_b[parameters.form]
     molar = GAS_CONSTANT * parameters.critical_temperature / parameters.critical_pressure
     shift = np.zeros_like(molar) if parameters.translation is None else parameters.translation * molar

@@ -28,12 +28,17 @@ NOTES = (
     "no value could be computed",
     "the reference has no value here",
     "the volume translation takes off more than the volume",
+    "the candidate has no root of the stated phase there",
+    "the stated phase is not the stable one of the reference there",
 )
 """Notes of points, by the number that `Block.note` holds."""
 
+NO_VALUE, NO_REFERENCE, NOT_STABLE = 5, 6, 9
+SATURATION_NOTES = np.array([0, 2, 3, 4, 5, 5, 7], np.int16)
+"""Status of the saturation solver -> note, in the order of `eosmuster.saturation.solver.STATUSES`."""
+
 _NUMBERS = tuple(name for name, kind in SummaryRow.__annotations__.items() if kind == "float")
-_SIMPLE, _NO_REFERENCE = 1, 6
-_NOTE_OF_STATUS = np.array([0, 2, 3, 4, 5, 5, 7], np.int16)  # in the order of solver.STATUSES
+_SIMPLE = 1
 _UNSOLVED, _NO_REFERENCE_VERDICT = POINT_VERDICTS.index("unsolved"), POINT_VERDICTS.index("no_reference")
 
 
@@ -57,9 +62,21 @@ def independence(bound: BoundModel, component: Component, series: Series) -> str
     """Tell whether a candidate owes its constants, or its fit, to the reference it is judged against."""
     if series.independent_of_library:
         return "independent"
-    if series.property in bound.record.fitted:
+    if fitted_to(bound.record.fitted, series.property, series.phase):
         return "fitted"
     return "constants" if component.library_name and not bound.record.constants else "independent"
+
+
+def fitted_to(fitted: Sequence[str], name: str, phase: str) -> bool:
+    """Tell whether a property was fitted; a translation fitted to the saturated liquid owns all liquid densities.
+
+    Examples
+    --------
+    >>> fitted_to(("liquid_density",), "density", "liquid"), fitted_to(("liquid_density",), "density", "vapor")
+    (True, False)
+    """
+    of_liquid = name in {"density", "compressibility_factor"} and phase in {"liquid", "stable"}
+    return name in fitted or (of_liquid and "liquid_density" in fitted)
 
 
 def judge(
@@ -68,12 +85,12 @@ def judge(
     owner: Component,
     bound: Sequence[BoundModel],
     predicted: Floats,
-    status: NDArray[np.int8],
+    why: NDArray[np.int16],
     contested: str = "",
 ) -> Judged:
-    """Judge all available models against one series; `predicted` and `status` have shape (models, N).
+    """Judge all available models against one series; `predicted` and `why` have shape (models, N).
 
-    `owner` is the component with the constants that the candidates were given.
+    `owner` is the component with the constants that the candidates were given, `why` the note of what is not solved.
     """
     component, nodes, state = series.component, series.nodes, series.nodes.state
     rows = tuple(i for i, b in enumerate(bound) if not b.unavailable[series.row])
@@ -95,15 +112,17 @@ def judge(
     )
     note = np.where(judgement.simple_rule, _SIMPLE, 0).astype(np.int16)
     unsolved = judgement.verdict == _UNSOLVED
-    note[unsolved] = _NOTE_OF_STATUS[status[list(rows)][:, state]][unsolved]
-    note[judgement.verdict == _NO_REFERENCE_VERDICT] = _NO_REFERENCE
+    found = why[list(rows)][:, state][unsolved]
+    note[unsolved] = np.where(found == 0, NO_VALUE, found)
+    missing = np.broadcast_to(NO_REFERENCE if series.missing is None else series.missing, note.shape)
+    note = np.where(judgement.verdict == _NO_REFERENCE_VERDICT, missing, note).astype(np.int16)
     about = PROPERTIES[series.property]
     block = Block(
         component=component.name,
         cas=component.cas,
         property=series.property,
         unit=about.unit,
-        phase=about.phase,
+        phase=about.phase or series.phase,
         reference_source=series.source,
         candidates=tuple(bound[i].record.name for i in rows),
         independence=tuple(independence(bound[i], owner, series) for i in rows),
@@ -128,6 +147,9 @@ def summarise(block: Block, rule: str) -> Iterator[SummaryRow]:
     """Yield one row a candidate."""
     found = deviations.statistics(block.deviation_pct, block.temperature)
     counts = verdicts.tally(block.verdict)
+    compared = ~np.isnan(block.deviation_pct)
+    known = np.broadcast_to(~np.isnan(block.reference), compared.shape)
+    stated = known & ~np.isnan(block.reference_uncertainty_pct)
     numbers = {
         "aad_pct": found.aad,
         "bias_pct": found.bias,
@@ -140,6 +162,14 @@ def summarise(block: Block, rule: str) -> Iterator[SummaryRow]:
             block.deviation_pct, block.reference_uncertainty_pct, block.verdict, rule
         ),
         "false_acceptance_pct": verdicts.false_acceptance_pct(block.probability_inside, block.verdict),
+        "surely_passing_limit_pct": verdicts.surely_passing_limit_pct(
+            block.deviation_pct, block.reference_uncertainty_pct, block.verdict
+        ),
+        "max_at_Pa": _pressure_of_largest(block),
+        "mean_predicted": deviations.means(block.predicted, compared),
+        "mean_reference": deviations.means(block.reference, compared),
+        "mean_limit_pct": deviations.means(block.limit_pct, known),
+        "mean_uncertainty_pct": deviations.means(block.reference_uncertainty_pct, stated),
     }
     by_candidate = zip(*(values.tolist() for values in numbers.values()), strict=True)
     for i, (candidate, row) in enumerate(zip(block.candidates, by_candidate, strict=True)):
@@ -151,8 +181,8 @@ def summarise(block: Block, rule: str) -> Iterator[SummaryRow]:
             property=block.property,
             reference_source=block.reference_source,
             points=block.temperature.size,
-            from_K=float(block.temperature[0]),
-            to_K=float(block.temperature[-1]),
+            from_K=float(block.temperature.min()),
+            to_K=float(block.temperature.max()),
             inside=inside,
             undecided=undecided + unfit,
             outside=outside,
@@ -165,6 +195,14 @@ def summarise(block: Block, rule: str) -> Iterator[SummaryRow]:
             note=_summary_note(block, i, unsolved, unfit),
             **dict(zip(numbers, row, strict=True)),
         )
+
+
+def _pressure_of_largest(block: Block) -> Floats:
+    """Give the pressure of each candidate's largest deviation; NaN where states have no pressure of their own."""
+    size = np.abs(block.deviation_pct)
+    at = np.where(np.isnan(size), -1.0, size).argmax(axis=1) if size.shape[1] else np.zeros(len(size), np.intp)
+    pressure = np.append(block.pressure, np.nan)[at]
+    return np.where(np.isnan(size).all(axis=1), np.nan, pressure)
 
 
 def _summary_note(block: Block, row: int, unsolved: int, unfit: int) -> str:

@@ -3,8 +3,8 @@
 from __future__ import annotations
 
 import hashlib
-from collections.abc import Callable, Iterable, Iterator, Sequence
-from dataclasses import dataclass
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
+from dataclasses import dataclass, field
 from pathlib import Path
 
 import numpy as np
@@ -15,7 +15,7 @@ from eosmuster.diagnose.measured import Predictions, Suspicion, exchanged, suspi
 from eosmuster.plan.schema import Plan
 from eosmuster.quantities import PROPERTIES
 from eosmuster.sources import library
-from eosmuster.sources.measured import MeasuredSet, Reading
+from eosmuster.sources.measured.table import MeasuredSet, Reading
 from eosmuster.sweeping.series import Nodes, Series
 
 Floats = NDArray[np.float64]
@@ -35,16 +35,34 @@ class Measured:
     conflicts : (component, property, sentence) of sets that contradict the reference library, with the cause
     left_out : (file, why) of what could not be read
     files : (name, SHA-256) of every file read
+    citations : source of a series -> full reference, as far as the file has it, and the files it was read from
     """
 
     series: tuple[Series, ...] = ()
     conflicts: tuple[tuple[str, str, str], ...] = ()
     left_out: tuple[tuple[str, str], ...] = ()
     files: tuple[tuple[str, str], ...] = ()
+    citations: Mapping[str, str] = field(default_factory=dict)
+
+
+@dataclass(frozen=True, eq=False)
+class Held:
+    """A measured set that contradicts the reference library.
+
+    Attributes
+    ----------
+    one : the set
+    cause : a key of `eosmuster.diagnose.measured.CAUSES`, or ``exchanged``
+    sentence : with the evidence, and where the set stands
+    """
+
+    one: MeasuredSet
+    cause: str
+    sentence: str
 
 
 def measure(plan: Plan, progress: Progress) -> Measured:
-    """Read a plan's files, relative to the plan's own folder.
+    """Read a plan's files, relative to the plan's own folder, and hold them against the library.
 
     Raises
     ------
@@ -52,18 +70,57 @@ def measure(plan: Plan, progress: Progress) -> Measured:
     """
     if not plan.reference_files:
         return Measured()
-    from eosmuster.sources.measured_files import read_files
-
-    folder = Path(plan.path).resolve().parent if plan.path else Path.cwd()
-    own = [c for c in plan.components if not c.library_name]
-    reading = read_files(plan.reference_files, folder, progress, own)
+    folder, reading = folder_of(plan), read(plan, progress)
     names = sorted({one.source.file for one in reading.sets})
+    series = tuple(_series(plan, reading))
+    used = {one.source for one in series}
     return Measured(
-        tuple(_series(plan, reading)),
-        tuple(_conflicts(reading)),
+        series,
+        tuple((h.one.component.name, h.one.property, h.sentence) for h in held(reading, progress)),
         tuple(_diagnostics(reading)),
         tuple((name, _hash(folder / name)) for name in names),
+        {key: text for key, text in citations(reading.sets).items() if key in used},
     )
+
+
+def folder_of(plan: Plan) -> Path:
+    """Give the folder that a plan's files are named from: its own, or the current one for a built-in plan."""
+    return Path(plan.path).resolve().parent if plan.path else Path.cwd()
+
+
+def read(plan: Plan, progress: Progress) -> Reading:
+    """Read a plan's files; nothing where it names none.
+
+    Raises
+    ------
+    InputError : a pattern that names no file
+    """
+    if not plan.reference_files:
+        return Reading()
+    from eosmuster.sources.measured.files import read_files
+
+    own = [c for c in plan.components if not c.library_name]
+    return read_files(plan.reference_files, folder_of(plan), progress, own)
+
+
+def citations(sets: Iterable[MeasuredSet]) -> dict[str, str]:
+    """Give the full reference of every source, by the name it has in results, with the files it was read from.
+
+    Examples
+    --------
+    >>> citations([])
+    {}
+    """
+    said: dict[str, str] = {}
+    files: dict[str, dict[str, None]] = {}
+    for one in sets:
+        key = PREFIX + one.source.name
+        said.setdefault(key, one.source.reference)
+        files.setdefault(key, {})[one.source.file] = None
+    return {
+        key: text if text.startswith(next(iter(files[key]))) else f"{text} (read from {', '.join(files[key])})"
+        for key, text in sorted(said.items())
+    }
 
 
 def _hash(path: Path) -> str:
@@ -113,18 +170,17 @@ def _joined(plan: Plan, row: int, name: str, source: str, sets: Sequence[Measure
     return Series(component, row, name, PREFIX + source, "", nodes, values[order], lambda _: expanded, None)
 
 
-def _conflicts(reading: Reading) -> Iterator[tuple[str, str, str]]:
-    """Name what is wrong with each set, from how it lies to the reference library."""
+def held(reading: Reading, progress: Progress) -> Iterator[Held]:
+    """Name what is wrong with each set, from how it lies to the reference library; file by file."""
     by_file: dict[str, list[MeasuredSet]] = {}
     for one in reading.sets:
         by_file.setdefault(one.source.file, []).append(one)
-    for file, sets in by_file.items():
+    for done, (file, sets) in enumerate(by_file.items()):
+        progress("measured sets", done, len(by_file))
         components = {one.component.name: one.component for one in sets}
         found = [(one, s) for one in sets for s in _suspected(one, components.values())]
-        for one, s in found:
-            yield one.component.name, one.property, f"{file}, block {one.block}: {s.sentence}"
-        for sentence in exchanged(found):
-            yield "", "", f"{file}: {sentence}"
+        yield from (Held(one, s.cause, f"{file}, block {one.block}: {s.sentence}") for one, s in found)
+        yield from (Held(one, "exchanged", f"{file}: {sentence}") for one, sentence in exchanged(found))
 
 
 def _suspected(one: MeasuredSet, companions: Iterable[Component]) -> tuple[Suspicion, ...]:

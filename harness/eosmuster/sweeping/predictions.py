@@ -9,9 +9,12 @@ import numpy as np
 from numpy.typing import NDArray
 
 from eosmuster.components import Component
-from eosmuster.models.model import BoundModel, bind
+from eosmuster.models.model import BoundModel, Parameters, bind
 from eosmuster.models.records import ModelRecord
 from eosmuster.saturation import solver
+from eosmuster.singlephase import solver as single_phase
+from eosmuster.singlephase.caloric import isobaric_heat_capacity
+from eosmuster.sources.library_states import ideal_heat_capacity
 from eosmuster.sweeping.series import Series
 
 Floats = NDArray[np.float64]
@@ -44,8 +47,9 @@ class Predictions:
         self.bound: tuple[BoundModel, ...] = tuple(bind(record, components) for record in records)
         self.requests, temperatures, pressures = _lay_out(series)
         wanted = {s.property for s in series}
-        self._by_temperature = _solve_all(self.bound, temperatures, wanted, by_pressure=False)
-        self._by_pressure = _solve_all(self.bound, pressures, wanted, by_pressure=True)
+        ideal = IdealGas(components)
+        self._by_temperature = _solve_all(self.bound, temperatures, wanted, ideal, by_pressure=False)
+        self._by_pressure = _solve_all(self.bound, pressures, wanted, ideal, by_pressure=True)
 
     def of(self, number: int, name: str) -> tuple[Floats, NDArray[np.int8]]:
         """Predictions and solver statuses of the series with that number: shapes (models, N)."""
@@ -55,8 +59,30 @@ class Predictions:
         return values[name][:, stretch], status[:, stretch]
 
 
+class IdealGas:
+    """Isobaric heat capacities of ideal gases, from the reference equations: only the residual part is judged."""
+
+    def __init__(self, components: Sequence[Component]) -> None:
+        self._components = components
+        self._known: tuple[Ints, Floats, Floats] | None = None
+
+    def __call__(self, row: Ints, temperature: Floats) -> Floats:
+        """Give c_p0 at flat states, J/(mol K); NaN where the reference library does not know it.
+
+        Models asked at given temperatures ask for the same states one after the other, so the last answer is kept.
+        """
+        if self._known is not None and all(map(np.array_equal, self._known[:2], (row, temperature))):
+            return self._known[2]
+        found = np.full(temperature.shape, np.nan)
+        for number in np.unique(row).tolist():
+            mine = (row == number) & ~np.isnan(temperature)
+            found[mine] = ideal_heat_capacity(self._components[number], temperature[mine])
+        self._known = row, temperature, found
+        return found
+
+
 def predict(
-    bound: BoundModel, states: States, names: set[str], *, by_pressure: bool
+    bound: BoundModel, states: States, names: set[str], ideal: IdealGas, *, by_pressure: bool
 ) -> tuple[dict[str, Floats], NDArray[np.int8]]:
     """Predict properties of one model at flat states; NaN where the status says why."""
     parameters = bound.parameters.take(states.row)
@@ -70,19 +96,38 @@ def predict(
     }
     if "enthalpy_of_vaporization" in names:
         found["enthalpy_of_vaporization"] = solver.enthalpy_of_vaporization(result)
+    if names & _CALORIC:
+        found |= _caloric(parameters, result, states.row, ideal)
     if by_pressure:
         found["boiling_temperature"] = np.where(result.status == solver.SOLVED, result.temperature, np.nan)
     return {name: found[name] for name in names}, result.status
 
 
+_CALORIC = {"entropy_of_vaporization", "liquid_heat_capacity", "vapor_heat_capacity"}
+
+
+def _caloric(parameters: Parameters, found: solver.Saturation, row: Ints, ideal: IdealGas) -> dict[str, Floats]:
+    """Give the entropy of vaporization and the isobaric heat capacities of both saturated phases."""
+    solved = found.status == solver.SOLVED
+    given = (found.temperature, found.pressure, found.liquid_density, found.vapor_density)
+    T, p, liquid, vapor = (np.where(solved, values, np.nan) for values in given)
+    of_liquid, of_vapor = single_phase.saturated(parameters, T, p, liquid, vapor)
+    heat = ideal(row, T)
+    return {
+        "entropy_of_vaporization": of_vapor.residual_entropy - of_liquid.residual_entropy,
+        "liquid_heat_capacity": isobaric_heat_capacity(of_liquid, heat),
+        "vapor_heat_capacity": isobaric_heat_capacity(of_vapor, heat),
+    }
+
+
 def _solve_all(
-    bound: Sequence[BoundModel], states: States, wanted: set[str], *, by_pressure: bool
+    bound: Sequence[BoundModel], states: States, wanted: set[str], ideal: IdealGas, *, by_pressure: bool
 ) -> tuple[dict[str, Floats], NDArray[np.int8]]:
     names = wanted - ({"saturation_pressure"} if by_pressure else {"boiling_temperature"})
     values = {name: np.empty((len(bound), states.value.size)) for name in names}
     status = np.empty((len(bound), states.value.size), np.int8)
     for i, model in enumerate(bound):
-        found, status[i] = predict(model, states, names, by_pressure=by_pressure)
+        found, status[i] = predict(model, states, names, ideal, by_pressure=by_pressure)
         for name in names:
             values[name][i] = found[name]
     return values, status

@@ -20,7 +20,7 @@ from eosmuster.plan.tolerances import limit_pct
 from eosmuster.record import WindowRow
 from eosmuster.sweeping.judging import Judged
 from eosmuster.sweeping.known import known_or
-from eosmuster.sweeping.predictions import States, predict
+from eosmuster.sweeping.predictions import IdealGas, States, predict
 from eosmuster.sweeping.series import Series
 
 Floats = NDArray[np.float64]
@@ -121,13 +121,13 @@ class _Evaluator:
         name = np.array([names.index(j.block.property) for j in self.judged], np.intp)[block]
         by_pressure = np.array([j.series.nodes.by_pressure for j in self.judged])[block]
         component = np.array([j.series.row for j in self.judged], np.intp)[block]
-        result = np.empty(block.shape)
+        result, ideal = np.empty(block.shape), IdealGas(self.plan.components)
         for key, index in _groups((model * 2 + by_pressure) * len(names) + name):
             kind, wanted = divmod(key, len(names))
             number, pressed = divmod(kind, 2)
             value = (given if pressed else temperature)[index]
             states = States(component[index], value)
-            found, _ = predict(self.bound[number], states, {names[wanted]}, by_pressure=bool(pressed))
+            found, _ = predict(self.bound[number], states, {names[wanted]}, ideal, by_pressure=bool(pressed))
             result[index] = found[names[wanted]]
         return result
 

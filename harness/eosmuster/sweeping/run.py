@@ -4,25 +4,26 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import replace
-from typing import Any
+from dataclasses import asdict, dataclass, replace
 
 from eosmuster.compare.deviations import deviation_pct, statistics
-from eosmuster.components import Component
 from eosmuster.models.model import BoundModel
 from eosmuster.models.records import ModelRecord
 from eosmuster.plan.schema import Plan
 from eosmuster.plan.selection import model_records
-from eosmuster.plan.tolerances import rules_in_use
+from eosmuster.quantities import SATURATION
 from eosmuster.record import Record, SummaryRow
-from eosmuster.sources import handbook, library
+from eosmuster.sweeping import describing
 from eosmuster.sweeping.constants import Chosen, choose
-from eosmuster.sweeping.judging import Judged, judge, summarise, unavailable_row
-from eosmuster.sweeping.measured import measure
+from eosmuster.sweeping.judging import SATURATION_NOTES, Judged, judge, summarise, unavailable_row
+from eosmuster.sweeping.measured import Measured, folder_of, measure
+from eosmuster.sweeping.ordering import by_component
+from eosmuster.sweeping.planes import Plane, collect_planes, judge_planes
 from eosmuster.sweeping.predictions import Predictions
+from eosmuster.sweeping.qualifying import regions
 from eosmuster.sweeping.refining import windows
 from eosmuster.sweeping.series import Series, collect, refuse_empty
-from eosmuster.sweeping.watching import watch
+from eosmuster.sweeping.watching import Watched, watch
 
 Progress = Callable[[str, int, int], None]
 """Called with what is being done, how much of it is done, and how much there is."""
@@ -33,59 +34,92 @@ def silent(_what: str, _done: int, _of: int) -> None:
 
 
 def run(plan: Plan, progress: Progress = silent) -> Record:
-    """Sweep a plan: every component x model x state x property, judged against every reference.
+    """Sweep a plan, or its part: every component x model x state x property, judged against every reference.
 
     Raises
     ------
     NothingJudged : no reference has anything to say about the plan
     """
-    chosen = choose(plan)
-    left_out = [*plan.left_out, *chosen.left]
-    series = []
-    for found in collect(plan, left_out):
-        series.append(found)
-        progress("references", found.row + 1, len(plan.components))
-    found_in_files = measure(plan, progress)
-    series += found_in_files.series
-    left_out += found_in_files.left_out
-    refuse_empty(series)
-    records = model_records(plan)
+    chosen, records = choose(plan), model_records(plan)
+    found = _gather(plan, progress)
     progress("models", 0, 1)
-    predictions = Predictions(records, chosen.components, series)
-    judged = []
-    watched = watch(series)
-    for i, one in enumerate(series):
-        contested = watched.contested[one.row, one.property]
-        owner = chosen.components[one.row]
-        judged.append(judge(plan, one, owner, predictions.bound, *predictions.of(i, one.property), contested))
-        progress("verdicts", i + 1, len(series))
+    predictions = Predictions(records, chosen.components, found.series)
+    watched = watch(found.series)
+    saturated = _judged(plan, found.series, chosen, predictions, watched, progress)
     progress("windows", 0, 1)
-    found_windows = windows(plan, judged, predictions.bound)
+    found_windows = windows(plan, saturated, predictions.bound)
     progress("windows", 1, 1)
-    return Record(
+    in_planes = judge_planes(plan, found.planes, records, chosen.components)
+    judged = [*saturated, *in_planes.judged]
+    summary = _compared(_summary(plan, judged, predictions.bound), chosen, plan, found.series, records)
+    record = Record(
         plan_name=plan.name,
         plan_title=plan.title,
         plan_text=plan.text,
         blocks=tuple(j.block for j in judged),
-        summary=tuple(_compared(_summary(plan, judged, predictions.bound), chosen, plan, series, records)),
+        summary=tuple(summary),
         windows=tuple(found_windows),
-        left_out=tuple(left_out),
-        decision=_decision(plan),
-        constants={c.name: _constants(c) for c in chosen.components},
-        models={r.name: _model(r) for r in records},
-        citations=_citations(series),
-        display={
-            "temperature": plan.display.temperature,
-            "pressure": plan.display.pressure,
-            "density": plan.display.density,
-        },
+        left_out=(*plan.left_out, *chosen.left, *found.left_out),
+        decision=describing.decision(plan),
+        constants={c.name: describing.constants(c) for c in chosen.components},
+        models={r.name: describing.model(r) for r in records},
+        citations={**describing.citations([j.series for j in judged]), **found.measured.citations},
+        display=asdict(plan.display),
         references=(*plan.references_use, *(("measured",) if plan.reference_files else ())),
         conflicts=(
             *((c.component, c.quantity, c.sentence) for c in watched.conflicts),
-            *found_in_files.conflicts,
+            *found.measured.conflicts,
         ),
-        files=found_in_files.files,
+        files=found.measured.files,
+        regions=regions(plan, in_planes, chosen.components, progress),
+        part=plan.part,
+        plan_folder=str(folder_of(plan)) if plan.reference_files else "",
     )
+    return by_component(record, [component.name for component in plan.components])
+
+
+@dataclass(frozen=True)
+class _Gathered:
+    """All references of a plan: on saturated states, on planes, in measured files; and what there is not."""
+
+    series: Sequence[Series]
+    planes: Sequence[Plane]
+    measured: Measured
+    left_out: Sequence[tuple[str, str]]
+
+
+def _gather(plan: Plan, progress: Progress) -> _Gathered:
+    saturated = replace(plan, properties=tuple(name for name in plan.properties if name in SATURATION))
+    left_out: list[tuple[str, str]] = []
+    series, planes = [], []
+    for one in collect(saturated, left_out):
+        series.append(one)
+        progress("references", one.row + 1, len(plan.components))
+    measured = measure(saturated, progress)
+    series += [one for one in measured.series if one.row in plan.rows]
+    for plane in collect_planes(plan, left_out):
+        planes.append(plane)
+        progress("single-phase references", plane.row + 1, len(plan.components))
+    if plan.part is None:  # a part may have nothing to do, which the others make up for
+        refuse_empty([*series, *(one for plane in planes for one in plane.series)])
+    return _Gathered(series, planes, measured, [*left_out, *measured.left_out])
+
+
+def _judged(
+    plan: Plan,
+    series: Sequence[Series],
+    chosen: Chosen,
+    predictions: Predictions,
+    watched: Watched,
+    progress: Progress,
+) -> list[Judged]:
+    judged = []
+    for i, one in enumerate(series):
+        contested, owner = watched.contested[one.row, one.property], chosen.components[one.row]
+        values, status = predictions.of(i, one.property)
+        judged.append(judge(plan, one, owner, predictions.bound, values, SATURATION_NOTES[status], contested))
+        progress("verdicts", i + 1, len(series))
+    return judged
 
 
 def _summary(plan: Plan, judged: Sequence[Judged], bound: Sequence[BoundModel]) -> list[SummaryRow]:
@@ -123,67 +157,3 @@ def _with_note(row: SummaryRow, aad: Mapping[tuple[str, str, str, str], float]) 
         return row
     note = f"AAD {usual:.3g} % with the library's constants"
     return replace(row, note=f"{row.note}; {note}" if row.note else note)
-
-
-def _decision(plan: Plan) -> dict[str, Any]:
-    return {
-        "rule": plan.decision.rule,
-        "coverage_factor": plan.decision.coverage_factor,
-        "unfit_ratio": plan.decision.unfit_ratio,
-        "uncertainty": plan.decision.uncertainty,
-        "tolerances": [
-            {
-                "property": r.property,
-                "limit": str(r.limit),
-                "level": r.level,
-                "class": r.family,
-                "component": r.component,
-                "above_reduced_temperature": r.above_reduced_temperature,
-                "below_reduced_temperature": None
-                if math.isinf(r.below_reduced_temperature)
-                else r.below_reduced_temperature,
-                "rationale": r.rationale,
-            }
-            for r in rules_in_use(plan.tolerances, plan.components, plan.properties)
-        ],
-    }
-
-
-_CONSTANTS = {
-    "critical_temperature": "K",
-    "critical_pressure": "Pa",
-    "critical_density": "mol/m3",
-    "acentric_factor": "1",
-    "molar_mass": "kg/mol",
-    "triple_temperature": "K",
-}
-
-
-def _constants(component: Component) -> dict[str, Any]:
-    values: dict[str, Any] = {
-        name: {"value": getattr(component, name), "unit": unit, "source": component.sources.get(name, "")}
-        for name, unit in _CONSTANTS.items()
-        if getattr(component, name) is not None
-    }
-    return values | {"cas": component.cas, "class": component.family, "notes": list(component.notes)}
-
-
-def _model(record: ModelRecord) -> dict[str, Any]:
-    return {
-        "form": record.form.name,
-        "alpha": record.alpha,
-        "source": record.source,
-        "status": record.status,
-        "constants": record.constants or "the component's own",
-        "translated": record.translation is not None,
-        "note": record.note,
-    }
-
-
-def _citations(series: Sequence[Series]) -> Mapping[str, str]:
-    bibliography = handbook.bibliography()
-    used = {s.citation for s in series if s.citation}
-    cited = {key: bibliography[key] for key in sorted(used)}
-    if any(not s.independent_of_library for s in series):
-        cited["coolprop"] = library.citation()
-    return cited

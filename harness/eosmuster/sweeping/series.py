@@ -12,7 +12,8 @@ from eosmuster.components import Component
 from eosmuster.errors import NothingJudged
 from eosmuster.plan.schema import Decision, Plan
 from eosmuster.plan.tolerances import limit_steps
-from eosmuster.sources import handbook, library
+from eosmuster.quantities import SATURATION
+from eosmuster.sources import handbook, library, library_gate
 
 Floats = NDArray[np.float64]
 Step = tuple[float, str]
@@ -20,7 +21,7 @@ Step = tuple[float, str]
 _ONE_TEMPERATURE = 2e-9
 """Relative: limits are looked up 1e-9 off a step (`compare.axis`), so steps nearer than twice that would overlap."""
 
-BY_TEMPERATURE = ("saturation_pressure", "liquid_density", "vapor_density", "enthalpy_of_vaporization")
+BY_TEMPERATURE = tuple(name for name in SATURATION if name != "boiling_temperature")
 """Properties asked for at a temperature; the boiling temperature is always asked for at a pressure."""
 
 
@@ -30,7 +31,8 @@ class Nodes:
 
     Attributes
     ----------
-    temperature : (N,), K, strictly rising: the plan's states, and the steps of limits and ranges between them
+    temperature : (N,), K, strictly rising: the plan's states, and the steps of limits and ranges between them;
+        single-phase states come pressure by pressure, each with all temperatures
     pressure : (N,), Pa, where the states are given by pressure or candidates are; else NaN
     state : (n,), numbers of the nodes that are states of the plan
     by_pressure : whether candidates are given the pressure (else the temperature)
@@ -56,6 +58,8 @@ class Series:
     evaluate : temperature -> (value, pressure to give or NaN) for a source with a value everywhere in its range;
         None for tabulated values, which have no windows
     steps : temperatures at which limit, uncertainty or reference change by a jump, and what each is
+    phase : the plan's phase of single-phase states, else ""
+    missing : (n,), the note of each state without a value; None for the usual one
     """
 
     component: Component
@@ -69,11 +73,14 @@ class Series:
     evaluate: Callable[[Floats], tuple[Floats, Floats]] | None
     steps: tuple[Step, ...] = ()
     independent_of_library: bool = True
+    phase: str = ""
+    missing: NDArray[np.int16] | None = None
 
 
 def collect(plan: Plan, left_out: list[tuple[str, str]]) -> Iterator[Series]:
     """Yield every series of a plan, component by component; what a source cannot give is said in `left_out`."""
-    for row, component in enumerate(plan.components):
+    for row in plan.rows if plan.properties else ():
+        component = plan.components[row]
         if "coolprop" in plan.references_use:
             yield from _library_series(plan, row, component, left_out)
         if "handbook" in plan.references_use and component.cas:
@@ -82,7 +89,7 @@ def collect(plan: Plan, left_out: list[tuple[str, str]]) -> Iterator[Series]:
 
 
 def _library_series(plan: Plan, row: int, component: Component, left_out: list[tuple[str, str]]) -> Iterator[Series]:
-    limits = library.limits(component)
+    limits = library_gate.limits(component)
     if limits is None:
         left_out.append((component.name, "the reference library has no equation for it"))
         return
@@ -132,11 +139,12 @@ def _library_series(plan: Plan, row: int, component: Component, left_out: list[t
 
 
 def _library_uncertainty(component: Component, name: str, decision: Decision) -> Callable[[Floats], Floats]:
-    factor, levels = decision.coverage_factor, _levels(decision)
+    factor, levels = decision.coverage_factor, uncertainty_levels(decision)
     return lambda t: library.uncertainty_pct(component, name, t, factor, **levels)
 
 
-def _levels(decision: Decision) -> dict[str, bool]:
+def uncertainty_levels(decision: Decision) -> dict[str, bool]:
+    """Say which uncertainties count by a decision rule, as the sources are asked for them."""
     return {"remembered": decision.uncertainty != "read", "assumed": decision.uncertainty == "assumed"}
 
 
@@ -249,7 +257,7 @@ def _tolerance_steps(plan: Plan, component: Component, name: str) -> list[Step]:
 
 
 def _uncertainty_steps(component: Component, name: str, decision: Decision) -> list[Step]:
-    return [(t, "undecided") for t in library.uncertainty_borders(component, name, **_levels(decision))]
+    return [(t, "undecided") for t in library.uncertainty_borders(component, name, **uncertainty_levels(decision))]
 
 
 def _steps(steps: Iterable[Step], ends: tuple[float, float], grid: Floats) -> tuple[Step, ...]:

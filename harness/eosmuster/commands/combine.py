@@ -1,0 +1,47 @@
+"""``eosmuster combine``: the parts of a run put together."""
+
+from __future__ import annotations
+
+import argparse
+
+from eosmuster.errors import InputError
+
+HELP = "put the parts of a run together (sweep --part): the same results as of one run"
+
+
+def add(parser: argparse.ArgumentParser) -> None:
+    """Add the options."""
+    parser.add_argument("parts", nargs="+", metavar="PART_DIR", help="the results folders of all parts, in any order")
+    parser.add_argument("--out", metavar="DIR", help="results folder (default: eosmuster-results/<plan name>)")
+    parser.add_argument("--gate", action="store_true", help="exit with 1 if a verdict of the plan's [gate] occurs")
+    parser.add_argument(
+        "--points", choices=("all", "none"), default="all", help="write points.csv, or leave it out (default: all)"
+    )
+    parser.add_argument(
+        "--dossier", choices=("yes", "no"), default="yes", help="write dossier.html, or leave it out (default: yes)"
+    )
+    parser.add_argument(
+        "--workbook", action="store_true", help="write results.xlsx too (pip install 'eosmuster[workbook]')"
+    )
+
+
+def run(options: argparse.Namespace) -> int:
+    """Read all parts, put them together, write the results folder, show the answer."""
+    from datetime import UTC, datetime
+    from pathlib import Path
+
+    from eosmuster.combining import combine
+    from eosmuster.commands.outcome import conclude
+    from eosmuster.report.folder import checked, save
+
+    started = datetime.now(UTC)
+    if options.out is not None:
+        checked(options.out, overwrite=True)  # before the work begins
+    plan, record = combine(options.parts)
+    target = checked(Path("eosmuster-results") / plan.name if options.out is None else options.out, overwrite=True)
+    for part in options.parts:
+        if Path(part).resolve() == target:
+            raise InputError(f"--out {target} is one of the parts, which stay as they are; choose another")
+    asked = {"points": options.points == "all", "dossier": options.dossier == "yes", "workbook": options.workbook}
+    folder = save(record, target, **asked, overwrite=True, started=started)
+    return conclude(plan, record, folder, gate=options.gate)

@@ -1,0 +1,37 @@
+"""How a run ends, whoever ran it: what is shown, what the gate says, and the exit status."""
+
+from __future__ import annotations
+
+import sys
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from eosmuster.commands.exits import GATE_NOT_MET, NOTHING_JUDGED, complain, show, width
+
+if TYPE_CHECKING:
+    from eosmuster.plan.schema import Plan
+    from eosmuster.record import Record
+
+
+def conclude(plan: Plan, record: Record, folder: Path, *, gate: bool) -> int:
+    """Show the answer, hold it against the plan's gate if that is asked for, and give the exit status."""
+    from eosmuster.report.terminal import terminal_summary
+    from eosmuster.sweeping.gate import gate_failures, nothing_judged, silent_line, worst_lines
+
+    show(terminal_summary(record, folder, width()))
+    if nothing_judged(record):
+        complain("nothing could be judged: no point has both a prediction and a reference")
+        return NOTHING_JUDGED
+    if not gate:
+        return 0
+    failures = gate_failures(record, plan)
+    if failures:
+        complain(f"the gate is not met: {failures.counted}")
+        print("\n".join(f"  {line}" for line in worst_lines(record, failures)), file=sys.stderr)
+        return GATE_NOT_MET
+    if not failures.judged:
+        complain("nothing could be judged of what the gate asks")
+        return NOTHING_JUDGED
+    if failures.silent:
+        complain(silent_line(failures))
+    return 0

@@ -1,0 +1,194 @@
+"""Single-phase states: references and candidates on every temperature with every pressure of a plan."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator, Mapping, Sequence
+from dataclasses import dataclass, replace
+from types import MappingProxyType
+
+import numpy as np
+from numpy.typing import NDArray
+
+from eosmuster.components import Component
+from eosmuster.models.model import BoundModel, bind
+from eosmuster.models.records import ModelRecord
+from eosmuster.plan.schema import Plan, SinglePhaseGrid
+from eosmuster.quantities import SINGLE_PHASE
+from eosmuster.singlephase import caloric, solver
+from eosmuster.singlephase.solver import SinglePhase
+from eosmuster.sources import library_gate, library_states
+from eosmuster.sources.uncertainty import uncertainty_pct
+from eosmuster.sweeping.judging import NO_REFERENCE, NOT_STABLE, Judged, judge
+from eosmuster.sweeping.series import Nodes, Series, uncertainty_levels
+
+Floats = NDArray[np.float64]
+Progress = Callable[[str, int, int], None]
+"""Called with what is being done, how much of it is done, and how much there is."""
+
+SINGLE_PHASE_NOTES = np.array([0, 8, 5, 5, 7], np.int16)
+"""Status of the single-phase solver -> note, in the order of `eosmuster.singlephase.solver.STATUSES`."""
+
+
+@dataclass(frozen=True)
+class Plane:
+    """One component on the plane of a plan.
+
+    Attributes
+    ----------
+    row : number of the component in the plan
+    temperature, pressure : (n,), K and Pa: pressure by pressure, each with all temperatures
+    ideal_heat_capacity : (n,), J/(mol K): the reference's own, so that only the residual part is judged
+    series : one a property, on these states
+    """
+
+    row: int
+    temperature: Floats
+    pressure: Floats
+    ideal_heat_capacity: Floats
+    series: tuple[Series, ...]
+
+
+@dataclass(frozen=True)
+class JudgedPlanes:
+    """What regions are looked for in.
+
+    Attributes
+    ----------
+    planes : of the components that have a reference
+    judged : series by series, plane by plane
+    bound : the models, with the plan's rule above the critical temperature
+    """
+
+    planes: tuple[Plane, ...]
+    judged: tuple[Judged, ...]
+    bound: tuple[BoundModel, ...]
+
+
+def collect_planes(plan: Plan, left_out: list[tuple[str, str]]) -> Iterator[Plane]:
+    """Yield the single-phase states of each component with the reference library's values; none if there are none."""
+    grid, names = plan.single_phase, [name for name in plan.properties if name in SINGLE_PHASE]
+    if grid is None or not names:
+        return
+    for row in plan.rows:
+        component = plan.components[row]
+        if "coolprop" not in plan.references_use or library_gate.limits(component) is None:
+            left_out.append((component.name, "no reference for its single-phase states but the library's equations"))
+            continue
+        yield _plane(plan, grid, row, component, names)
+
+
+def flat(grid: SinglePhaseGrid) -> tuple[Floats, Floats]:
+    """Lay out the plane: pressure by pressure, each with all temperatures.
+
+    Examples
+    --------
+    >>> T, p = flat(SinglePhaseGrid((300.0, 310.0), (1e5, 2e5)))
+    >>> T.tolist(), p.tolist()
+    ([300.0, 310.0, 300.0, 310.0], [100000.0, 100000.0, 200000.0, 200000.0])
+    """
+    return np.tile(grid.temperature, len(grid.pressure)), np.repeat(grid.pressure, len(grid.temperature))
+
+
+def _plane(plan: Plan, grid: SinglePhaseGrid, row: int, component: Component, names: Sequence[str]) -> Plane:
+    T, p = flat(grid)
+    answers = library_states.single_phase(component, T, p, grid.phase, names)
+    missing = np.where(answers.reason == library_gate.NOT_STABLE, NOT_STABLE, NO_REFERENCE).astype(np.int16)
+    nodes = Nodes(T, p, np.arange(T.size))
+    series = tuple(
+        Series(
+            component,
+            row,
+            name,
+            library_gate.LIBRARY,
+            "",
+            nodes,
+            answers.values[name],
+            _of_these_states(uncertainty(plan, component, name, T, p)),
+            None,
+            independent_of_library=False,
+            phase=grid.phase,
+            missing=missing,
+        )
+        for name in names
+    )
+    return Plane(row, T, p, library_states.ideal_heat_capacity(component, T), series)
+
+
+def uncertainty(plan: Plan, component: Component, name: str, T: Floats, p: Floats) -> Floats:
+    """Give the expanded uncertainty of the reference at states, %; NaN where it is not stated."""
+    factor, levels = plan.decision.coverage_factor, uncertainty_levels(plan.decision)
+    return uncertainty_pct(component, name, T, factor, pressure=p, **levels)
+
+
+def _of_these_states(values: Floats) -> Callable[[Floats], Floats]:
+    """Answer for the series' own states alone: the uncertainty depends on pressure too."""
+    return lambda _temperature: values
+
+
+def bind_all(
+    records: Sequence[ModelRecord], components: Sequence[Component], grid: SinglePhaseGrid
+) -> tuple[BoundModel, ...]:
+    """Bind all models, with the plan's rule above the critical temperature where it names one.
+
+    A model of the plan's own keeps what it says itself.
+    """
+    rule = grid.supercritical_alpha
+    return tuple(bind(r if r.own else replace(r, supercritical=rule), components) for r in records)
+
+
+def judge_planes(
+    plan: Plan, planes: Sequence[Plane], records: Sequence[ModelRecord], components: Sequence[Component]
+) -> JudgedPlanes:
+    """Judge all models on all planes; `components` have the constants that the candidates are given."""
+    if plan.single_phase is None or not planes:
+        return JudgedPlanes((), (), ())
+    bound = bind_all(records, components, plan.single_phase)
+    predicted, why = _predict_all(bound, planes, components, plan.single_phase.phase)
+    judged, start = [], 0
+    for plane in planes:
+        stretch = slice(start, start := start + plane.temperature.size)
+        for one in plane.series:
+            values = predicted[one.property][:, stretch]
+            judged.append(judge(plan, one, components[plane.row], bound, values, why[:, stretch]))
+    return JudgedPlanes(tuple(planes), tuple(judged), bound)
+
+
+def _predict_all(
+    bound: Sequence[BoundModel], planes: Sequence[Plane], components: Sequence[Component], phase: str
+) -> tuple[dict[str, Floats], NDArray[np.int16]]:
+    """Predict on all planes, end to end: property -> (models, states), and why there is no value."""
+    names = [one.property for one in planes[0].series]
+    T, p, ideal = (
+        np.concatenate([getattr(plane, name) for plane in planes])
+        for name in ("temperature", "pressure", "ideal_heat_capacity")
+    )
+    row = np.repeat([plane.row for plane in planes], [plane.temperature.size for plane in planes]).astype(np.intp)
+    values = {name: np.empty((len(bound), T.size)) for name in names}
+    why = np.empty((len(bound), T.size), np.int16)
+    for i, model in enumerate(bound):
+        states = solver.at_pressure(model.parameters.take(row), T, p, phase)
+        for name in names:
+            values[name][i] = PROPERTY[name](states, ideal, molar_masses(components)[row])
+        why[i] = SINGLE_PHASE_NOTES[states.status]
+    return values, why
+
+
+def molar_masses(components: Sequence[Component]) -> Floats:
+    """Give the molar masses, kg/mol; NaN where there is none."""
+    return np.array([np.nan if c.molar_mass is None else c.molar_mass for c in components], np.float64)
+
+
+PROPERTY: Mapping[str, Callable[[SinglePhase, Floats, Floats], Floats]] = MappingProxyType(
+    {
+        "density": lambda states, _ideal, _mass: states.density,
+        "compressibility_factor": lambda states, _ideal, _mass: states.compressibility_factor,
+        "residual_enthalpy": lambda states, _ideal, _mass: states.residual_enthalpy,
+        "residual_internal_energy": lambda states, _ideal, _mass: states.residual_internal_energy,
+        "residual_entropy": lambda states, _ideal, _mass: states.residual_entropy,
+        "isobaric_heat_capacity": lambda states, ideal, _mass: caloric.isobaric_heat_capacity(states, ideal),
+        "speed_of_sound": caloric.speed_of_sound,
+        "joule_thomson_coefficient": lambda states, ideal, _mass: caloric.joule_thomson_coefficient(states, ideal),
+        "fugacity_coefficient": lambda states, _ideal, _mass: np.exp(states.log_fugacity_coefficient),
+    }
+)
+"""Property -> its value of states, given the ideal gas's heat capacity and the molar mass."""
