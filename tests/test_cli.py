@@ -261,7 +261,7 @@ def test_saturate_above_the_critical_point_prints_rows_with_their_status(
     assert done.status == 4
     assert done.err == "eosmuster: no model has a saturated state there\n"
     assert re.search(r"^PR +- +- +- +- +- +\[1\]$", done.out, re.MULTILINE)
-    assert "[1] above the model's own critical point (Tc 369.89 K, pc 4.251e+06 Pa)" in done.out
+    assert "[1] above the model's own critical point (Tc 369.89 K, pc 42.51 bar)" in done.out
     assert "at or above the critical point" in done.out  # the reference library
     assert "extrapolation refused" in done.out  # the correlations
 

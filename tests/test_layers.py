@@ -21,7 +21,7 @@ FLOORS = (
     {"__main__", "pytest_plugin"},
     {"cli"},
     {"commands"},
-    {"listing", "progress"},
+    {"listing"},
     {"listing_references"},
     {"api", "inquiry", "combining", "replaying"},
     {"prechecks"},
@@ -34,7 +34,7 @@ FLOORS = (
     {"models"},
     {"components"},
     {"quantities", "paths"},
-    {"errors"},
+    {"errors", "progress"},
 )
 """Rooms, top floor first. A room may import what lies below it; rooms on one floor do not know each other."""
 
@@ -44,7 +44,7 @@ ONLY = {
     "diagnose": {"record", "components", "quantities", "errors"},
     "record": set(),
     "progress": set(),
-    "sources": {"components", "quantities", "paths", "errors"},
+    "sources": {"components", "quantities", "paths", "errors", "progress"},
     "saturation": {"models", "quantities", "errors"},
     "singlephase": {"models", "quantities", "errors"},
     "drifting": {"report", "record", "quantities", "paths", "errors"},

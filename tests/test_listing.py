@@ -82,6 +82,8 @@ def test_quantities() -> None:
     assert listing.positive("1 atm", "pressure", "-p") == 101325.0
     with pytest.raises(InputError, match="-T: '-300 degC' is not above absolute zero"):
         listing.positive("-300 degC", "temperature", "-T")
+    with pytest.raises(InputError, match="-p: '0' is not above zero; a positive pressure"):
+        listing.positive("0", "pressure", "-p")
 
 
 # ---------------------------------------------------------------- answers

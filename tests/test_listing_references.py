@@ -10,7 +10,8 @@ from eosmuster import listing_references as listing
 from eosmuster.components import catalogue, equation_citations, find
 from eosmuster.errors import InputError
 from eosmuster.report.text import cells_of
-from eosmuster.sources import critical, handbook, stated
+from eosmuster.sources import critical, handbook, library_gate, stated
+from eosmuster.sources.bibliography import bibliography
 from eosmuster.sources.contested import contested
 
 TEXT = listing.references_text(100)
@@ -86,11 +87,10 @@ def test_what_is_left_out_has_its_evidence() -> None:
 
 def test_ranges_of_the_library_are_those_of_its_equation() -> None:
     """Cyclopropane's equation is meant to be used from 273 K on, far above the triple point."""
-    from eosmuster.sources import library
 
-    ends = library.limits(find("cyclopropane"))
+    ends = library_gate.limits(find("cyclopropane"))
     assert ends is not None
-    name = f"coolprop {library.version()}"
+    name = f"coolprop {library_gate.version()}"
     about = listing.component_references_text("cyclopropane", 100).partition("boiling temperature\n")[0]
     assert row(about, name)[2] == f"{ends.from_K:.2f}" == "273.00"
 
@@ -102,7 +102,7 @@ def test_every_fluid_can_be_shown_and_every_source_is_cited(name: str) -> None:
     said = " ".join(text.split("\nsources\n")[1].split())
     for about in (*listing.BY_FLUID, listing.CONSTANTS):
         for one in listing.entries(catalogue()[name], about):
-            assert one.citation in handbook.bibliography() or one.kind == "equation"
+            assert one.citation in bibliography() or one.kind == "equation"
             assert one.citation.split(",")[0] in said
     keys = filter(None, catalogue()[name].sources["equation"].split(", "))
     assert all(" ".join(equation_citations()[key].split()) in said for key in keys)

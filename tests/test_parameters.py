@@ -11,7 +11,8 @@ import pytest
 
 from eosmuster.components import catalogue, find
 from eosmuster.paths import references_folder
-from eosmuster.sources.library import limits, saturation
+from eosmuster.sources.library import saturation
+from eosmuster.sources.library_gate import limits
 
 FILES = {"prsv_kappa1.csv": 26, "twu91_bell2018.csv": 116, "jhaveri_youngren.csv": 26}
 

@@ -76,6 +76,7 @@ def _failed(message: str, status: int, debug: bool) -> int:
 def _parser() -> argparse.ArgumentParser:
     parser = _Parser(
         prog="eosmuster",
+        allow_abbrev=False,
         description="Sweep pure components through cubic equations of state, compare with cited references, and "
         "say where each model is inside a stated tolerance.",
         epilog="Exit status: 0 done; 1 gate not met, or drift; 2 bad plan, input or usage; 3 internal failure; "
@@ -85,7 +86,7 @@ def _parser() -> argparse.ArgumentParser:
     commands = parser.add_subparsers(title="commands", required=True, metavar="COMMAND", parser_class=_Parser)
     for name, module in COMMANDS.items():
         command = importlib.import_module(f"eosmuster.commands.{module}")
-        sub = commands.add_parser(name, help=command.HELP)
+        sub = commands.add_parser(name, help=command.HELP, description=f"{command.HELP}.", allow_abbrev=False)
         command.add(sub)
         sub.set_defaults(command=command.run)
     return parser

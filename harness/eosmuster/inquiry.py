@@ -12,12 +12,12 @@ from eosmuster.models.catalogue import CATALOGUE
 from eosmuster.models.model import BoundModel, bind
 from eosmuster.models.records import ModelRecord
 from eosmuster.saturation import solver
-from eosmuster.sources import handbook, library
+from eosmuster.sources import handbook, library, library_gate
 
 _NAN = float("nan")
 
 STATUS_NOTES = {
-    "above_critical": "above the model's own critical point (Tc {tc:.2f} K, pc {pc:.4g} Pa): one phase only",
+    "above_critical": "above the model's own critical point (Tc {tc:.2f} K, pc {pc:.4g} bar): one phase only",
     "no_two_phase": "the model has no two phases here",
     "too_cold": "colder than the model's tabulated curve",
     "invalid": "no value could be computed",
@@ -104,19 +104,19 @@ def _of_model(record: ModelRecord, component: Component, given: float, *, by_pre
 
 def _why(status: str, bound: BoundModel) -> str:
     p = bound.parameters.take(0)
-    return STATUS_NOTES[status].format(tc=float(p.critical_temperature), pc=float(p.critical_pressure))
+    return STATUS_NOTES[status].format(tc=float(p.critical_temperature), pc=float(p.critical_pressure) / 1e5)
 
 
 def _of_library(component: Component, given: float, by_pressure: bool) -> Iterator[Answer]:
-    name = f"{library.LIBRARY} {library.version()}"
+    name = f"{library_gate.LIBRARY} {library_gate.version()}"
     wanted = ["saturation_pressure", "liquid_density", "vapor_density", "enthalpy_of_vaporization"]
     if by_pressure:
         answers = library.at_pressure(component, [given], ["boiling_temperature", *wanted])
     else:
         answers = library.saturation(component, [given], wanted)
     code = int(answers.reason[0])
-    if code != library.ANSWERED:
-        yield Answer(name, "reference", status="refused", note=library.REASONS[code] + _range(component))
+    if code != library_gate.ANSWERED:
+        yield Answer(name, "reference", status="refused", note=library_gate.REASONS[code] + _range(component))
         return
     values = {key: float(v[0]) for key, v in answers.values.items()}
     yield Answer(
@@ -132,7 +132,7 @@ def _of_library(component: Component, given: float, by_pressure: bool) -> Iterat
 
 
 def _range(component: Component) -> str:
-    limits = library.limits(component)
+    limits = library_gate.limits(component)
     return "" if limits is None else f" ({limits.from_K:.2f} to {limits.to_K:.2f} K)"
 
 
@@ -146,8 +146,8 @@ def _of_handbook(component: Component, given: float, by_pressure: bool) -> Itera
             enthalpy = _handbook_value(component, "enthalpy_of_vaporization", temperature)
             yield Answer(c.source, "reference", temperature, pressure, densities, _NAN, enthalpy, status="answered")
         else:
-            low, high = (f"{p:.4g}" for p in c(np.array([c.from_K, c.to_K])))
-            where = f"{low} to {high} Pa" if by_pressure else f"{c.from_K:.2f} to {c.to_K:.2f} K"
+            low, high = (f"{p / 1e5:.4g}" for p in c(np.array([c.from_K, c.to_K])))
+            where = f"{low} to {high} bar" if by_pressure else f"{c.from_K:.2f} to {c.to_K:.2f} K"
             yield Answer(c.source, "reference", status="refused", note=f"extrapolation refused: valid from {where}")
 
 

@@ -34,7 +34,8 @@ def positive(text: str | None, dimension: str, where: str) -> float | None:
         return None
     value = to_si(text, dimension, where)
     if value <= 0.0:
-        raise InputError(f"{where}: {text!r} is not above absolute zero; a positive {dimension} is needed")
+        zero = "absolute zero" if dimension == "temperature" else "zero"
+        raise InputError(f"{where}: {text!r} is not above {zero}; a positive {dimension} is needed")
     return value
 
 

@@ -13,7 +13,8 @@ from typing import Any
 from eosmuster.components import Component, catalogue, equation_citations, find
 from eosmuster.quantities import PROPERTIES
 from eosmuster.report.text import plain_table, some
-from eosmuster.sources import critical, handbook, library, stated
+from eosmuster.sources import critical, handbook, library_gate, stated
+from eosmuster.sources.bibliography import bibliography
 from eosmuster.sources.contested import Contested, contested
 from eosmuster.sources.rows import number_or_none, rows
 
@@ -129,7 +130,7 @@ def _library(component: Component, name: str) -> Iterator[Entry]:
 
 @cache
 def _equation() -> str:
-    return f"{library.LIBRARY} {library.version()}"
+    return f"{library_gate.LIBRARY} {library_gate.version()}"
 
 
 @cache
@@ -233,7 +234,7 @@ def _conflict(component: Component, name: str) -> Contested | None:
 
 
 def _full(citation: str) -> str:
-    return handbook.bibliography().get(citation, citation)
+    return bibliography().get(citation, citation)
 
 
 def _by_property(width: int) -> str:

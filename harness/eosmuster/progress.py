@@ -1,20 +1,25 @@
-"""A progress bar for work that takes longer than two seconds, on a terminal only."""
+"""Who is told how far the work has come, and a bar for work of more than two seconds, on a terminal only."""
 
 from __future__ import annotations
 
 import time
+from collections.abc import Callable
 from types import TracebackType
 from typing import Self, TextIO
+
+Progress = Callable[[str, int, int], None]
+"""Called with what is being done, how much of it is done, and how much there is."""
 
 PATIENCE = 2.0  # seconds
 _WIDTH = 30
 
 
-class Bar:
-    """Shows what is being done on one line of a terminal, and wipes it at the end.
+def silent(_what: str, _done: int, _of: int) -> None:
+    """Report nothing."""
 
-    Called with what is done, how much of it, and of how much; on anything but a terminal it says nothing.
-    """
+
+class Bar:
+    """A `Progress` on one line of a terminal, wiped at the end; on anything but a terminal it says nothing."""
 
     def __init__(self, stream: TextIO) -> None:
         self._stream = stream

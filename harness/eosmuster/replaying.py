@@ -20,13 +20,14 @@ from eosmuster.errors import InputError
 from eosmuster.plan.parts import plan_part, read_part
 from eosmuster.plan.reading import parse_plan
 from eosmuster.plan.schema import Plan
+from eosmuster.progress import Progress, silent
 from eosmuster.quantities import shown
 from eosmuster.record import Record
 from eosmuster.report.folder import View, checked, save, written
 from eosmuster.report.manifest import NAME as MANIFEST
 from eosmuster.report.manifest import reference_hashes
 from eosmuster.report.text import some
-from eosmuster.sweeping.run import Progress, run, silent
+from eosmuster.sweeping.run import run
 
 PLAN_FOLDER = "plan_folder"
 """Key of the manifest's ``volatile`` that says where the plan's file was: its measured files are found from there."""

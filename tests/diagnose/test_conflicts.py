@@ -8,7 +8,7 @@ from eosmuster.diagnose.conflicts import Source, find_conflict
 from eosmuster.plan.reading import parse_plan
 from eosmuster.quantities import SATURATION
 from eosmuster.sources import handbook, library
-from eosmuster.sweeping.series import collect
+from eosmuster.sweeping.saturated import collect
 from eosmuster.sweeping.watching import watch
 
 T = np.linspace(200.0, 300.0, 21)

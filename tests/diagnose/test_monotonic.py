@@ -8,7 +8,7 @@ import pytest
 from eosmuster.components import catalogue
 from eosmuster.diagnose.conflicts import Source
 from eosmuster.diagnose.monotonic import LEAVE_THE_RULE, RISES, turned, turns
-from eosmuster.sources import library
+from eosmuster.sources import library, library_gate
 
 T = np.linspace(250.0, 340.0, 10)
 
@@ -56,7 +56,7 @@ def test_gaps_and_properties_without_a_rule_are_passed_over() -> None:
 
 def library_curve(name: str, about: str, low: float, high: float) -> tuple[np.ndarray, np.ndarray]:
     component = catalogue()[name]
-    ends = library.limits(component)
+    ends = library_gate.limits(component)
     assert ends is not None
     at = np.linspace(max(low, ends.from_K), min(high, ends.to_K * (1.0 - 1e-6)), 60)
     return at, library.saturation(component, at, [about]).values[about]

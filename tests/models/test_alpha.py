@@ -7,51 +7,9 @@ import inspect
 import mpmath as mp
 import numpy as np
 import pytest
+from alpha_formulas import FORMULAS
 
 from eosmuster.models.alpha import ALPHA_FUNCTIONS
-
-
-def soave(tr, m):
-    return (1 + m * (1 - mp.sqrt(tr))) ** 2
-
-
-def stryjek_vera(tr, kappa0, kappa1):
-    return soave(tr, kappa0 + kappa1 * (1 + mp.sqrt(tr)) * (mp.mpf("0.7") - tr))
-
-
-def mathias_copeman(tr, c1, c2, c3):
-    x = 1 - mp.sqrt(tr)
-    return (1 + c1 * x + c2 * x**2 + c3 * x**3) ** 2
-
-
-def twu(tr, L, M, N):
-    return tr ** (N * (M - 1)) * mp.exp(L * (1 - tr ** (M * N)))
-
-
-def twu_pair(tr, omega, L0, M0, N0, L1, M1, N1):
-    return twu(tr, L0, M0, N0) + omega * (twu(tr, L1, M1, N1) - twu(tr, L0, M0, N0))
-
-
-def schmidt_wenzel(tr, omega):
-    w = mp.mpf(omega)
-    m0 = 0.465 + 1.347 * w - 0.528 * w**2 if omega <= 0.3671 else 0.5361 + 0.9593 * w
-    light, heavy = m0 + (5 * tr - 3 * m0 - 1) ** 2 / 70, m0 + 0.71 * (tr - 0.779) ** 2
-    share = min(max((w - 0.4) / 0.15, 0), 1)
-    return soave(tr, (1 - share) * light + share * heavy)
-
-
-NAIVE = {
-    "constant": lambda _tr: mp.mpf(1),
-    "power": lambda tr, n: tr ** (-n),
-    "Soave": soave,
-    "Stryjek-Vera": stryjek_vera,
-    "Mathias-Copeman": mathias_copeman,
-    "Twu": twu,
-    "Twu pair": twu_pair,
-    "Gasem": lambda tr, A, B, C: mp.exp((A + B * tr) * (1 - tr**C)),
-    "Cismondi-Mollerup": lambda tr, k: (3 / (2 + tr)) ** k,
-    "Schmidt-Wenzel": schmidt_wenzel,
-}
 
 # parameters of the size that the catalogue's components have
 PARAMETERS = {
@@ -83,11 +41,11 @@ EPS = np.finfo(float).eps
 
 
 def exact_excess(name, values, tau):
-    return np.array([NAIVE[name](1 - mp.mpf(t), *map(mp.mpf, values)) - 1 for t in np.asarray(tau).tolist()])
+    return np.array([FORMULAS[name](1 - mp.mpf(t), *map(mp.mpf, values)) - 1 for t in np.asarray(tau).tolist()])
 
 
 def test_every_alpha_function_has_a_formula_and_parameters_here():
-    assert list(NAIVE) == list(ALPHA_FUNCTIONS)
+    assert list(FORMULAS) == list(ALPHA_FUNCTIONS)
     assert list(PARAMETERS) == list(ALPHA_FUNCTIONS)
 
 
@@ -128,7 +86,7 @@ def test_log_slope_is_the_derivative(name, values):
     found = ALPHA_FUNCTIONS[name].log_slope(TAU, *values)
     for a, tau in zip(found.tolist(), TAU.tolist(), strict=True):
         arguments = tuple(map(mp.mpf, values))
-        exact = mp.diff(lambda x, args=arguments: mp.log(NAIVE[name](mp.exp(x), *args)), mp.log(1 - mp.mpf(tau)))
+        exact = mp.diff(lambda x, args=arguments: mp.log(FORMULAS[name](mp.exp(x), *args)), mp.log(1 - mp.mpf(tau)))
         assert abs(a - exact) <= mp.mpf("1e-14") * max(1, abs(exact))
 
 
@@ -136,7 +94,7 @@ def test_log_slope_is_the_derivative(name, values):
 def test_log_slope_is_the_derivative_at_the_critical_point(name, values):
     found = float(ALPHA_FUNCTIONS[name].log_slope(np.array(0.0), *values))
     arguments = tuple(map(mp.mpf, values))
-    exact = mp.diff(lambda x: mp.log(NAIVE[name](mp.exp(x), *arguments)), mp.mpf(0))
+    exact = mp.diff(lambda x: mp.log(FORMULAS[name](mp.exp(x), *arguments)), mp.mpf(0))
     assert abs(found - exact) <= mp.mpf("1e-14") * max(1, abs(exact))
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import inspect
 
+import alpha_formulas
 import mpmath as mp
 import numpy as np
 import pytest
@@ -16,42 +17,7 @@ FUNCTIONS = ALPHA_FUNCTIONS | {"Boston-Mathias": BOSTON_MATHIAS}
 REDUCED = np.array([0.3, 0.55, 0.8, 0.97, 1.0, 1.0625, 1.5, 3.0, 6.0])
 TAU = 1.0 - REDUCED
 
-
-def soave(tr, m):
-    return (1 + m * (1 - mp.sqrt(tr))) ** 2
-
-
-def twu(tr, L, M, N):
-    return tr ** (N * (M - 1)) * mp.exp(L * (1 - tr ** (M * N)))
-
-
-def twu_pair(tr, omega, L0, M0, N0, L1, M1, N1):
-    return twu(tr, L0, M0, N0) + omega * (twu(tr, L1, M1, N1) - twu(tr, L0, M0, N0))
-
-
-def mathias_copeman(tr, c1, c2, c3):
-    x = 1 - mp.sqrt(tr)
-    return (1 + c1 * x + c2 * x**2 + c3 * x**3) ** 2
-
-
-def schmidt_wenzel(tr, omega):
-    m0 = 0.465 + 1.347 * omega - 0.528 * omega**2 if omega <= 0.3671 else 0.5361 + 0.9593 * omega
-    light, heavy = m0 + (5 * tr - 3 * m0 - 1) ** 2 / 70, m0 + 0.71 * (tr - 0.779) ** 2
-    share = min(max((omega - 0.4) / 0.15, 0), 1)
-    return soave(tr, (1 - share) * light + share * heavy)
-
-
-FORMULAS = {
-    "constant": lambda _tr: mp.mpf(1),
-    "power": lambda tr, n: tr ** (-n),
-    "Soave": soave,
-    "Stryjek-Vera": lambda tr, k0, k1: soave(tr, k0 + k1 * (1 + mp.sqrt(tr)) * (mp.mpf("0.7") - tr)),
-    "Mathias-Copeman": mathias_copeman,
-    "Twu": twu,
-    "Twu pair": twu_pair,
-    "Gasem": lambda tr, A, B, C: mp.exp((A + B * tr) * (1 - tr**C)),
-    "Cismondi-Mollerup": lambda tr, k: (3 / (2 + tr)) ** k,
-    "Schmidt-Wenzel": schmidt_wenzel,
+FORMULAS = alpha_formulas.FORMULAS | {
     "Boston-Mathias": lambda tr, m: mp.exp(2 * (1 - 1 / (1 + m / 2)) * (1 - tr ** (1 + m / 2))),
 }
 PARAMETERS = {
@@ -108,20 +74,6 @@ def test_agrees_with_the_functions_of_the_hot_path(name, values):
     steep = np.abs(1 + excess) > 1e-3  # the logarithm's slope has no meaning where alpha vanishes
     slope = function.log_slope(TAU, *values)
     np.testing.assert_allclose(first[steep], ((1 + excess) * slope)[steep], rtol=1e-12, atol=1e-15)
-
-
-@EACH
-def test_logarithmic_curvature(name, values):
-    """d2 ln(alpha)/d ln(T)2 below Tc, against the formula's; 1e-12 as it is a difference of two."""
-    below = TAU[REDUCED <= 1.0]
-    parameters = [mp.mpf(v) for v in values]
-    with mp.workdps(60):
-        expected = [
-            float(mp.diff(lambda x: mp.log(FORMULAS[name](mp.exp(x), *parameters)), mp.log(mp.mpf(1 - t)), 2))
-            for t in below.tolist()
-        ]
-    found = FUNCTIONS[name].log_curvature(below, *values)
-    np.testing.assert_allclose(found, expected, rtol=1e-12, atol=1e-13)
 
 
 @EACH

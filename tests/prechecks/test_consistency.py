@@ -11,7 +11,8 @@ import pytest
 from eosmuster.components import catalogue, find
 from eosmuster.models.catalogue import CATALOGUE
 from eosmuster.models.model import BoundModel, bind
-from eosmuster.prechecks.consistency import IDENTITIES, TOLERANCE, battery, isotherm
+from eosmuster.prechecks.consistency import TOLERANCE, battery
+from eosmuster.prechecks.identities import IDENTITIES, isotherm
 from eosmuster.singlephase import solver
 
 

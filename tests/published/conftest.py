@@ -1,4 +1,4 @@
-"""Digits enough for every test of this folder, and the modules that lie beside the frozen truth."""
+"""Digits enough for every test of this folder, and the modules that lie here and beside the frozen truth."""
 
 from __future__ import annotations
 
@@ -8,7 +8,7 @@ from pathlib import Path
 import mpmath as mp
 import pytest
 
-sys.path.insert(0, str(Path(__file__).parents[1] / "truth"))
+sys.path[:0] = [str(Path(__file__).parent), str(Path(__file__).parents[1] / "truth")]
 
 
 @pytest.fixture(autouse=True)

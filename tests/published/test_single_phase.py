@@ -7,41 +7,12 @@ by 1e-4 at most. ``calculated`` values, our own with the examples' constants, ar
 
 from __future__ import annotations
 
-import csv
-from pathlib import Path
-
 import pytest
+from examples import half_a_unit, ids, parameters, rows
 
-from eosmuster.components import Component
-from eosmuster.models.catalogue import CATALOGUE
-from eosmuster.models.model import bind
 from eosmuster.singlephase import solver
 
-FILE = Path(__file__).with_name("worked_examples.csv")
-
-
-def rows():
-    with FILE.open(encoding="utf-8", newline="") as file:
-        table = csv.DictReader(line for line in file if not line.startswith("#"))
-        return [row for row in table if row["quantity"] != "saturation_pressure"]
-
-
-ROWS = rows()
-
-
-def ids(row):
-    return f"{row['source'].split(',')[0]}-{row['source'].split()[-1]}-{row['model']}-{row['quantity']}"
-
-
-def parameters(row):
-    component = Component(
-        "example",
-        critical_temperature=float(row["critical_temperature_K"]),
-        critical_pressure=float(row["critical_pressure_Pa"]),
-        acentric_factor=float(row["acentric_factor"]),
-        cas=row["cas"],
-    )
-    return bind(CATALOGUE[row["model"]], [component]).parameters.take(0)
+ROWS = [row for row in rows() if row["quantity"] != "saturation_pressure"]
 
 
 def value(row):
@@ -53,12 +24,6 @@ def value(row):
     states = solver.at_pressure(p, T, given, phase)
     assert states.status == solver.SOLVED
     return float(states.compressibility_factor if row["quantity"] == "compressibility_factor" else 1 / states.density)
-
-
-def half_a_unit(text):
-    """Half a unit of the last printed digit, relative."""
-    mantissa, _, exponent = text.partition("e")
-    return 0.5 * 10.0 ** (int(exponent or 0) - len(mantissa.partition(".")[2])) / abs(float(text))
 
 
 @pytest.mark.parametrize("row", [row for row in ROWS if row["printed"]], ids=ids)

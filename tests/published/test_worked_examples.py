@@ -11,32 +11,16 @@ the examples' constants.
 
 from __future__ import annotations
 
-import csv
 import math
 from dataclasses import dataclass
-from pathlib import Path
 
 import numpy as np
 import pytest
+from examples import half_a_unit, ids, parameters, rows
 
-from eosmuster.components import Component
-from eosmuster.models.catalogue import CATALOGUE
 from eosmuster.models.critical import critical_point
-from eosmuster.models.model import bind
 from eosmuster.quantities import GAS_CONSTANT
 from eosmuster.saturation import solver
-
-FILE = Path(__file__).with_name("worked_examples.csv")
-
-
-def rows():
-    with FILE.open(encoding="utf-8", newline="") as file:
-        return list(csv.DictReader(line for line in file if not line.startswith("#")))
-
-
-def ids(row):
-    return f"{row['source'].split(',')[0]}-{row['source'].split()[-1]}-{row['model']}-{row['quantity']}"
-
 
 ROWS = rows()
 
@@ -134,17 +118,6 @@ def with_the_examples_constants(row):
     return Cubic(T, omega_a * (R * tc) ** 2 / pc * alpha(row, T / tc), omega_b * R * tc / pc, s, m, R)
 
 
-def parameters(row):
-    component = Component(
-        "example",
-        critical_temperature=float(row["critical_temperature_K"]),
-        critical_pressure=float(row["critical_pressure_Pa"]),
-        acentric_factor=float(row["acentric_factor"]),
-        cas=row["cas"],
-    )
-    return bind(CATALOGUE[row["model"]], [component]).parameters.take(0)
-
-
 def of_the_package(row):
     """a(T) and b of the package's model, to be solved by the root finder above."""
     p, T = parameters(row), float(row["temperature_K"])
@@ -152,13 +125,6 @@ def of_the_package(row):
     excess = p.alpha.excess(1 - T / p.critical_temperature, *p.alpha_parameters)
     a = critical.omega_a * GAS_CONSTANT * p.critical_temperature * scale * (1 + excess)
     return Cubic(T, float(a), float(critical.omega_b * scale), float(p.s[0]), float(p.m[0]), GAS_CONSTANT)
-
-
-def half_a_unit(text):
-    """Half a unit of the last printed digit, relative."""
-    mantissa, _, exponent = text.partition("e")
-    digits = len(mantissa.partition(".")[2])
-    return 0.5 * 10.0 ** (int(exponent or 0) - digits) / abs(float(text))
 
 
 def printed_tolerance(row):

@@ -49,7 +49,7 @@ def test_says_where_the_best_candidate_is_inside_of_the_fluids_it_does_not_hold(
 def test_nothing_held_is_said_with_what_comes_nearest(block, record_of):
     verdict = np.array([[1, 1, 1, 1], [0, 1, 1, 1]], dtype=np.int8)
     record = record_of([replace(block(states=4), verdict=verdict)])
-    assert "  no candidate holds it for any of 1 fluid; nearest: SRK, 25 % of its points inside" in lines_of(record)
+    assert "  no candidate holds it for 1 fluid; nearest: SRK, 25 % of its points inside" in lines_of(record)
 
 
 @pytest.mark.parametrize("width", [40, 72, 100])

@@ -9,7 +9,7 @@ import pytest
 
 from eosmuster.components import catalogue
 from eosmuster.paths import references_folder
-from eosmuster.sources import handbook
+from eosmuster.sources import handbook, library_gate
 from eosmuster.sources.contested import FILE, contested
 
 NOT_CONTESTED = ("n-Propane", "Argon", "R134a", "Methane", "Nitrogen", "Benzene")
@@ -22,13 +22,12 @@ def rows() -> list[dict[str, str]]:
 
 def test_the_generator_writes_the_committed_rows(monkeypatch: pytest.MonkeyPatch) -> None:
     """For every fluid of the table, and for some that must not be in it; the library's version is part of a row."""
-    from eosmuster.sources import library
 
     monkeypatch.syspath_prepend(str(references_folder() / "generators"))
     generator = importlib.import_module("conflicts")
     asked = [catalogue()[name] for name in dict.fromkeys([*(r["component"] for r in rows()), *NOT_CONTESTED])]
     again = list(generator.conflict_rows(asked))
-    if {r["source"] for r in rows()} == {f"coolprop {library.version()}"}:
+    if {r["source"] for r in rows()} == {f"coolprop {library_gate.version()}"}:
         assert again == rows()
     else:
         assert {r["component"] for r in again} <= set(catalogue())

@@ -16,6 +16,7 @@ import pytest
 
 from eosmuster.errors import InputError
 from eosmuster.sources import handbook
+from eosmuster.sources.cited import Correlation
 from eosmuster.sources.correlations import FORMS
 from eosmuster.sources.inversion import invert
 
@@ -126,7 +127,7 @@ def test_slopes_agree_with_the_independent_implementation(form: str) -> None:
 
 
 @pytest.mark.parametrize("c", PRESSURES[::7], ids=lambda c: f"{c.component}-{c.source}")
-def test_inverse_is_within_rounding_over_the_whole_range(c: handbook.Correlation) -> None:
+def test_inverse_is_within_rounding_over_the_whole_range(c: Correlation) -> None:
     T = np.linspace(c.from_K, c.to_K, 50)
     # p is exact to about 1e-14, and d ln p/d ln T is at least 5: no more than 1e-13 in T
     np.testing.assert_allclose(c.temperatures_at(c(T)), T, rtol=1e-13)

@@ -12,7 +12,7 @@ from chemicals import critical as transcription
 
 from eosmuster.components import catalogue
 from eosmuster.paths import references_folder
-from eosmuster.sources import handbook
+from eosmuster.sources.bibliography import bibliography
 from eosmuster.sources.critical import counts, critical_constants
 
 FOLDER = references_folder() / "critical_constants"
@@ -56,7 +56,7 @@ def test_no_row_of_our_fluids_is_missing() -> None:
 
 def test_every_row_is_cited_and_named() -> None:
     for r in rows():
-        assert r["source"] in handbook.bibliography(), r
+        assert r["source"] in bibliography(), r
         assert catalogue()[r["component"]].cas == r["cas"], r
         assert r["excluded"] in {"yes", "no"}
         assert len(r["note"]) > 20 or r["excluded"] == "no"

@@ -22,6 +22,8 @@ from eosmuster.paths import references_folder
 from eosmuster.quantities import PROPERTIES
 from eosmuster.sources import handbook
 from eosmuster.sources import rows as reading
+from eosmuster.sources.bibliography import bibliography
+from eosmuster.sources.cited import Correlation
 
 Floats = NDArray[np.float64]
 FILES = sorted([*handbook.CORRELATION_FILES.values(), *handbook.TABLE_FILES])
@@ -32,7 +34,7 @@ def rows(file: str) -> list[dict[str, str]]:
         return list(csv.DictReader(stream))
 
 
-def every_correlation() -> Iterator[handbook.Correlation]:
+def every_correlation() -> Iterator[Correlation]:
     for name in handbook.CORRELATION_FILES:
         for cas in sorted({r["cas"] for r in rows(handbook.CORRELATION_FILES[name])}):
             yield from handbook.correlations(cas, name, include_excluded=True)
@@ -51,7 +53,7 @@ def test_no_table_is_overlooked() -> None:
 
 @pytest.mark.parametrize("file", FILES)
 def test_every_row_cites_a_source_of_the_bibliography(file: str) -> None:
-    uncited = [r for r in rows(file) if r["source"] not in handbook.bibliography()]
+    uncited = [r for r in rows(file) if r["source"] not in bibliography()]
     assert not uncited
 
 
@@ -64,14 +66,14 @@ def test_bibliography_is_complete_and_says_where() -> None:
     text = (references_folder() / "bibliography.bib").read_text(encoding="utf-8")
     keys = [line.split("{")[1].rstrip(",") for line in text.splitlines() if line.startswith("@")]
     assert len(keys) == len(set(keys)) > 5
-    assert list(handbook.bibliography()) == keys
-    for key, reference in handbook.bibliography().items():
+    assert list(bibliography()) == keys
+    for key, reference in bibliography().items():
         assert any(str(year) in reference for year in range(1970, 2030)), key
         assert not set("{}\\\n") & set(reference), key
 
 
 def test_bibliography_line() -> None:
-    assert handbook.bibliography()["mcgarry-1983"] == (
+    assert bibliography()["mcgarry-1983"] == (
         "J. McGarry: Correlation and prediction of the vapor pressures of pure liquids over large pressure "
         "ranges. Industrial & Engineering Chemistry Process Design and Development 22 (1983) 313–322. "
         "doi:10.1021/i200021a023"
@@ -181,7 +183,7 @@ def test_spin_isomers_do_not_mix() -> None:
 
 
 @pytest.mark.parametrize("c", ALL, ids=lambda c: f"{c.component}-{c.source}")
-def test_both_ends_count_and_nothing_beyond(c: handbook.Correlation) -> None:
+def test_both_ends_count_and_nothing_beyond(c: Correlation) -> None:
     below, above = math.nextafter(c.from_K, 0.0), math.nextafter(c.to_K, math.inf)
     values = c([below, c.from_K, 0.5 * (c.from_K + c.to_K), c.to_K, above])
     assert np.isnan(values).tolist() == [True, False, False, False, True]
@@ -309,7 +311,7 @@ BANDS = {
 }
 
 
-def sampled(c: handbook.Correlation) -> Floats:
+def sampled(c: Correlation) -> Floats:
     state_window = {"enthalpy_of_vaporization": 0.95}.get(c.property, 0.99)
     critical = critical_temperature(c.cas)
     return np.linspace(max(c.from_K, 0.45 * critical), min(c.to_K, state_window * critical), 9)
@@ -398,7 +400,8 @@ def test_a_damaged_row_is_named(damaged: Callable[[str, str, str], None], old: s
 
 def test_reading_needs_no_heavy_library() -> None:
     code = (
-        "import sys; from eosmuster.sources import handbook as h; h.counts(); h.bibliography(); "
+        "import sys; from eosmuster.sources import bibliography, handbook; "
+        "handbook.counts(); bibliography.bibliography(); "
         "print(sorted({'CoolProp', 'pandas', 'scipy', 'chemicals'} & set(sys.modules)))"
     )
     done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)

@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 from eosmuster.components import Component, catalogue, find
 from eosmuster.errors import InputError
 from eosmuster.quantities import SINGLE_PHASE
-from eosmuster.sources import backend, library
+from eosmuster.sources import backend, library, library_gate
 from eosmuster.sources.library_gate import (
     ANSWERED,
     BELOW_RANGE,
@@ -225,7 +225,7 @@ def test_dilute_gases_follow_their_second_virial_coefficient() -> None:
 @pytest.mark.parametrize("name", catalogue())
 def test_both_phases_meet_on_the_saturation_line(name: str) -> None:
     component = catalogue()[name]
-    within = library.limits(component)
+    within = library_gate.limits(component)
     assert within is not None
     T = np.linspace(max(within.from_K, 0.5 * within.to_K), 0.98 * within.to_K, 6)
     wanted = ["saturation_pressure", "liquid_density", "vapor_density", "liquid_heat_capacity", "vapor_heat_capacity"]
@@ -253,7 +253,7 @@ def test_both_phases_meet_on_the_saturation_line(name: str) -> None:
 @pytest.mark.parametrize("name", catalogue())
 def test_every_fluid_is_answered_wherever_it_is_fluid(name: str) -> None:
     component = catalogue()[name]
-    within, ends = library.limits(component), reach(component)
+    within, ends = library_gate.limits(component), reach(component)
     assert within is not None
     assert ends is not None
     Tc, pc = ends.own_critical_K, backend.state(name).p_critical()

@@ -13,11 +13,12 @@ import pytest
 from eosmuster.components import FAMILIES, Component, catalogue, equation_citations, find
 from eosmuster.paths import references_folder
 from eosmuster.quantities import PROPERTIES, SATURATION, SINGLE_PHASE
-from eosmuster.sources import handbook, library, stated
+from eosmuster.sources import cited_uncertainty, handbook, library, library_gate, stated
+from eosmuster.sources.bibliography import bibliography
 from eosmuster.sources.library_gate import reach
 from eosmuster.sources.library_states import phase_boundary
 from eosmuster.sources.stated import ASSUMED, ROUNDING, STATED, UNKNOWN
-from eosmuster.sources.uncertainty import library_uncertainty, pressure_borders
+from eosmuster.sources.uncertainty import library_uncertainty, pressure_borders, uncertainty_borders, uncertainty_pct
 
 Rows = list[dict[str, str]]
 UNKNOWN_ALWAYS = {"residual_enthalpy", "residual_internal_energy", "residual_entropy", "joule_thomson_coefficient"}
@@ -67,7 +68,7 @@ def test_every_statement_cites_the_equation_of_its_fluid() -> None:
 
 
 def test_every_handbook_statement_is_in_the_bibliography() -> None:
-    assert {r["source"] for r in rows("handbook.csv")} <= set(handbook.bibliography())
+    assert {r["source"] for r in rows("handbook.csv")} <= set(bibliography())
 
 
 def test_what_is_remembered_says_so_and_claims_little() -> None:
@@ -149,12 +150,12 @@ def test_stated_and_assumed_are_told_apart() -> None:
 @pytest.mark.parametrize("name", SATURATION)
 def test_every_fluid_has_an_uncertainty_wherever_the_library_answers(name: str) -> None:
     for fluid in catalogue().values():
-        within = library.limits(fluid)
+        within = library_gate.limits(fluid)
         assert within is not None
         # between the ends: at the very ends the boiling temperature has no slope, and so no uncertainty
         T = np.linspace(within.from_K, within.to_K, 5)[1:-1]
         values, codes = library_uncertainty(fluid, name, T)
-        answered = library.saturation(fluid, T, ["saturation_pressure"]).reason == library.ANSWERED
+        answered = library.saturation(fluid, T, ["saturation_pressure"]).reason == library_gate.ANSWERED
         assert np.isfinite(values[answered]).all(), fluid.name
         assert set(codes[answered]) <= {STATED, ASSUMED}, fluid.name
 
@@ -162,25 +163,25 @@ def test_every_fluid_has_an_uncertainty_wherever_the_library_answers(name: str) 
 def test_the_default_behaviour_is_stated_only() -> None:
     T = np.linspace(100.0, 360.0, 27)
     for name in SATURATION:
-        plain = library.uncertainty_pct(PROPANE, name, T)
+        plain = uncertainty_pct(PROPANE, name, T)
         _, codes = library_uncertainty(PROPANE, name, T)
         np.testing.assert_array_equal(np.isfinite(plain), codes == STATED)
-        filled = library.uncertainty_pct(PROPANE, name, T, assumed=True)
+        filled = uncertainty_pct(PROPANE, name, T, assumed=True)
         np.testing.assert_array_equal(filled, library_uncertainty(PROPANE, name, T)[0])
 
 
 def test_borders_hold_every_change() -> None:
     for name in ("saturation_pressure", "liquid_density", "vapor_density"):
-        borders = library.uncertainty_borders(PROPANE, name, assumed=True)
+        borders = uncertainty_borders(PROPANE, name, assumed=True)
         T = np.linspace(90.0, 369.0, 2791)
-        values = library.uncertainty_pct(PROPANE, name, T, assumed=True)
+        values = uncertainty_pct(PROPANE, name, T, assumed=True)
         changed = np.flatnonzero(np.diff(values) != 0.0)
         assert changed.size > 0
         for i in changed:
             assert any(T[i] <= border <= T[i + 1] for border in borders), (name, T[i])
     # the 0.02 % above 180 K hide every class border of the vapour pressure
-    assert set(library.uncertainty_borders(PROPANE, "boiling_temperature", assumed=True)) == {180.0, 369.89}
-    assert set(library.uncertainty_borders(PROPANE, "saturation_pressure")) == {180.0, 369.89}
+    assert set(uncertainty_borders(PROPANE, "boiling_temperature", assumed=True)) == {180.0, 369.89}
+    assert set(uncertainty_borders(PROPANE, "saturation_pressure")) == {180.0, 369.89}
 
 
 def test_coverage_factors_scale_both_origins() -> None:
@@ -195,7 +196,7 @@ def test_an_own_component_has_none() -> None:
         values, codes = library_uncertainty(own, name, [300.0], pressure=1e6)
         assert np.isnan(values).all(), name
         assert codes.tolist() == [UNKNOWN], name
-        assert library.uncertainty_borders(own, name, assumed=True) == ()
+        assert uncertainty_borders(own, name, assumed=True) == ()
         assert pressure_borders(own, name) == ()
 
 
@@ -205,27 +206,25 @@ def test_an_own_component_has_none() -> None:
 def test_density_by_temperature_and_pressure() -> None:
     # Setzmann and Wagner, J. Phys. Chem. Ref. Data 20 (1991) 1061: 0.03 % below 12 MPa and 350 K, to 0.15 % beyond
     methane, p = find("methane"), np.array([1e5, 1.1e7, 1.2e7, 1.3e7, 6e7])
-    found = library.uncertainty_pct(methane, "density", 300.0, pressure=p)
+    found = uncertainty_pct(methane, "density", 300.0, pressure=p)
     np.testing.assert_array_equal(found, [0.03, 0.03, 0.15, 0.15, np.nan])
-    grid = library.uncertainty_pct(methane, "density", [[300.0], [351.0]], pressure=p[:2])
+    grid = uncertainty_pct(methane, "density", [[300.0], [351.0]], pressure=p[:2])
     np.testing.assert_array_equal(grid, [[0.03, 0.03], [np.nan, np.nan]])
     # Tegeler, Span and Wagner, J. Phys. Chem. Ref. Data 28 (1999) 779: argon 0.02 %, 0.03 %, elsewhere 0.2 %
     T, p = np.array([300.0, 300.0, 300.0, 600.0]), np.array([1e6, 2e7, 5e7, 1e6])
-    np.testing.assert_array_equal(
-        library.uncertainty_pct(find("argon"), "density", T, pressure=p), [0.02, 0.03, 0.2, 0.2]
-    )
+    np.testing.assert_array_equal(uncertainty_pct(find("argon"), "density", T, pressure=p), [0.02, 0.03, 0.2, 0.2])
 
 
 def test_a_statement_may_hold_for_one_phase() -> None:
     # Zhou and Lemmon, Int. J. Thermophys. 37 (2016): R245ca, 0.1 % in the liquid from 243 K to 373 K; boils at 298 K
     r245ca = find("R245ca")
-    found = library.uncertainty_pct(r245ca, "density", 350.0, pressure=[1e5, 5e6])
+    found = uncertainty_pct(r245ca, "density", 350.0, pressure=[1e5, 5e6])
     np.testing.assert_array_equal(found, [np.nan, 0.1])
     # water's vapor and its liquid, remembered
-    found = library.uncertainty_pct(find("water"), "isobaric_heat_capacity", 400.0, pressure=[1e5, 5e6])
+    found = uncertainty_pct(find("water"), "isobaric_heat_capacity", 400.0, pressure=[1e5, 5e6])
     np.testing.assert_array_equal(found, [0.5, 0.2])
     assert np.isnan(
-        library.uncertainty_pct(find("water"), "isobaric_heat_capacity", 400.0, pressure=[1e5, 5e6], remembered=False)
+        uncertainty_pct(find("water"), "isobaric_heat_capacity", 400.0, pressure=[1e5, 5e6], remembered=False)
     ).all()
 
 
@@ -233,9 +232,9 @@ def test_next_to_the_critical_point_nothing_stated_counts() -> None:
     # carbon dioxide: 304.1282 K, 7.3773 MPa; 0.05 % stated to 30 MPa and 523 K
     co2 = find("carbon dioxide")
     T, p = np.array([285.0, 300.0, 300.0, 330.0, 336.0]), np.array([9e6, 3e6, 9e6, 9e6, 9e6])
-    found = library.uncertainty_pct(co2, "density", T, pressure=p)
+    found = uncertainty_pct(co2, "density", T, pressure=p)
     np.testing.assert_array_equal(found, [0.05, 0.05, np.nan, np.nan, 0.05])
-    assumed = library.uncertainty_pct(co2, "density", T, pressure=p, assumed=True)
+    assumed = uncertainty_pct(co2, "density", T, pressure=p, assumed=True)
     default = stated.defaults("acid gas", "density")[2].uncertainty_pct
     np.testing.assert_array_equal(assumed, [0.05, 0.05, default, default, 0.05])
 
@@ -257,12 +256,12 @@ def test_single_phase_uncertainties_are_known_wherever_something_is_assumed(name
 
 def test_properties_that_follow_the_density() -> None:
     T, p = np.array([300.0, 300.0, 345.0]), np.array([1e5, 5e6, 5e6])
-    density = library.uncertainty_pct(PROPANE, "density", T, pressure=p)
-    np.testing.assert_array_equal(library.uncertainty_pct(PROPANE, "compressibility_factor", T, pressure=p), density)
+    density = uncertainty_pct(PROPANE, "density", T, pressure=p)
+    np.testing.assert_array_equal(uncertainty_pct(PROPANE, "compressibility_factor", T, pressure=p), density)
     # a liquid's fugacity is reckoned from its vapour pressure: 0.02 % more
-    fugacity = library.uncertainty_pct(PROPANE, "fugacity_coefficient", T, pressure=p)
+    fugacity = uncertainty_pct(PROPANE, "fugacity_coefficient", T, pressure=p)
     np.testing.assert_allclose(fugacity - density, [0.0, 0.02, 0.02], atol=1e-15)
-    twice = library.uncertainty_pct(PROPANE, "fugacity_coefficient", T, 4.0, pressure=p)
+    twice = uncertainty_pct(PROPANE, "fugacity_coefficient", T, 4.0, pressure=p)
     np.testing.assert_allclose(twice, 2.0 * fugacity)
 
 
@@ -277,10 +276,10 @@ def test_saturated_phases_follow_their_single_phase() -> None:
         assert codes.tolist() == [STATED, ASSUMED, UNKNOWN]
     # water: each phase its own, remembered; whatever is next to the critical point is not stated
     water = find("water")
-    assert float(library.uncertainty_pct(water, "liquid_heat_capacity", 400.0)) == 0.2
-    assert float(library.uncertainty_pct(water, "vapor_heat_capacity", 400.0)) == 0.5
+    assert float(uncertainty_pct(water, "liquid_heat_capacity", 400.0)) == 0.2
+    assert float(uncertainty_pct(water, "vapor_heat_capacity", 400.0)) == 0.5
     enthalpy, entropy = (
-        library.uncertainty_pct(water, f"{name}_of_vaporization", T, assumed=True) for name in ("enthalpy", "entropy")
+        uncertainty_pct(water, f"{name}_of_vaporization", T, assumed=True) for name in ("enthalpy", "entropy")
     )
     np.testing.assert_array_equal(entropy, enthalpy)
 
@@ -292,10 +291,10 @@ def test_single_phase_borders_hold_every_change(fluid: str, name: str) -> None:
     ends = reach(component)
     assert ends is not None
     for assumed in (False, True):
-        borders = library.uncertainty_borders(component, name, assumed=assumed)
+        borders = uncertainty_borders(component, name, assumed=assumed)
         T = np.linspace(ends.critical_K[0] * 0.5, min(ends.highest_K, 2.0 * ends.critical_K[0]), 400)
         for p in (1e5, 3e6, 2e7):
-            values = library.uncertainty_pct(component, name, T, pressure=p, assumed=assumed)
+            values = uncertainty_pct(component, name, T, pressure=p, assumed=assumed)
             changed = np.flatnonzero(np.diff(np.nan_to_num(values, nan=-1.0)) != 0.0)
             boundary = phase_boundary(component, T)
             for i in changed:
@@ -305,14 +304,14 @@ def test_single_phase_borders_hold_every_change(fluid: str, name: str) -> None:
     borders = pressure_borders(component, name)
     p = np.geomspace(1e5, 0.99 * ends.highest_Pa, 300)
     for t in (0.8, 0.98, 1.5):
-        values = library.uncertainty_pct(component, name, t * ends.critical_K[0], pressure=p)
+        values = uncertainty_pct(component, name, t * ends.critical_K[0], pressure=p)
         saturated = float(phase_boundary(component, t * ends.critical_K[0]))
         for i in np.flatnonzero(np.diff(np.nan_to_num(values, nan=-1.0)) != 0.0):
             assert any(p[i] <= border <= p[i + 1] for border in (*borders, saturated)), (t, p[i])
 
 
 def test_borders_of_what_follows() -> None:
-    borders = library.uncertainty_borders
+    borders = uncertainty_borders
     for name, leader in stated.STAND_INS.items():
         assert set(borders(PROPANE, leader, assumed=True)) <= set(borders(PROPANE, name, assumed=True)), name
     assert pressure_borders(PROPANE, "saturation_pressure") == ()
@@ -325,18 +324,18 @@ def test_borders_of_what_follows() -> None:
 def test_a_correlation_has_the_default_of_its_class() -> None:
     [first, *_] = handbook.correlations(PROPANE.cas, "saturation_pressure")
     T = np.array([first.from_K - 1.0, 300.0])
-    values, codes = handbook.uncertainty_pct(first, T)
+    values, codes = cited_uncertainty.uncertainty_pct(first, T)
     default = stated.defaults("n-alkane", "saturation_pressure")[-1].uncertainty_pct
     np.testing.assert_array_equal(values, [np.nan, default])
     assert codes.tolist() == [UNKNOWN, ASSUMED]
-    assert np.isnan(handbook.uncertainty_pct(first, T, assumed=False)[0]).all()
+    assert np.isnan(cited_uncertainty.uncertainty_pct(first, T, assumed=False)[0]).all()
 
 
 def test_read_backwards_it_is_propagated() -> None:
     [first, *_] = handbook.correlations(PROPANE.cas, "saturation_pressure")
     T = 231.0
-    forwards = float(handbook.uncertainty_pct(first, T)[0])
-    backwards = float(handbook.uncertainty_pct(first, T, name="boiling_temperature")[0])
+    forwards = float(cited_uncertainty.uncertainty_pct(first, T)[0])
+    backwards = float(cited_uncertainty.uncertainty_pct(first, T, name="boiling_temperature")[0])
     # by a difference quotient of the correlation itself; 1e-6: second order in the step of 0.01 K
     steepness = math.log(float(first(T + 0.01) / first(T - 0.01))) / math.log((T + 0.01) / (T - 0.01))
     assert backwards == pytest.approx(forwards / steepness, rel=1e-6)
@@ -347,10 +346,10 @@ def test_tabulated_values_carry_at_least_their_last_digit() -> None:
         for cas in sorted({c.cas for c in catalogue().values() if c.cas}):
             for table in handbook.tables(cas, name, include_excluded=True):
                 floor = 100.0 * 2.0 * 0.5 * table.last_digit / math.sqrt(3.0) / table.values
-                values, codes = handbook.uncertainty_pct(table, table.temperature)
+                values, codes = cited_uncertainty.uncertainty_pct(table, table.temperature)
                 assert (values >= floor * (1.0 - 1e-12)).all(), table
                 assert set(codes) <= {STATED, ASSUMED, ROUNDING}
-                alone, origin = handbook.uncertainty_pct(table, table.temperature, assumed=False)
+                alone, origin = cited_uncertainty.uncertainty_pct(table, table.temperature, assumed=False)
                 assert set(origin) <= {STATED, ROUNDING}
                 assert (alone <= values).all()
 
@@ -358,7 +357,7 @@ def test_tabulated_values_carry_at_least_their_last_digit() -> None:
 def test_a_boiling_point_printed_to_a_tenth_of_a_degree() -> None:
     # 1-butene: -6.3 degC in the CRC Handbook, so +- 0.05 K, and u = 0.05 K/sqrt(3)
     [table] = handbook.tables("106-98-9", "boiling_temperature")
-    values, codes = handbook.uncertainty_pct(table, [266.85, 266.86], assumed=False)
+    values, codes = cited_uncertainty.uncertainty_pct(table, [266.85, 266.86], assumed=False)
     assert values[0] == pytest.approx(100.0 * 2.0 * 0.05 / math.sqrt(3.0) / 266.85, rel=1e-12)
     assert np.isnan(values[1])
     assert codes.tolist() == [ROUNDING, UNKNOWN]
@@ -368,15 +367,15 @@ def test_what_a_handbook_states_comes_first() -> None:
     # Wagner and Pruss, J. Phys. Chem. Ref. Data 31 (2002) 387: 0.025 % in psat
     first, second = handbook.tables("7732-18-5", "saturation_pressure")
     assert (first.citation, second.citation) == ("iapws-r6-95", "iapws-sr1-86")
-    values, codes = handbook.uncertainty_pct(first, first.temperature)
+    values, codes = cited_uncertainty.uncertainty_pct(first, first.temperature)
     assert values[:2].tolist() == [0.025, 0.025]
     assert codes.tolist() == [STATED, STATED, ASSUMED]  # it is stated to 614.74 K only; the last is at 625 K
-    assert ASSUMED in handbook.uncertainty_pct(second, second.temperature)[1]
+    assert ASSUMED in cited_uncertainty.uncertainty_pct(second, second.temperature)[1]
 
 
 def test_borders_of_a_correlation_lie_within_its_range() -> None:
     for c in handbook.correlations(PROPANE.cas, "saturation_pressure"):
-        borders = handbook.uncertainty_borders(c)
+        borders = cited_uncertainty.uncertainty_borders(c)
         assert all(c.from_K < T < c.to_K for T in borders)
-        assert handbook.uncertainty_borders(c, assumed=False) == ()
-    assert handbook.uncertainty_borders(handbook.tables(PROPANE.cas, "saturation_pressure")[0]) == ()
+        assert cited_uncertainty.uncertainty_borders(c, assumed=False) == ()
+    assert cited_uncertainty.uncertainty_borders(handbook.tables(PROPANE.cas, "saturation_pressure")[0]) == ()

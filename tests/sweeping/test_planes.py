@@ -187,7 +187,8 @@ def test_a_component_of_the_plans_own_has_no_single_phase_reference(swept: Swept
     source = "invented"
     """).record
     assert {b.component for b in record.blocks} == {"n-Propane"}
-    assert ("cut", "no reference for its single-phase states but the library's equations") in record.left_out
+    why = "no reference for its single-phase states: neither the library's equations nor measured densities"
+    assert ("cut", why) in record.left_out
 
 
 def test_saturated_and_single_phase_states_live_in_one_plan(swept: Swept) -> None:

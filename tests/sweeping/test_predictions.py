@@ -13,7 +13,7 @@ from eosmuster.saturation import solver
 from eosmuster.singlephase import solver as single_phase
 from eosmuster.sources.library_states import ideal_heat_capacity
 from eosmuster.sweeping.predictions import IdealGas, Predictions, States, predict
-from eosmuster.sweeping.series import collect
+from eosmuster.sweeping.saturated import collect
 
 PLAN = """
 components = ["propane", "water", "helium"]

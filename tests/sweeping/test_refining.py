@@ -18,7 +18,8 @@ import eosmuster as em
 from eosmuster import components
 from eosmuster.compare.verdicts import INSIDE
 from eosmuster.record import WINDOW_ENDS
-from eosmuster.sources import handbook, library
+from eosmuster.sources import handbook, library, library_gate
+from eosmuster.sources.uncertainty import uncertainty_borders, uncertainty_pct
 
 Floats = NDArray[np.float64]
 KEY = ["component", "candidate", "property", "reference_source"]
@@ -53,7 +54,7 @@ def acceptance(component: str, name: str, source: str, temperature: Floats) -> F
     limit = design_limit(component, name, temperature)
     if source != "coolprop":
         return limit
-    uncertainty = library.uncertainty_pct(components.catalogue()[component], name, temperature, remembered=False)
+    uncertainty = uncertainty_pct(components.catalogue()[component], name, temperature, remembered=False)
     return limit - np.where(np.isnan(uncertainty), 0.0, uncertainty)
 
 
@@ -231,7 +232,7 @@ def test_a_window_starts_at_the_triple_point_of_the_library(swept: Swept) -> Non
     text = WIDE_LIMIT.replace('"propane"', '"carbon dioxide"')
     found = windows_of(swept, f"{text}[states]\ntemperature = [200.0, 230.0, 260.0]\n")
     [(low, _, from_end, _)] = found["PR", "coolprop"]
-    assert (low, from_end) == (library.limits(components.find("CO2")).from_K, "reference_limit")
+    assert (low, from_end) == (library_gate.limits(components.find("CO2")).from_K, "reference_limit")
 
 
 def test_the_border_of_a_stated_uncertainty_can_end_a_window(swept: Swept) -> None:
@@ -246,7 +247,7 @@ def test_the_border_of_a_stated_uncertainty_can_end_a_window(swept: Swept) -> No
     use = ["coolprop"]
     [tolerance]
     """
-    [border] = [t for t in library.uncertainty_borders(components.find("argon"), "liquid_density") if t > 100.0]
+    [border] = [t for t in uncertainty_borders(components.find("argon"), "liquid_density") if t > 100.0]
     argon = components.find("argon")
     candidate = em.saturate("argon", "tc-PR-2018", temperature=border).liquid_density
     at_border = library.saturation(argon, [border], ["liquid_density"]).values["liquid_density"][0]

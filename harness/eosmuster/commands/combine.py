@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import argparse
 
+from eosmuster.commands.outcome import add_results_options, conclude, views_asked_for
 from eosmuster.errors import InputError
 
 HELP = "put the parts of a run together (sweep --part): the same results as of one run"
@@ -13,16 +14,7 @@ def add(parser: argparse.ArgumentParser) -> None:
     """Add the options."""
     parser.add_argument("parts", nargs="+", metavar="PART_DIR", help="the results folders of all parts, in any order")
     parser.add_argument("--out", metavar="DIR", help="results folder (default: eosmuster-results/<plan name>)")
-    parser.add_argument("--gate", action="store_true", help="exit with 1 if a verdict of the plan's [gate] occurs")
-    parser.add_argument(
-        "--points", choices=("all", "none"), default="all", help="write points.csv, or leave it out (default: all)"
-    )
-    parser.add_argument(
-        "--dossier", choices=("yes", "no"), default="yes", help="write dossier.html, or leave it out (default: yes)"
-    )
-    parser.add_argument(
-        "--workbook", action="store_true", help="write results.xlsx too (pip install 'eosmuster[workbook]')"
-    )
+    add_results_options(parser)
 
 
 def run(options: argparse.Namespace) -> int:
@@ -31,7 +23,6 @@ def run(options: argparse.Namespace) -> int:
     from pathlib import Path
 
     from eosmuster.combining import combine
-    from eosmuster.commands.outcome import conclude
     from eosmuster.report.folder import checked, save
 
     started = datetime.now(UTC)
@@ -42,6 +33,5 @@ def run(options: argparse.Namespace) -> int:
     for part in options.parts:
         if Path(part).resolve() == target:
             raise InputError(f"--out {target} is one of the parts, which stay as they are; choose another")
-    asked = {"points": options.points == "all", "dossier": options.dossier == "yes", "workbook": options.workbook}
-    folder = save(record, target, **asked, overwrite=True, started=started)
+    folder = save(record, target, **views_asked_for(options), overwrite=True, started=started)
     return conclude(plan, record, folder, gate=options.gate)

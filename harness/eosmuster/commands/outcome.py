@@ -1,7 +1,8 @@
-"""How a run ends, whoever ran it: what is shown, what the gate says, and the exit status."""
+"""How a run ends, whoever ran it: what is written and shown, what the gate says, and the exit status."""
 
 from __future__ import annotations
 
+import argparse
 import sys
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -11,6 +12,25 @@ from eosmuster.commands.exits import GATE_NOT_MET, NOTHING_JUDGED, complain, sho
 if TYPE_CHECKING:
     from eosmuster.plan.schema import Plan
     from eosmuster.record import Record
+
+
+def add_results_options(parser: argparse.ArgumentParser) -> None:
+    """Add the options of everything that ends with a results folder: the gate, and what is written."""
+    parser.add_argument("--gate", action="store_true", help="exit with 1 if a verdict of the plan's [gate] occurs")
+    parser.add_argument(
+        "--points", choices=("all", "none"), default="all", help="write points.csv, or leave it out (default: all)"
+    )
+    parser.add_argument(
+        "--dossier", choices=("yes", "no"), default="yes", help="write dossier.html, or leave it out (default: yes)"
+    )
+    parser.add_argument(
+        "--workbook", action="store_true", help="write results.xlsx too (pip install 'eosmuster[workbook]')"
+    )
+
+
+def views_asked_for(options: argparse.Namespace) -> dict[str, bool]:
+    """Give what `add_results_options` lets people choose, as `eosmuster.report.folder.save` takes it."""
+    return {"points": options.points == "all", "dossier": options.dossier == "yes", "workbook": options.workbook}
 
 
 def conclude(plan: Plan, record: Record, folder: Path, *, gate: bool) -> int:

@@ -19,14 +19,17 @@ def add(parser: argparse.ArgumentParser) -> None:
 def run(options: argparse.Namespace) -> int:
     """Check, and show what was found."""
     from eosmuster.api import read_plan
+    from eosmuster.drifting.files import checked_file, write_whole
     from eosmuster.prechecks.checks import precheck
-    from eosmuster.prechecks.text import precheck_text, write_csv
+    from eosmuster.prechecks.text import csv_text, precheck_text
     from eosmuster.progress import Bar
 
     plan = read_plan(options.plan)
+    target = None if options.csv is None else checked_file(options.csv, "--csv")  # before the work begins
     with Bar(sys.stderr) as bar:
         findings = precheck(plan, bar)
     show(precheck_text(plan, findings, width()))
-    if options.csv:
-        print(f"\nfindings: {write_csv(findings, options.csv)}")
+    if target:
+        write_whole(target, csv_text(findings), "--csv")
+        print(f"\nfindings: {target}")
     return 0

@@ -6,7 +6,7 @@ import argparse
 import sys
 
 from eosmuster.commands.exits import complain
-from eosmuster.commands.outcome import conclude
+from eosmuster.commands.outcome import add_results_options, conclude, views_asked_for
 
 HELP = "run a plan: every component x model x state x property"
 
@@ -16,16 +16,7 @@ def add(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("plan", nargs="?", help="a TOML file, or the name of a built-in plan (default: broad)")
     parser.add_argument("--out", metavar="DIR", help="results folder (default: eosmuster-results/<plan name>)")
     parser.add_argument("--part", metavar="K/N", help="run the K-th of N parts of the components; see combine")
-    parser.add_argument("--gate", action="store_true", help="exit with 1 if a verdict of the plan's [gate] occurs")
-    parser.add_argument(
-        "--points", choices=("all", "none"), default="all", help="write points.csv, or leave it out (default: all)"
-    )
-    parser.add_argument(
-        "--dossier", choices=("yes", "no"), default="yes", help="write dossier.html, or leave it out (default: yes)"
-    )
-    parser.add_argument(
-        "--workbook", action="store_true", help="write results.xlsx too (pip install 'eosmuster[workbook]')"
-    )
+    add_results_options(parser)
 
 
 def run(options: argparse.Namespace) -> int:
@@ -50,8 +41,7 @@ def run(options: argparse.Namespace) -> int:
     with Bar(sys.stderr) as bar:
         record = sweep(plan, bar)
         bar("writing", 0, 1)
-        asked = {"points": options.points == "all", "dossier": options.dossier == "yes", "workbook": options.workbook}
-        folder = save(record, folder, **asked, overwrite=True, started=started)
+        folder = save(record, folder, **views_asked_for(options), overwrite=True, started=started)
     if plan.part is not None and not plan.rows:
         complain(part_line(plan))
         return 0

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -62,7 +62,7 @@ class Axis:
         """
         if not (len(states) and (np.diff(states) > 0).all()):
             raise InputError(f"states {states.tolist()} are not valid: strictly rising temperatures are")
-        kinds = _strongest(steps)
+        kinds = strongest(steps, STEP_ENDS)
         at = np.array([t for t in kinds if states[0] <= t <= states[-1]], float)
         inner = at[(at > states[0]) & (at < states[-1])]
         # a state at a step gives both of its nodes
@@ -77,12 +77,13 @@ class Axis:
         return cls(temperature, temperature * (1 + 1e-9 * side), _known(state, states, temperature), step)
 
 
-def _strongest(steps: Iterable[tuple[float, str]]) -> dict[float, str]:
+def strongest(steps: Iterable[tuple[float, str]], order: Sequence[str]) -> dict[float, str]:
+    """Give the kind of the step at each place: of several the last in `order`; raise `InputError` for another one."""
     kinds: dict[float, str] = {}
-    for temperature, kind in steps:
-        if kind not in STEP_ENDS:
-            raise InputError(f"step kind {kind!r} is unknown (valid: {', '.join(STEP_ENDS)})")
-        kinds[float(temperature)] = max(kinds.get(float(temperature), kind), kind, key=STEP_ENDS.index)
+    for place, kind in steps:
+        if kind not in order:
+            raise InputError(f"step kind {kind!r} is unknown (valid: {', '.join(order)})")
+        kinds[float(place)] = max(kinds.get(float(place), kind), kind, key=order.index)
     return kinds
 
 

@@ -1,4 +1,4 @@
-"""Probability of conformance and acceptance intervals, JCGM 106:2012 (formulas from memory)."""
+"""Probability of conformance, JCGM 106:2012 (formulas from memory)."""
 
 from __future__ import annotations
 
@@ -65,17 +65,3 @@ def _normal_cdf(z: Floats) -> Floats:
     scaled = (-math.sqrt(0.5) * z[near]).tolist()
     p[near] = 0.5 * np.fromiter(map(math.erfc, scaled), float, len(scaled))
     return p.reshape(shape)
-
-
-def acceptance_limits(lower: ArrayLike, upper: ArrayLike, guard_band: ArrayLike) -> tuple[Floats, Floats]:
-    """Give the acceptance interval (lower + w, upper - w) of JCGM 106:2012 section 8 (from memory).
-
-    A guard band w > 0 is guarded acceptance, w < 0 guarded rejection, w = 0 simple acceptance. Where the
-    lower limit comes out above the upper one nothing is accepted.
-
-    Examples
-    --------
-    >>> [round(float(a), 2) for a in acceptance_limits(1499.8, 1500.2, 0.02)]
-    [1499.82, 1500.18]
-    """
-    return np.asarray(np.add(lower, guard_band), float), np.asarray(np.subtract(upper, guard_band), float)

@@ -11,6 +11,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from eosmuster.compare.axis import strongest
 from eosmuster.compare.roots import Flags, Ints
 from eosmuster.errors import InputError
 from eosmuster.record import REGION_EDGES, Floats
@@ -102,7 +103,7 @@ class Rectangle:
         reason = np.full(len(start), EDGE["phase_boundary"])
         axes = ((self.temperature, self.temperature_steps), (self.pressure, self.pressure_steps))
         for axis, (values, steps) in enumerate(axes):
-            kinds = {t: EDGE[kind] for t, kind in strongest(steps).items()}
+            kinds = {t: EDGE[kind] for t, kind in strongest(steps, STEP_EDGES).items()}
             kinds |= {float(values[end]): EDGE[self.ends[2 * axis - end]] for end in (0, -1)}
             for i in np.flatnonzero(start[:, axis] == stop[:, axis]).tolist():
                 reason[i] = kinds.get(float(start[i, axis]), reason[i])
@@ -139,7 +140,7 @@ class Line:
         values = np.asarray(values, np.float64)
         if not (len(values) and (np.diff(values) > 0).all() and values[0] > 0):
             raise InputError(f"{what} {values.tolist()} are not valid: strictly rising positive ones are")
-        at = np.array([t for t in strongest(steps) if values[0] <= t <= values[-1]], np.float64)
+        at = np.array([t for t in strongest(steps, STEP_EDGES) if values[0] <= t <= values[-1]], np.float64)
         inner = at[(at > values[0]) & (at < values[-1])]
         value = np.sort(np.concatenate([values[~np.isin(values, inner)], inner, inner]))
         joined = np.diff(value) > 0
@@ -147,13 +148,3 @@ class Line:
         side[0], side[-1] = side[0] + (value[0] in at), side[-1] - (value[-1] in at)
         place = np.concatenate([[0], np.cumsum(joined)])
         return cls(value, value * (1.0 + _BESIDE_STEP * side), place, joined)
-
-
-def strongest(steps: Iterable[tuple[float, str]]) -> dict[float, str]:
-    """Give the kind of each step; raise `InputError` for an unknown one."""
-    kinds: dict[float, str] = {}
-    for value, kind in steps:
-        if kind not in STEP_EDGES:
-            raise InputError(f"step kind {kind!r} is unknown (valid: {', '.join(STEP_EDGES)})")
-        kinds[float(value)] = max(kinds.get(float(value), kind), kind, key=STEP_EDGES.index)
-    return kinds

@@ -23,6 +23,8 @@ TOLERANCE_K = 1e-6
 _INTERPOLATIONS = 20
 """After so many steps only bisection is left, which bounds the work whatever the function does."""
 
+_EVALUATIONS = 8  # of one interval at most, in `seek`
+
 
 @dataclass(frozen=True)
 class Refined:
@@ -159,9 +161,7 @@ def polynomial_guess(t: Floats, g: Floats) -> Floats:
     return np.asarray(t1 + x)
 
 
-def seek(
-    evaluate: Margin, t: Floats, g: Floats, guess: Floats, max_iterations: int = 8
-) -> tuple[Flags, Floats, Floats]:
+def seek(evaluate: Margin, t: Floats, g: Floats, guess: Floats) -> tuple[Flags, Floats, Floats]:
     """Look between two points whose margins have one sign for a point where the margin has the other.
 
     Successive parabolic interpolation towards the extremum (R. P. Brent, Algorithms for Minimization without
@@ -173,7 +173,6 @@ def seek(
     evaluate : as for `refine`
     t, g : (k, 2), both ends of each interval (rising) and the margins there
     guess : (k,), where the extremum may be, within the interval
-    max_iterations : evaluations of one interval at most
 
     Returns
     -------
@@ -193,7 +192,7 @@ def seek(
     found = np.zeros(len(t), np.bool_)
     where, margin = np.full(len(t), np.nan), np.full(len(t), np.nan)
     open_, trial, predicted = np.arange(len(t)), guess, np.full(len(t), np.inf)
-    for _ in range(max_iterations):
+    for _ in range(_EVALUATIONS):
         if not open_.size:
             break
         value = evaluate(open_, trial)

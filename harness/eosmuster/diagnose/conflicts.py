@@ -123,16 +123,16 @@ def find_conflict(
     component: str,
     name: str,
     sources: Sequence[Source],
-    contested_above: float | None = None,
     witnesses: Sequence[Source] = (),
 ) -> Conflict | None:
     """Compare every source with every other one.
 
+    Two disagree where the median of their absolute deviation exceeds `CONTESTED_ABOVE` and their combined expanded
+    uncertainty.
+
     Parameters
     ----------
     name : the property
-    contested_above : %, default `CONTESTED_ABOVE`; two sources disagree where the median of their absolute deviation
-        exceeds this and their combined expanded uncertainty
     witnesses : sources too small to accuse anybody by themselves (a boiling point is one state); they are heard only
         where no majority tells which source is right
 
@@ -147,7 +147,7 @@ def find_conflict(
     >>> print(find_conflict("x", "liquid_density", [one("a", 1.0), one("b", 1.001), one("c", 1.04)]).sentence)
     c stands alone against a, b by +3.95 % (median; 4.00 % at most), 200.0-300.0 K
     """
-    threshold = CONTESTED_ABOVE[name] if contested_above is None else contested_above
+    threshold = CONTESTED_ABOVE[name]
     found = _find(component, name, sources, threshold)
     if found is None or found.alone or not witnesses:
         return found

@@ -12,6 +12,7 @@ With the tolerance t (1e-6 unless another is asked for):
   jump between two equal ones and counts as part of the statistics;
 - ends of windows agree within 1000 t kelvin, but never less than 1e-6 K, to which they are located: a deviation may
   cross its limit at 1e-4 %/K only;
+- regions agree as `eosmuster.drifting.regions` has it;
 - counts, verdicts and other text must be equal; notes must be equal apart from the numbers in them, which repeat
   what the columns say.
 """
@@ -38,7 +39,9 @@ _PLACES = ("from_K", "to_K")
 _STEEP = "false_acceptance_pct"
 _TYPES = {field.name: str(field.type) for field in fields(SummaryRow)}
 _COLUMNS = tuple(name for name in _TYPES if name not in (*_KEY, *_FOLLOWING))
-_STEEPNESS = 1e3
+STEEPNESS = 1e3
+"""How many times the tolerance what is steep may move: risks, ends of windows in kelvin, edges of regions."""
+
 _LOCATED = 1e-6  # K
 _DIGITS = re.compile(r"\d[\d.]*(?:[eE][-+]?\d+)?")
 
@@ -93,7 +96,7 @@ class Agreement:
         if _TYPES[name] == "int":
             return old == new
         if name == _STEEP:
-            return _close(old, new, self.tolerance, _STEEPNESS * self.tolerance)
+            return _close(old, new, self.tolerance, STEEPNESS * self.tolerance)
         return self.numbers(old, new) if name in (*_PLACES, *MEANS) else self.percents(old, new)
 
     def moved(self, old: SummaryRow, new: SummaryRow) -> Iterator[str]:
@@ -104,7 +107,7 @@ class Agreement:
 
     def windows(self, old: WindowRow, new: WindowRow) -> bool:
         """Tell whether two windows agree, ends and reasons."""
-        kelvin = max(_LOCATED, _STEEPNESS * self.tolerance)
+        kelvin = max(_LOCATED, STEEPNESS * self.tolerance)
         ends = ((old.from_K, new.from_K), (old.to_K, new.to_K))
         same = all(_close(a, b, 0.0, kelvin) for a, b in ends)
         return same and (old.from_end, old.to_end) == (new.from_end, new.to_end)

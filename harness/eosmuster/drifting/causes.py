@@ -16,6 +16,9 @@ from eosmuster.record import SummaryRow
 
 COUNTS = ("points", "inside", "undecided", "outside", "unsolved", "no_reference")
 
+VIEWS = ("windows", "regions")
+"""What a row has beside its columns of summary.csv: found from models and references, not from its points."""
+
 _WORDS = ("contested", "independence", "note")
 _JUDGED = ("verdict", "inside", "undecided", "outside", "passing_limit_pct", "surely_passing_limit_pct")
 _BOILING, _PRESSURE = "boiling_temperature", "saturation_pressure"
@@ -78,7 +81,7 @@ def of_kept_row(setting: Setting, key: Key, columns: Iterable[str], moved: Moved
 
     Parameters
     ----------
-    columns : those of summary.csv that do not agree; "windows" for the windows
+    columns : those of summary.csv that do not agree; names in `VIEWS` for windows and region
     moved : what its points say, None if a side has none
     """
     columns = tuple(columns)
@@ -199,7 +202,7 @@ def _of_reference(setting: Setting, key: Key) -> str:
 def _otherwise(setting: Setting, key: Key, flags: Flags, columns: tuple[str, ...]) -> list[str]:
     """Give the causes of a row in which no prediction, reference, limit or uncertainty is known to have moved."""
     words_alone = set(columns) <= set(_WORDS)
-    if flags.known == "points" and not words_alone and "windows" not in columns:
+    if flags.known == "points" and not words_alone and not set(columns) & set(VIEWS):
         return ["code"]
     found = _by_manifest(setting, key)
     if words_alone:  # contested: another reference of the same fluid and property may have moved

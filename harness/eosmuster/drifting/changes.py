@@ -94,6 +94,23 @@ class PointChange:
 
 
 @dataclass(frozen=True)
+class RegionChange:
+    """What became of a row's region in the plane of temperature and pressure.
+
+    Attributes
+    ----------
+    state : `MOVED`, `APPEARED` or `VANISHED`
+    share : old and new share of the plan's rectangle; NaN where there is no region
+    came, gone : reasons for which only the new one, or only the old one, ends
+    """
+
+    state: str
+    share: tuple[float, float]
+    came: tuple[str, ...] = ()
+    gone: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True)
 class RowChange:
     """One row that drifted.
 
@@ -106,6 +123,7 @@ class RowChange:
     note : what moved, in words
     points_moved : points whose prediction, reference, limit or uncertainty moved; None if the points are not known
     worst : the one whose deviation moved most, None if the points are not known
+    region : what became of its region; None if it has none, or that did not move
     """
 
     key: Key
@@ -116,6 +134,7 @@ class RowChange:
     note: str = ""
     points_moved: int | None = None
     worst: PointChange | None = None
+    region: RegionChange | None = None
 
     @property
     def verdicts(self) -> tuple[str, str]:
@@ -185,6 +204,7 @@ class Comparison:
     unchanged : number of rows that did not
     changes : what differs between the manifests, whether it moved a row or not
     remarks : what a reader must know, e.g. a file that is not as its run wrote it
+    regions_unchanged : number of regions that did not move
     """
 
     old: Run
@@ -194,6 +214,7 @@ class Comparison:
     unchanged: int
     changes: tuple[Change, ...] = ()
     remarks: tuple[str, ...] = ()
+    regions_unchanged: int = 0
 
     def __bool__(self) -> bool:
         return bool(self.rows)
@@ -203,6 +224,12 @@ class Comparison:
         """Count the rows by state, unchanged ones too."""
         counted = Counter(row.state for row in self.rows)
         return {**{state: counted[state] for state in STATES}, UNCHANGED: self.unchanged}
+
+    @cached_property
+    def regions(self) -> Mapping[str, int]:
+        """Count the regions by state, unchanged ones too; a region that moved or went is counted with its row."""
+        counted = Counter(row.region.state for row in self.rows if row.region)
+        return {**{state: counted[state] for state in STATES[1:]}, UNCHANGED: self.regions_unchanged}
 
     @cached_property
     def causes(self) -> Mapping[str, int]:

@@ -16,6 +16,7 @@ from eosmuster.drifting.changes import (
     VANISHED,
     Comparison,
     Key,
+    RegionChange,
     RowChange,
     worst_first,
 )
@@ -23,14 +24,13 @@ from eosmuster.drifting.evidence import evidence
 from eosmuster.drifting.markdown import drift_markdown
 from eosmuster.drifting.matching import Moved, moved
 from eosmuster.drifting.points import pairs
-from eosmuster.drifting.sides import POINTS, SUMMARY, WINDOWS, Side, read_side
+from eosmuster.drifting.regions import region_change
+from eosmuster.drifting.sides import POINTS, REGIONS, SUMMARY, WINDOWS, Side, read_side
 from eosmuster.drifting.table import COLUMNS, values
 from eosmuster.drifting.text import drift_text
 
 if TYPE_CHECKING:
     import pandas as pd
-
-_WINDOWS = "windows"
 
 
 class Drift(Comparison):
@@ -79,6 +79,7 @@ def compare(old: Side, new: Side, agreement: Agreement) -> Drift:
         *_lone(setting),
     ]
     kept = sum(key in new.rows for key in old.rows)
+    came_or_moved = {row.key for row in rows if row.region}
     return Drift(
         old.run,
         new.run,
@@ -87,15 +88,21 @@ def compare(old: Side, new: Side, agreement: Agreement) -> Drift:
         kept - len(unequal),
         found.changes,
         tuple(_remarks(setting, bool(unequal), bool(points))),
+        sum(key in new.regions and key not in came_or_moved for key in old.regions),
     )
 
 
 def _unequal(setting: causes.Setting, key: Key) -> tuple[str, ...]:
-    """Name the columns of summary.csv in which a row does not agree, and "windows" if its windows do not."""
+    """Name the columns of summary.csv in which a row does not agree, and those of `causes.VIEWS` that do not."""
     columns = tuple(setting.agreement.moved(setting.old.rows[key], setting.new.rows[key]))
     before, now = (side.windows.get(key, ()) for side in (setting.old, setting.new))
     same = len(before) == len(now) and all(map(setting.agreement.windows, before, now))
-    return columns if same else (*columns, _WINDOWS)
+    region = _region(setting, key)
+    return (*columns, *(name for name, changed in zip(causes.VIEWS, (not same, region), strict=True) if changed))
+
+
+def _region(setting: causes.Setting, key: Key) -> RegionChange | None:
+    return region_change(setting.old.regions.get(key), setting.new.regions.get(key), setting.agreement)
 
 
 def _points(setting: causes.Setting, keys: list[Key]) -> dict[Key, Moved]:
@@ -120,6 +127,7 @@ def _kept(setting: causes.Setting, key: Key, columns: tuple[str, ...], points: M
         notes.note(setting, key, columns, why, points),
         points.points if points else None,
         points.worst if points else None,
+        _region(setting, key),
     )
 
 
@@ -128,7 +136,8 @@ def _lone(setting: causes.Setting) -> Iterator[RowChange]:
     for key in [*(k for k in old if k not in new), *(k for k in new if k not in old)]:
         why, note = causes.of_lone_row(setting, key)
         state = VANISHED if key in old else APPEARED
-        yield RowChange(key, state, _ordered(why), old.get(key), new.get(key), note)
+        region = _region(setting, key)
+        yield RowChange(key, state, _ordered(why), old.get(key), new.get(key), note, region=region)
 
 
 def _ordered(why: Iterable[str]) -> tuple[str, ...]:
@@ -138,7 +147,7 @@ def _ordered(why: Iterable[str]) -> tuple[str, ...]:
 def _remarks(setting: causes.Setting, changed: bool, with_points: bool) -> Iterator[str]:
     sides = (setting.old, setting.new)
     for side in sides:
-        for name in side.altered([SUMMARY, WINDOWS, *([POINTS] if with_points else [])]):
+        for name in side.altered([SUMMARY, WINDOWS, REGIONS, *([POINTS] if with_points else [])]):
             yield f"{side.where}: {name} is not as its run wrote it (its SHA-256 is not the manifest's)"
     without = [side.where for side in sides if side.points is None]
     if changed and without:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator, Sequence
 
 from eosmuster.drifting.changes import CAUSES, STATES, Comparison, RowChange
@@ -67,6 +68,9 @@ def _rows(rows: Sequence[RowChange], state: str, room: Room) -> Iterator[str]:
     headers = ["fluid", "candidate", "property", "reference", "verdict", "causes", "what moved", "AAD was", "AAD is"]
     headers += ["bias was", "bias is", "maximum was", "maximum is"]
     cells = [_cells(row, room) for row in rows[: room.rows]]
+    if any(row.region for row in rows[: room.rows]):
+        headers += ["region was, %", "region is, %"]
+        cells = [[*of_row, *_region(row)] for of_row, row in zip(cells, rows, strict=False)]
     yield from table(headers, [*cells, *[[]] * (len(rows) - len(cells))], room.rows, _CSV, numbers_from=7)
 
 
@@ -83,3 +87,9 @@ def _cells(row: RowChange, room: Room) -> list[str]:
         escaped(brief(row.note, 2 * room.text), 2 * room.text),
         *statistics,
     ]
+
+
+def _region(row: RowChange) -> list[str]:
+    """Give both shares of a region that moved, came or went."""
+    share = row.region.share if row.region else ()
+    return ["-" if math.isnan(part) else number(100.0 * part, 4) for part in share] or ["-", "-"]

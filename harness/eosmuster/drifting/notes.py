@@ -6,8 +6,9 @@ import math
 from collections.abc import Iterable, Iterator
 
 from eosmuster.drifting.causes import COUNTS, Setting
-from eosmuster.drifting.changes import Change, Key, PointChange
+from eosmuster.drifting.changes import APPEARED, VANISHED, Change, Key, PointChange, RegionChange
 from eosmuster.drifting.matching import Moved
+from eosmuster.drifting.regions import region_change
 from eosmuster.report.text import number, some
 
 _FEW = 3
@@ -28,6 +29,7 @@ def note(setting: Setting, key: Key, columns: Iterable[str], why: Iterable[str],
         *(_points(points) if points else _means(setting, key)),
         *_words(setting, key, columns),
         *(_windows(setting, key) if "windows" in columns else ()),
+        *(_region(setting, key) if "regions" in columns else ()),
     ]
     return "; ".join(said)
 
@@ -115,3 +117,29 @@ def _windows(setting: Setting, key: Key) -> Iterator[str]:
             ]
             yield f"window {i}: {' -> '.join(ends)}"
             return
+
+
+def _region(setting: Setting, key: Key) -> Iterator[str]:
+    found = region_change(setting.old.regions.get(key), setting.new.regions.get(key), setting.agreement)
+    if found is not None:
+        yield region(found)
+
+
+def region(found: RegionChange) -> str:
+    """Say what became of a region.
+
+    Examples
+    --------
+    >>> region(RegionChange("moved", (0.5, 0.25), came=("limit_step",)))
+    'region: 50 -> 25 % of the plan's rectangle; it now ends at limit step too'
+    >>> region(RegionChange("appeared", (math.nan, 0.25)))
+    'region appeared: 25 % of the plan's rectangle'
+    """
+    old, new = (number(100.0 * share, 4) for share in found.share)
+    if found.state in (APPEARED, VANISHED):
+        return f"region {found.state}: {new if found.state == APPEARED else old} % of the plan's rectangle"
+    said = f"region: {old} -> {new} % of the plan's rectangle"
+    for reasons, words in ((found.came, "it now ends at {} too"), (found.gone, "it no longer ends at {}")):
+        if reasons:
+            said += "; " + words.format(", ".join(reasons).replace("_", " "))
+    return said

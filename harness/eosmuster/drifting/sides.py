@@ -7,23 +7,24 @@ import io
 import os
 import tomllib
 from collections.abc import Iterable, Mapping
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from pathlib import Path
 from typing import Any, TypeVar
 
 from eosmuster.drifting.changes import Key, Run
 from eosmuster.drifting.points import BlockPoints, FilePoints, Points
+from eosmuster.drifting.regions import Shape, plane_of, read_regions, shapes_of
 from eosmuster.drifting.tables import grouped, key_of, read_summary, read_windows, rows_counted
 from eosmuster.errors import InputError
 from eosmuster.quantities import shown
-from eosmuster.record import RECORD_VERSION, Record, SummaryRow, WindowRow
+from eosmuster.record import RECORD_VERSION, Record, Region, SummaryRow, WindowRow
 from eosmuster.report.cells import encoded, text_cell
 from eosmuster.report.manifest import FORMAT_VERSION, file_hash, manifest, read_manifest
 from eosmuster.report.manifest import NAME as MANIFEST
 
 T = TypeVar("T", SummaryRow, WindowRow)
 
-SUMMARY, WINDOWS, POINTS = "summary.csv", "windows.csv", "points.csv"
+SUMMARY, WINDOWS, REGIONS, POINTS = "summary.csv", "windows.csv", "regions.csv", "points.csv"
 
 _DEEPEST = 12
 _MAPPINGS = ("plan", "decision", "constants", "models", "references", "measured_files", "outputs", "volatile")
@@ -44,6 +45,7 @@ class Side:
     rows, windows : summary.csv and windows.csv by key, in the order of the files
     points : points.csv; None if it was not written
     folder : where the files are; None for a run that was not written
+    regions : regions.csv by key, measured; empty if it was not written
     """
 
     where: str
@@ -52,6 +54,7 @@ class Side:
     windows: Mapping[Key, tuple[WindowRow, ...]]
     points: Points | None
     folder: Path | None = None
+    regions: Mapping[Key, Shape] = field(default_factory=dict)
 
     @property
     def run(self) -> Run:
@@ -61,11 +64,7 @@ class Side:
     @property
     def plan(self) -> Mapping[str, Any]:
         """The plan's tables; empty if its text is no plan's TOML."""
-        try:
-            tables = tomllib.loads(str(self.manifest["plan"].get("text", "")))
-        except (ValueError, RecursionError):
-            return {}
-        return {} if _is_too_deep(tables) else tables
+        return _plan(self.manifest)
 
     def altered(self, names: Iterable[str]) -> list[str]:
         """Give those of some files that are there and not as the run wrote them, by the manifest's SHA-256.
@@ -79,6 +78,14 @@ class Side:
         digests = self.manifest["outputs"]
         here = [name for name in names if (self.folder / name).is_file()]
         return [name for name in here if digests.get(name) != sha256(self.folder / name)]
+
+
+def _plan(content: Mapping[str, Any]) -> Mapping[str, Any]:
+    try:
+        tables = tomllib.loads(str(content["plan"].get("text", "")))
+    except (ValueError, RecursionError):
+        return {}
+    return {} if _is_too_deep(tables) else tables
 
 
 def sha256(path: Path) -> str:
@@ -170,7 +177,15 @@ def read_side(folder: str | os.PathLike[str]) -> Side:
     windows = read_windows(path / WINDOWS, rows_counted(content, "windows"))
     has_points = (path / POINTS).is_file()
     points = FilePoints(path / POINTS, {key: row.points for key, row in rows.items()}) if has_points else None
-    return Side(str(folder), content, rows, windows, points, path)
+    return Side(str(folder), content, rows, windows, points, path, _regions(path / REGIONS, content))
+
+
+def _regions(path: Path, content: Mapping[str, Any]) -> dict[Key, Shape]:
+    """Read regions.csv, which only runs with single-phase states write."""
+    count = rows_counted(content, "regions")
+    if not (count or REGIONS in content["outputs"] or path.is_file()):
+        return {}
+    return read_regions(path, plane_of(_plan(content)), count)
 
 
 def side_of_record(record: Record, where: str) -> Side:
@@ -182,8 +197,14 @@ def side_of_record(record: Record, where: str) -> Side:
         for b in record.blocks
         for i, name in enumerate(b.candidates)
     }
-    rows = {key_of(row): row for row in summary}
-    return Side(where, manifest(record, {}), rows, grouped(windows), BlockPoints(blocks))
+    rows, content = {key_of(row): row for row in summary}, manifest(record, {})
+    named = ((_region_key(region), region) for region in record.regions)
+    regions = shapes_of(plane_of(_plan(content)), named)
+    return Side(where, content, rows, grouped(windows), BlockPoints(blocks), regions=regions)
+
+
+def _region_key(region: Region) -> Key:
+    return Key(*map(spelled, (region.component, region.candidate, region.property, region.reference_source)))
 
 
 def _as_read(row: T) -> T:

@@ -12,9 +12,11 @@ _STATISTICS = ("aad_pct", "bias_pct", "max_pct")
 COLUMNS = (
     *("component", "candidate", "property", "reference_source", "state", "causes", "old_verdict", "new_verdict"),
     *(f"{side}_{name}" for name in _STATISTICS for side in ("old", "new")),
-    *("points_moved", "worst_at_K", "worst_at_Pa", "old_deviation_pct", "new_deviation_pct", "note"),
+    *("points_moved", "worst_at_K", "worst_at_Pa", "old_deviation_pct", "new_deviation_pct"),
+    *("region", "old_region_share", "new_region_share", "note"),
 )
-"""Columns of the table: key, what happened and why, statistics of both runs, the point that moved most, in words."""
+"""Columns of the table: key, what happened and why, statistics of both runs, the point that moved most, what became
+of the region (empty if nothing), in words."""
 
 _NONE = math.nan
 
@@ -39,6 +41,8 @@ def values(row: RowChange) -> list[str | float]:
         point.temperature if point else _NONE,
         point.pressure if point else _NONE,
         *(point.deviation_pct if point else (_NONE, _NONE)),
+        row.region.state if row.region else "",
+        *(row.region.share if row.region else (_NONE, _NONE)),
         row.note,
     ]
 

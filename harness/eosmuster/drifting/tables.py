@@ -1,4 +1,4 @@
-"""Reading summary.csv and windows.csv of a results folder, strictly: what is damaged is refused, never guessed."""
+"""Reading the CSV files of a results folder, strictly: what is damaged is refused, never guessed."""
 
 from __future__ import annotations
 
@@ -14,7 +14,7 @@ from eosmuster.errors import InputError
 from eosmuster.quantities import shown
 from eosmuster.record import SummaryRow, WindowRow
 
-T = TypeVar("T", SummaryRow, WindowRow)
+T = TypeVar("T")
 
 _READ: Mapping[str, Callable[[str], Any]] = {"str": str, "int": int, "float": lambda cell: float(cell or "nan")}
 _KINDS = {"int": "a whole number", "float": "a number"}
@@ -37,7 +37,7 @@ def read_summary(path: Path, rows: int | None = None) -> dict[Key, SummaryRow]:
     InputError : unreadable, cut short, a column that is missing, a cell that is no number, or two rows of one key
     """
     found: dict[Key, SummaryRow] = {}
-    for line, row in _rows(path, SummaryRow, rows):
+    for line, row in rows_of(path, SummaryRow, rows):
         key = key_of(row)
         if key in found:
             raise InputError(f"{path}: line {line} is a second row of {shown(str(key))}; a run writes one")
@@ -50,7 +50,7 @@ def read_summary(path: Path, rows: int | None = None) -> dict[Key, SummaryRow]:
 
 def read_windows(path: Path, rows: int | None = None) -> dict[Key, tuple[WindowRow, ...]]:
     """Read windows.csv: the windows of each row, in the order of the file; see `read_summary`."""
-    return grouped([row for _, row in _rows(path, WindowRow, rows)])
+    return grouped([row for _, row in rows_of(path, WindowRow, rows)])
 
 
 def grouped(windows: Sequence[WindowRow]) -> dict[Key, tuple[WindowRow, ...]]:
@@ -61,8 +61,11 @@ def grouped(windows: Sequence[WindowRow]) -> dict[Key, tuple[WindowRow, ...]]:
     return {key: tuple(of_one) for key, of_one in found.items()}
 
 
-def _rows(path: Path, kind: type[T], rows: int | None) -> Iterator[tuple[int, T]]:
-    """Yield line number and row; columns behind the contract's may be missing, unknown ones are passed over."""
+def rows_of(path: Path, kind: type[T], rows: int | None = None) -> Iterator[tuple[int, T]]:
+    """Yield line number and row of a file whose columns are the fields of a dataclass.
+
+    Columns behind the contract's may be missing, unknown ones are passed over; see `read_summary` for the rest.
+    """
     count = 0
     try:
         _refuse_open_end(path)
@@ -95,7 +98,7 @@ def _refuse_open_end(path: Path) -> None:
 
 
 def _converter(path: Path, header: Sequence[str], kind: type[T]) -> Any:
-    described = fields(kind)
+    described = fields(kind)  # type: ignore[arg-type]
     missing = [f.name for f in described if f.name not in header and f.default is MISSING]
     if missing:
         names = ", ".join(f.name for f in described)

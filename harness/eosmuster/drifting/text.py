@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import textwrap
 from collections.abc import Iterator, Sequence
 
@@ -35,12 +36,19 @@ def headline(drift: Comparison) -> str:
     >>> run = Run("a", "plan", {})
     >>> headline(Comparison(run, run, 1e-6, (), 40))
     'no drift: 40 rows unchanged'
+    >>> headline(Comparison(run, run, 1e-6, (), 40, regions_unchanged=8))
+    'no drift: 40 rows unchanged; regions: 8 unchanged'
     """
-    unchanged = f"{some(drift.unchanged, 'row')} {UNCHANGED}"
+    unchanged = f"{some(drift.unchanged, 'row')} {UNCHANGED}{_regions(drift)}"
     if not drift:
         return f"no drift: {unchanged}"
     counted = ", ".join(_counted(state, drift.states[state]) for state in STATES if drift.states[state])
     return f"drift: {counted}; {unchanged}"
+
+
+def _regions(drift: Comparison) -> str:
+    counted = ", ".join(f"{count} {state}" for state, count in drift.regions.items() if count)
+    return f"; regions: {counted}" if counted else ""
 
 
 def _counted(state: str, count: int) -> str:
@@ -155,6 +163,9 @@ def _moved(rows: Sequence[RowChange], width: int) -> Iterator[str]:
     for head, name in (("AAD", "aad_pct"), ("max", "max_pct")):
         pairs = [(number(getattr(row.old, name)), number(getattr(row.new, name))) for row in shown]
         columns += _steps(head, pairs)
+    if any(row.region for row in shown):
+        shares = [row.region.share if row.region else (math.nan, math.nan) for row in shown]
+        columns += _steps("region, %", [(number(100.0 * a), number(100.0 * b)) for a, b in shares])
     columns.append(("causes", [", ".join(row.causes) for row in shown]))
     yield f"{rows[0].state}: {some(len(rows), 'row')}{f' ({named})' if named else ''}, worst first; deviations in %"
     yield plain_table([head for head, _ in columns], list(zip(*(cells for _, cells in columns), strict=True)), width)

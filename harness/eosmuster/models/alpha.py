@@ -48,21 +48,6 @@ class AlphaFunction:
     jet: Callable[..., Jet]
     above: Above | None = None
 
-    def log_curvature(self, tau: Floats, *parameters: Floats) -> Floats:
-        """d2 ln(alpha)/d ln(T)2.
-
-        Examples
-        --------
-        >>> m, root = 0.8, np.sqrt(0.7)
-        >>> float(-m * (1 + m) * root / (2 * (1 + m * (1 - root)) ** 2))   # Soave's function, by hand
-        -0.471...
-        >>> float(ALPHA_FUNCTIONS["Soave"].log_curvature(np.array(0.3), m))
-        -0.471...
-        """
-        excess, first, second = self.jet(tau, *parameters)
-        slope = first / (1.0 + excess)
-        return np.asarray(second / (1.0 + excess) - slope * slope)
-
 
 def _one_less_root(tau: Floats) -> Floats:
     """1 - sqrt(Tr), without cancellation."""

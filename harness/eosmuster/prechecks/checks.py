@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Iterator, Sequence
 
 import numpy as np
 from numpy.typing import NDArray
@@ -17,8 +17,9 @@ from eosmuster.plan.selection import model_records
 from eosmuster.prechecks.consistency import TOLERANCE, Identity, battery
 from eosmuster.prechecks.measured import measured_findings, measured_sources
 from eosmuster.prechecks.references import reference_findings
+from eosmuster.progress import Progress, silent
 from eosmuster.quantities import GAS_CONSTANT
-from eosmuster.sources import handbook, library
+from eosmuster.sources import handbook, library, library_gate
 from eosmuster.sweeping.measured import read
 
 Floats = NDArray[np.float64]
@@ -26,13 +27,6 @@ Floats = NDArray[np.float64]
 CONSISTENCY = "thermodynamic consistency"
 
 _NAN = float("nan")
-
-
-Progress = Callable[[str, int, int], None]
-
-
-def silent(_what: str, _done: int, _of: int) -> None:
-    """Report nothing."""
 
 
 def precheck(plan: Plan, progress: Progress = silent) -> list[Finding]:
@@ -109,7 +103,7 @@ def _acentric(component: Component) -> Iterator[Finding]:
             yield Finding(
                 "acentric factor", "contradiction", component.name, "stored constant", _NAN, own, _NAN, _NAN, note
             )
-    if library.limits(component) is None:
+    if library_gate.limits(component) is None:
         return
     at = 0.7 * component.critical_temperature
     psat = library.saturation(component, [at], ["saturation_pressure"]).values["saturation_pressure"][0]

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections import defaultdict
-from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 
 import numpy as np
 from numpy.typing import NDArray
@@ -12,14 +12,14 @@ from eosmuster.diagnose.conflicts import CONTESTED_ABOVE, Source
 from eosmuster.diagnose.consensus import Vote, consensus, vote
 from eosmuster.diagnose.findings import Finding
 from eosmuster.prechecks.references import WATCHED
+from eosmuster.progress import Progress
 from eosmuster.quantities import PROPERTIES
 from eosmuster.report.text import some
-from eosmuster.sources import library
+from eosmuster.sources import library, library_gate, library_states
 from eosmuster.sources.measured.table import Diagnostic, MeasuredSet, Reading
 from eosmuster.sweeping.measured import PREFIX, Held, held
 
 Floats = NDArray[np.float64]
-Progress = Callable[[str, int, int], None]
 
 FILE_CHECK, SET_CHECK, CONSENSUS_CHECK = "measured file", "measured set", "measured sets together"
 
@@ -65,7 +65,7 @@ def _consensus_findings(sets: Iterable[MeasuredSet]) -> Iterator[Finding]:
         if len(votes) < 2:
             continue
         about = f"{phase} {name}" if name == "density" else name
-        all_of = consensus(component, about, library.LIBRARY, votes, CONTESTED_ABOVE.get(name, 1.0))
+        all_of = consensus(component, about, library_gate.LIBRARY, votes, CONTESTED_ABOVE.get(name, 1.0))
         ends = (min(v.from_K for v in votes), max(v.to_K for v in votes))
         sentence = f"{about.replace('_', ' ')}: {all_of.sentence}"
         severity, apart = "doubt" if all_of.apart else "note", ", ".join(all_of.apart)
@@ -84,7 +84,7 @@ def _against_library(one: MeasuredSet) -> tuple[Floats, Floats, Floats]:
     kept = ~one.repeats
     temperature, values, name = *_states(one), _name(one)
     if one.state == "single_phase":
-        baseline = library.density(one.component, temperature, one.pressure, one.phase)
+        baseline = library_states.density(one.component, temperature, one.pressure, one.phase)
     else:
         baseline = library.saturation(one.component, temperature, [name]).values[name]
     return temperature[kept], values[kept], baseline[kept]

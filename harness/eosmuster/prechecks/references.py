@@ -12,8 +12,10 @@ from eosmuster.diagnose.conflicts import Conflict, Source, find_conflict
 from eosmuster.diagnose.findings import Finding
 from eosmuster.diagnose.monotonic import RISES, turned
 from eosmuster.quantities import STANDARD_ATMOSPHERE
-from eosmuster.sources import handbook, library
+from eosmuster.sources import handbook, library, library_gate
+from eosmuster.sources.cited import Table
 from eosmuster.sources.critical import critical_constants
+from eosmuster.sources.uncertainty import uncertainty_pct
 
 Floats = NDArray[np.float64]
 
@@ -99,7 +101,7 @@ def _excluded(
 
 def used_sources(component: Component, name: str) -> list[str]:
     """Name the sources of a property that are handed out by default."""
-    found = [library.LIBRARY] if library.limits(component) is not None else []
+    found = [library_gate.LIBRARY] if library_gate.limits(component) is not None else []
     if component.cas:
         asked = "saturation_pressure" if name == "boiling_temperature" else name
         found += [c.source for c in handbook.correlations(component.cas, asked)]
@@ -161,14 +163,14 @@ def sources_of(
     tc = component.critical_temperature
     at = np.linspace(max(0.45 * tc, component.triple_temperature or 0.0), 0.98 * tc, STATES)
     unknown = np.full(at.shape, _NAN)
-    if library.limits(component) is not None:
+    if library_gate.limits(component) is not None:
         evaluate = _library_evaluator(component, name)
-        u = library.uncertainty_pct(component, name, at, coverage_factor)
-        yield Source(library.LIBRARY, at, evaluate(at), u, evaluate)
+        u = uncertainty_pct(component, name, at, coverage_factor)
+        yield Source(library_gate.LIBRARY, at, evaluate(at), u, evaluate)
     for c in handbook.correlations(component.cas, name, include_excluded=include_excluded) if component.cas else ():
         if REPEATED not in c.note:
             yield Source(c.source, at, c(at), unknown, c)
-    tables: dict[str, list[handbook.Table]] = {}
+    tables: dict[str, list[Table]] = {}
     for t in handbook.tables(component.cas, name, include_excluded=include_excluded) if component.cas else ():
         tables.setdefault(t.source, []).append(t)  # rows left out by default stand in a table of their own
     for source, parts in tables.items():

@@ -2,22 +2,18 @@
 
 from __future__ import annotations
 
-import contextlib
 import math
-import os
 import textwrap
 from collections import Counter
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import fields
-from pathlib import Path
 from types import MappingProxyType
 from typing import Any
 
 from eosmuster.diagnose.findings import SEVERITIES, Finding
-from eosmuster.errors import InputError
 from eosmuster.plan.schema import Plan
 from eosmuster.prechecks.measured import FILE_CHECK, SET_CHECK
-from eosmuster.report.cells import text_cell
+from eosmuster.report.cells import encoded, text_cell
 from eosmuster.report.text import list_within, one_line, plain_table, some
 
 GROUPED = ("alpha function", "reach of the form")
@@ -72,27 +68,11 @@ def _by_model(findings: Sequence[Finding], width: int) -> Iterator[list[str]]:
         yield [model, what, str(len(found)), start, fluids]
 
 
-def write_csv(findings: Sequence[Finding], path: str | os.PathLike[str]) -> Path:
-    """Write findings as CSV, complete or not at all; an existing file is replaced only by a whole one.
-
-    Raises
-    ------
-    InputError : the file cannot be written
-    """
-    target = Path(path)
-    part = target.with_name(f".{target.name}.{os.getpid()}.part")
+def csv_text(findings: Sequence[Finding]) -> bytes:
+    """Write findings as CSV, one row each; a number that is not known is an empty cell."""
     names = [field.name for field in fields(Finding)]
-    try:
-        with part.open("w", encoding="utf-8", newline="") as file:
-            file.write(",".join(names) + "\n")
-            for finding in findings:
-                file.write(",".join(_cell(getattr(finding, name)) for name in names) + "\n")
-        part.replace(target)
-    except OSError as error:
-        with contextlib.suppress(OSError):
-            part.unlink(missing_ok=True)
-        raise InputError(f"{target}: cannot write there: {error.strerror or error}; choose another --csv") from error
-    return target
+    lines = [",".join(names), *(",".join(_cell(getattr(f, name)) for name in names) for f in findings)]
+    return encoded("\n".join(lines) + "\n")
 
 
 def _cell(value: object) -> str:

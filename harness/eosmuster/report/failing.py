@@ -76,7 +76,10 @@ class FailingRows:
         if place is None:
             return ""
         at, _, _, _, _, deviation, limit, _ = words.point(self._record, row, place)
-        return f", at worst {deviation} at {at} {words.temperature_unit(self._record)} (limit {limit})"
+        temperature, _, pressure = at.partition(" (")  # a pressure only where the state needs one
+        under = f" and {pressure.removesuffix(')')}" if pressure else ""
+        unit = words.temperature_unit(self._record)
+        return f", at worst {deviation} at {temperature} {unit}{under} (limit {limit})"
 
     def paragraph(self, row: SummaryRow, width: int = 100) -> str:
         """Tell all that is known of a failing row, in lines of at most `width` columns.

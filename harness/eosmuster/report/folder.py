@@ -78,7 +78,7 @@ ONLY_IF: dict[str, Callable[[Record], bool]] = {
 }
 """Files that not every record has: name -> whether this one does. Any other view is always written."""
 
-_LITTER = {".DS_Store", "Thumbs.db", "desktop.ini"}  # what file managers leave in any folder
+LITTER = {".DS_Store", "Thumbs.db", "desktop.ini"}  # what file managers leave in any folder
 
 
 def save(
@@ -154,7 +154,7 @@ def written(record: Record, omitted: Collection[str] = (WORKBOOK,)) -> Iterator[
 
 
 def _known() -> set[str]:
-    return {*VIEWS, MANIFEST, *_LITTER}
+    return {*VIEWS, MANIFEST, *LITTER}
 
 
 def _write(record: Record, part: Path, omitted: Collection[str], started: datetime | None) -> None:

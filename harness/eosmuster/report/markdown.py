@@ -122,7 +122,9 @@ def _matrix(view: Overview, room: Room) -> Iterator[str]:
     best_first = [standing.candidate for standing in reversed(view.standings)]
     shown = best_first[: room.columns]
     yield f"### {escaped(view.label)}: fluids x candidates\n"
-    yield "ok inside, OUT outside, ? undecided, n/a unavailable, partly: share of points inside; ! unsolved points.\n"
+    silent = " - no reference." if any(cell.unjudged for cell in view.cells.values()) else ""
+    marks = "ok inside, OUT outside, ? undecided, n/a unavailable, partly: share of points inside; ! unsolved points."
+    yield f"{marks}{silent}\n"
     rows = [
         [escaped(fluid, room.text), *(_mark(view.cells.get((fluid, candidate))) for candidate in shown)]
         for fluid in view.fluids
@@ -136,6 +138,8 @@ def _matrix(view: Overview, room: Room) -> Iterator[str]:
 def _mark(cell: Cell | None) -> str:
     if cell is None:
         return ""
+    if cell.unjudged:
+        return "-"
     mark = _MARKS.get(cell.verdict) or words.percent(cell.share).replace(" ", "")
     return mark + "!" * (cell.unsolved > 0)
 

@@ -106,7 +106,7 @@ def _values(row: SaturationRow) -> tuple[float, ...]:
 def _standings(view: Overview, width: int) -> Iterator[str]:
     yield f"{view.label}: candidates, worst first"
     shown = view.standings[-_MOST_CANDIDATES:]
-    verdicts = {"undec": "undecided", "part": "partly", "out": "outside", "n/a": "unavailable"}
+    verdicts = {"undec": "undecided", "part": "partly", "out": "outside", "n/a": "unavailable", "no ref": "unjudged"}
     columns = {
         "candidate": [shortened(one_line(s.candidate), _LONGEST_NAME) for s in shown],
         "held": [str(s.held) for s in shown],
@@ -129,9 +129,10 @@ def _which(standing: Standing, width: int) -> str:
     """Name the fluids that are held, or those that are not, whichever are fewer."""
     held, failing = standing.fluids["inside"], standing.failing
     if not held:
-        return "none"
+        return "none" if standing.points else "-"
     if not failing:
-        return "all" if not standing.fluids["unavailable"] else "all but n/a"
+        missing = [head for head, why in (("n/a", "unavailable"), ("no ref", "unjudged")) if standing.fluids[why]]
+        return f"all but {' and '.join(missing)}" if missing else "all"
     start, names = ("only", held) if len(held) <= len(failing) else ("not", failing)
     return f"{start} {list_within(names, width - len(start) - 1)}"
 
@@ -152,12 +153,15 @@ def _failures(record: Record, width: int) -> Iterator[str]:
         for candidate, why, fluids in unavailable[:_MOST_REASONS]:
             yield "  " + one_line(f"{candidate}: {some(len(fluids), 'fluid')} ({list_within(fluids, 30)}) {why}")
         yield from _more(len(unavailable), "summary.csv")
-    if record.conflicts:
-        contested = list(dict.fromkeys(component for component, _, _ in record.conflicts))
+    # a measured file may hold more fluids than the plan asks for
+    swept = {row.component for row in record.summary}
+    contested = list(dict.fromkeys(component for component, _, _ in record.conflicts if component in swept))
+    if contested:
         start = f"contested references, {some(len(contested), 'fluid')} (who stands alone: summary.md): "
         yield start + list_within([one_line(f) for f in contested], width - len(start))
     if record.left_out:
-        yield f"left out: {list_within([what for what, _ in record.left_out], width - 30)} (why: manifest.json)"
+        parts = list(dict.fromkeys(what for what, _ in record.left_out))
+        yield f"left out: {list_within(parts, width - 30, '; ')} (why: manifest.json)"
 
 
 def _more(count: int, where: str) -> Iterator[str]:

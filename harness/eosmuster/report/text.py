@@ -65,8 +65,8 @@ def shortened(text: str, width: int) -> str:
     return (text[:kept].rstrip() + ELLIPSIS)[: max(width, 0)]
 
 
-def list_within(names: Sequence[str], width: int) -> str:
-    """Join names with commas, each made safe by `one_line`; what does not fit is counted.
+def list_within(names: Sequence[str], width: int, separator: str = ", ") -> str:
+    """Join names, each made safe by `one_line`; what does not fit is counted.
 
     Examples
     --------
@@ -76,7 +76,7 @@ def list_within(names: Sequence[str], width: int) -> str:
     text = ""
     for done, name in enumerate(map(one_line, names)):
         left = len(names) - done - 1
-        longer = f"{text}, {name}" if done else name
+        longer = f"{text}{separator}{name}" if done else name
         if cells_of(longer) + (len(f" +{left}") if left else 0) > width:
             return f"{text} +{left + 1}" if done else _first_alone(name, left, width)
         text = longer

@@ -39,6 +39,11 @@ class Cell(NamedTuple):
         """Share of the points that are inside, 0 where there are none."""
         return self.inside / self.points if self.points else 0.0
 
+    @property
+    def unjudged(self) -> bool:
+        """Whether no reference has a value at any of its states: neither held nor failed."""
+        return not self.points and self.verdict != "unavailable"
+
 
 @dataclass(frozen=True)
 class Standing:
@@ -46,7 +51,7 @@ class Standing:
 
     Attributes
     ----------
-    fluids : summary verdict -> fluids of it, worst first
+    fluids : summary verdict -> fluids of it, worst first; "unjudged" -> those without a reference at any state
     points, inside, unsolved : counts of points
     worst : the row with the largest deviation, None if there is no deviation at all
     held_by_all : fluids for which every point is inside against every reference source
@@ -69,7 +74,7 @@ class Standing:
 
     @property
     def failing(self) -> tuple[str, ...]:
-        """The fluids with a point that is not inside, worst first; `unavailable` ones are not among them."""
+        """The fluids with a point that is not inside, worst first; neither `unavailable` nor unjudged ones."""
         return self.fluids["outside"] + self.fluids["partly"] + self.fluids["undecided"]
 
     @property
@@ -118,14 +123,16 @@ class Overview:
 
     @property
     def unheld(self) -> tuple[str, ...]:
-        """The fluids that no candidate holds."""
+        """The fluids that no candidate holds, of those that were judged."""
         held = {fluid for standing in self.standings for fluid in standing.fluids["inside"]}
-        return tuple(fluid for fluid in self.fluids if fluid not in held)
+        return tuple(fluid for fluid in self.fluids if fluid not in held and fluid not in self.unjudged)
 
-
-def is_temperature(name: str) -> bool:
-    """Tell whether a property is a temperature: people read its deviations in K."""
-    return name in PROPERTIES and PROPERTIES[name].unit == "K"
+    @property
+    def unjudged(self) -> tuple[str, ...]:
+        """The fluids of which nothing was judged, since no reference has a value at any state."""
+        judged = {fluid for (fluid, _), cell in self.cells.items() if cell.points}
+        silent = {fluid for (fluid, _), cell in self.cells.items() if cell.unjudged}
+        return tuple(fluid for fluid in self.fluids if fluid in silent - judged)
 
 
 def deviation_unit(name: str) -> tuple[str, float]:
@@ -183,9 +190,9 @@ def together(rows: Sequence[SummaryRow]) -> Cell:
 
 
 def worst_rows(rows: Iterable[SummaryRow]) -> list[SummaryRow]:
-    """Sort summary rows worst first; those inside come last, `unavailable` ones not at all."""
+    """Sort summary rows worst first; those inside come last, those of which nothing was judged not at all."""
     order = {"outside": 0, "partly": 1, "undecided": 2, "inside": 3}
-    judged = [row for row in rows if row.verdict in order]
+    judged = [row for row in rows if row.verdict in order and row.points > row.no_reference]
     return sorted(judged, key=lambda row: (order[row.verdict], row.share_inside, -_size(row)))
 
 
@@ -289,7 +296,9 @@ def _standing(
 ) -> Standing:
     mine = {row.component: cells[row.component, candidate] for row in rows}
     ordered = sorted(mine, key=lambda fluid: (mine[fluid].share, place[fluid]))
-    fluids = {verdict: tuple(f for f in ordered if mine[f].verdict == verdict) for verdict in SUMMARY_VERDICTS}
+    judged = [fluid for fluid in ordered if not mine[fluid].unjudged]
+    fluids = {verdict: tuple(f for f in judged if mine[f].verdict == verdict) for verdict in SUMMARY_VERDICTS}
+    fluids["unjudged"] = tuple(fluid for fluid in ordered if mine[fluid].unjudged)
 
     def size(row: SummaryRow) -> float:
         return sizes.get((row.component, row.candidate, row.reference_source), -1.0) if sizes else _size(row)

@@ -10,7 +10,7 @@ import numpy as np
 from eosmuster.quantities import PROPERTIES, SINGLE_PHASE, UNITS, from_si
 from eosmuster.record import POINT_VERDICTS, Block, Record, Region, SummaryRow
 from eosmuster.report.text import list_within, number, one_line, shortened, some
-from eosmuster.report.views import Overview, Standing, deviation_unit
+from eosmuster.report.views import Cell, Overview, Standing, deviation_unit
 
 _BEST = 5  # candidates named in the answer
 _FEW = 6  # fluids whose windows are named there
@@ -26,32 +26,35 @@ def answer(record: Record, overview: Overview, width: int = 100) -> list[str]:
     -------
     a heading and one to three sentences, each within `width`
     """
-    count = some(len(overview.fluids), "fluid")
+    judged = len(overview.fluids) - len(overview.unjudged)
+    count = some(judged, "fluid") + (" judged" if overview.unjudged else "")
     reduced = "" if np.isnan(overview.reduced[0]) else ", T/Tc {:.3g} to {:.3g}".format(*overview.reduced)
     heading = f"{overview.label}, {overview.limit_text}{reduced}"
     best = [s for s in reversed(overview.standings) if s.held][:_BEST]
+    if not any(s.points for s in overview.standings):
+        why = "no reference has a value at any state" if overview.unjudged else "no candidate is available"
+        return [heading, f"nothing was judged: {why}"]
+    silent = [
+        _listed(f"nothing judged, no reference: {some(len(overview.unjudged), 'fluid')}", overview.unjudged, width)
+    ]
+    silent = silent if overview.unjudged else []
     if not best:
-        nearest = overview.standings[-1] if overview.standings else None
-        near = (
-            f"; nearest: {one_line(nearest.candidate)}, {percent(nearest.share)} of its points inside"
-            if nearest
-            else ""
-        )
-        return [heading, shortened(f"no candidate holds it for any of {count}{near}", width)]
-    everywhere = [s.candidate for s in reversed(overview.standings) if s.held == len(overview.fluids)]
+        nearest = overview.standings[-1]
+        near = f"; nearest: {one_line(nearest.candidate)}, {percent(nearest.share)} of its points inside"
+        none = f"no candidate holds it for {count}" if judged == 1 else f"no candidate holds it for any of {count}"
+        return [heading, shortened(none + near, width), *silent]
+    everywhere = [s.candidate for s in reversed(overview.standings) if s.held == judged]
     if everywhere:
-        return [
-            heading,
-            _listed(f"holds for {count}" if count == "1 fluid" else f"holds for all {count}", everywhere, width),
-        ]
-    sentences = [_listed(f"fluids held, of {len(overview.fluids)}", [f"{s.candidate} {s.held}" for s in best], width)]
+        return [heading, _listed(f"holds for {'' if judged == 1 else 'all '}{count}", everywhere, width), *silent]
+    of = f"{judged} judged" if overview.unjudged else str(judged)
+    sentences = [_listed(f"fluids held, of {of}", [f"{s.candidate} {s.held}" for s in best], width)]
     if len(best[0].failing) <= _FEW:
         start = f"where {one_line(best[0].candidate)} is inside, {temperature_unit(record)}"
         sentences.append(_listed(start, _where(record, overview), width))
     if overview.unheld:
         fluids = some(len(overview.unheld), "fluid")
         sentences.append(_listed(f"no candidate holds {fluids}", overview.unheld, width))
-    return [heading, *sentences]
+    return [heading, *sentences, *silent]
 
 
 def _listed(start: str, names: Sequence[str], width: int) -> str:
@@ -72,7 +75,10 @@ def _where(record: Record, overview: Overview) -> list[str]:
             span = " to ".join(number(shown_temperature(record, t), 5) for t in (w.from_K, w.to_K))
             source = f" ({w.reference_source})" if len(answering) > 1 else ""
             windows[w.component].append(span + source)
-    spans = [f"{fluid} {' and '.join(found) or 'nowhere'}" for fluid, found in windows.items()]
+    cells = overview.cells
+    spans = [
+        f"{fluid} {' and '.join(found) or _no_span(cells[fluid, best.candidate])}" for fluid, found in windows.items()
+    ]
     return [*spans, *(f"{fluid} unavailable" for fluid in best.fluids["unavailable"])]
 
 
@@ -87,8 +93,23 @@ def _where_in_plane(record: Record, overview: Overview, best: Standing) -> list[
             if (r.component, r.candidate, r.property) == (fluid, best.candidate, overview.name)
             and r.reference_source in answering
         ]
-        found.append(f"{fluid} {' and '.join(region_span(record, r) for r in mine) or 'nowhere'}")
+        spans = " and ".join(region_span(record, r) for r in mine)
+        found.append(f"{fluid} {spans or _no_span(overview.cells[fluid, best.candidate])}")
     return [*found, *(f"{fluid} unavailable" for fluid in best.fluids["unavailable"])]
+
+
+def _no_span(cell: Cell) -> str:
+    """Say where a candidate is inside that has neither window nor region: measured points span none."""
+    return "at some measured points" if cell.inside and all(map(measured, cell.sources)) else "nowhere"
+
+
+def measured(source: str) -> bool:
+    """Tell whether a reference is a measured file of the plan: its points lie scattered.
+
+    >>> measured("measured:lab.csv"), measured("coolprop")
+    (True, False)
+    """
+    return source.partition(":")[0] == "measured"
 
 
 def region_span(record: Record, region: Region) -> str:
@@ -97,7 +118,7 @@ def region_span(record: Record, region: Region) -> str:
         number(shown_temperature(record, float(t)), 5)
         for t in (min(region.outline.temperature), max(region.outline.temperature))
     )
-    return f"{span} ({percent(region.share)} of the plane)"
+    return f"{span} ({percent(region.share)} of the plan's rectangle)"
 
 
 def legend(record: Record) -> str:

@@ -1,4 +1,4 @@
-"""Cited handbook values: correlations with their range, tables of fixed states, and the bibliography.
+"""Cited handbook values: correlations with their range, and tables of fixed states.
 
 Everything is read from the CSV tables of ``references/handbook``, each row of which names its source in
 ``references/bibliography.bib``. Values leave here in SI and molar. A correlation is never extrapolated:
@@ -19,11 +19,7 @@ import numpy as np
 
 from eosmuster.components import catalogue
 from eosmuster.errors import InputError, suggestion
-from eosmuster.sources.bibliography import bibliography as bibliography  # noqa: PLC0414 (handed on)
-from eosmuster.sources.cited import Correlation as Correlation  # noqa: PLC0414
-from eosmuster.sources.cited import Table as Table  # noqa: PLC0414
-from eosmuster.sources.cited_uncertainty import uncertainty_borders as uncertainty_borders  # noqa: PLC0414
-from eosmuster.sources.cited_uncertainty import uncertainty_pct as uncertainty_pct  # noqa: PLC0414
+from eosmuster.sources.cited import Correlation, Table
 from eosmuster.sources.correlations import FORMS
 from eosmuster.sources.printed import last_digits
 from eosmuster.sources.rows import Row, flag, number, rows

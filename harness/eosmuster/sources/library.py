@@ -1,8 +1,8 @@
 """The reference library, CoolProp, behind a gate: saturated states. It answers only where its answer means something.
 
 By itself the library answers below the triple point and for blends, and its saturation pressures lose all
-digits where they get tiny. Here such a state has no answer, and a reason. Single-phase states are in
-`eosmuster.sources.library_states`.
+digits where they get tiny. Here such a state has no answer, and a reason; both are those of `library_gate`.
+Single-phase states are in `library_states`, uncertainties in `uncertainty`.
 """
 
 from __future__ import annotations
@@ -18,6 +18,7 @@ from eosmuster.quantities import GAS_CONSTANT, SATURATION
 from eosmuster.sources.backend import equation_pressure, evaluate, state
 from eosmuster.sources.library_gate import (
     ABOVE_RANGE,
+    ANSWERED,
     BELOW_RANGE,
     FAILED,
     INCONSISTENT,
@@ -26,17 +27,12 @@ from eosmuster.sources.library_gate import (
     Codes,
     Limits,
     check_properties,
+    limits,
     range_reason,
 )
-from eosmuster.sources.library_gate import ANSWERED as ANSWERED  # noqa: PLC0414 (handed on, as what follows)
-from eosmuster.sources.library_gate import LIBRARY as LIBRARY  # noqa: PLC0414
-from eosmuster.sources.library_gate import REASONS as REASONS  # noqa: PLC0414
-from eosmuster.sources.library_gate import citation as citation  # noqa: PLC0414
-from eosmuster.sources.library_gate import limits as limits  # noqa: PLC0414
+from eosmuster.sources.library_gate import LIBRARY as LIBRARY  # noqa: PLC0414 (handed on to references/generators)
 from eosmuster.sources.library_gate import version as version  # noqa: PLC0414
-from eosmuster.sources.library_states import density as density  # noqa: PLC0414
-from eosmuster.sources.uncertainty import uncertainty_borders as uncertainty_borders  # noqa: PLC0414
-from eosmuster.sources.uncertainty import uncertainty_pct as uncertainty_pct  # noqa: PLC0414
+from eosmuster.sources.library_states import density as density  # noqa: PLC0414 (handed on to sweeping/measured.py)
 
 Floats = NDArray[np.float64]
 
@@ -77,6 +73,7 @@ def saturation(component: Component, temperature: ArrayLike, properties: Sequenc
     Examples
     --------
     >>> from eosmuster.components import find
+    >>> from eosmuster.sources.library_gate import REASONS
     >>> answers = saturation(find("water"), [273.0, 373.1243], ["saturation_pressure"])
     >>> [f"{p:.0f}" for p in answers.values["saturation_pressure"]]
     ['nan', '101325']

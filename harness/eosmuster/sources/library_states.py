@@ -30,9 +30,7 @@ from eosmuster.sources.library_gate import (
     range_reason,
     reach,
 )
-from eosmuster.sources.library_gate import REASONS as REASONS  # noqa: PLC0414 (handed on, as what follows)
-from eosmuster.sources.library_roots import PHASES as PHASES  # noqa: PLC0414
-from eosmuster.sources.library_roots import evaluate
+from eosmuster.sources.library_roots import PHASES, evaluate
 
 Floats = NDArray[np.float64]
 
@@ -58,6 +56,7 @@ def single_phase(
     Examples
     --------
     >>> from eosmuster.components import find
+    >>> from eosmuster.sources.library_gate import REASONS
     >>> answers = single_phase(find("water"), 300.0, [1e3, 1e5, 1e8], "liquid", ["density", "speed_of_sound"])
     >>> answers.values["speed_of_sound"].round(1)
     array([   nan, 1501.5, 1667.9])

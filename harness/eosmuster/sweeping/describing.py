@@ -10,7 +10,8 @@ from eosmuster.components import Component
 from eosmuster.models.records import ModelRecord
 from eosmuster.plan.schema import Plan
 from eosmuster.plan.tolerances import rules_in_use
-from eosmuster.sources import handbook, library
+from eosmuster.sources import library_gate
+from eosmuster.sources.bibliography import bibliography
 from eosmuster.sweeping.series import Series
 
 
@@ -75,9 +76,8 @@ def model(record: ModelRecord) -> dict[str, Any]:
 
 def citations(series: Sequence[Series]) -> Mapping[str, str]:
     """Cite what was judged against."""
-    bibliography = handbook.bibliography()
     used = {s.citation for s in series if s.citation}
-    cited = {key: bibliography[key] for key in sorted(used)}
+    cited = {key: bibliography()[key] for key in sorted(used)}
     if any(not s.independent_of_library for s in series):
-        cited["coolprop"] = library.citation()
+        cited["coolprop"] = library_gate.citation()
     return cited

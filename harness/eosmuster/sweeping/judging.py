@@ -110,12 +110,6 @@ def judge(
         coverage_factor=plan.decision.coverage_factor,
         unfit_ratio=plan.decision.unfit_ratio,
     )
-    note = np.where(judgement.simple_rule, _SIMPLE, 0).astype(np.int16)
-    unsolved = judgement.verdict == _UNSOLVED
-    found = why[list(rows)][:, state][unsolved]
-    note[unsolved] = np.where(found == 0, NO_VALUE, found)
-    missing = np.broadcast_to(NO_REFERENCE if series.missing is None else series.missing, note.shape)
-    note = np.where(judgement.verdict == _NO_REFERENCE_VERDICT, missing, note).astype(np.int16)
     about = PROPERTIES[series.property]
     block = Block(
         component=component.name,
@@ -136,41 +130,28 @@ def judge(
         deviation_pct=deviation,
         probability_inside=judgement.probability_inside,
         verdict=judgement.verdict,
-        note=note,
+        note=_notes(judgement, why[list(rows)][:, state], series.missing),
         notes=NOTES,
         contested=contested,
     )
     return Judged(series, block, rows, mine)
 
 
+def _notes(
+    judgement: verdicts.Judgement, why: NDArray[np.int16], missing: NDArray[np.int16] | None
+) -> NDArray[np.int16]:
+    """Give the number in `NOTES` of each point: why it is unsolved or has no reference, or which rule judges it."""
+    note = np.where(judgement.simple_rule, _SIMPLE, 0).astype(np.int16)
+    unsolved = judgement.verdict == _UNSOLVED
+    note[unsolved] = np.where(why[unsolved] == 0, NO_VALUE, why[unsolved])
+    no_value = np.broadcast_to(NO_REFERENCE if missing is None else missing, note.shape)
+    return np.where(judgement.verdict == _NO_REFERENCE_VERDICT, no_value, note).astype(np.int16)
+
+
 def summarise(block: Block, rule: str) -> Iterator[SummaryRow]:
     """Yield one row a candidate."""
-    found = deviations.statistics(block.deviation_pct, block.temperature)
     counts = verdicts.tally(block.verdict)
-    compared = ~np.isnan(block.deviation_pct)
-    known = np.broadcast_to(~np.isnan(block.reference), compared.shape)
-    stated = known & ~np.isnan(block.reference_uncertainty_pct)
-    numbers = {
-        "aad_pct": found.aad,
-        "bias_pct": found.bias,
-        "rms_pct": found.rms,
-        "median_pct": found.median,
-        "p95_pct": found.p95,
-        "max_pct": found.maximum,
-        "max_at_K": found.max_at_K,
-        "passing_limit_pct": verdicts.passing_limit_pct(
-            block.deviation_pct, block.reference_uncertainty_pct, block.verdict, rule
-        ),
-        "false_acceptance_pct": verdicts.false_acceptance_pct(block.probability_inside, block.verdict),
-        "surely_passing_limit_pct": verdicts.surely_passing_limit_pct(
-            block.deviation_pct, block.reference_uncertainty_pct, block.verdict
-        ),
-        "max_at_Pa": _pressure_of_largest(block),
-        "mean_predicted": deviations.means(block.predicted, compared),
-        "mean_reference": deviations.means(block.reference, compared),
-        "mean_limit_pct": deviations.means(block.limit_pct, known),
-        "mean_uncertainty_pct": deviations.means(block.reference_uncertainty_pct, stated),
-    }
+    numbers = _statistics(block, rule)
     by_candidate = zip(*(values.tolist() for values in numbers.values()), strict=True)
     for i, (candidate, row) in enumerate(zip(block.candidates, by_candidate, strict=True)):
         inside, outside, undecided, unfit, unsolved, no_reference = counts[i].tolist()
@@ -195,6 +176,35 @@ def summarise(block: Block, rule: str) -> Iterator[SummaryRow]:
             note=_summary_note(block, i, unsolved, unfit),
             **dict(zip(numbers, row, strict=True)),
         )
+
+
+def _statistics(block: Block, rule: str) -> dict[str, Floats]:
+    """Give the columns of the summary that are computed: name in `SummaryRow` -> one number a candidate."""
+    found = deviations.statistics(block.deviation_pct, block.temperature)
+    compared = ~np.isnan(block.deviation_pct)
+    known = np.broadcast_to(~np.isnan(block.reference), compared.shape)
+    stated = known & ~np.isnan(block.reference_uncertainty_pct)
+    return {
+        "aad_pct": found.aad,
+        "bias_pct": found.bias,
+        "rms_pct": found.rms,
+        "median_pct": found.median,
+        "p95_pct": found.p95,
+        "max_pct": found.maximum,
+        "max_at_K": found.max_at_K,
+        "passing_limit_pct": verdicts.passing_limit_pct(
+            block.deviation_pct, block.reference_uncertainty_pct, block.verdict, rule
+        ),
+        "false_acceptance_pct": verdicts.false_acceptance_pct(block.probability_inside, block.verdict),
+        "surely_passing_limit_pct": verdicts.surely_passing_limit_pct(
+            block.deviation_pct, block.reference_uncertainty_pct, block.verdict
+        ),
+        "max_at_Pa": _pressure_of_largest(block),
+        "mean_predicted": deviations.means(block.predicted, compared),
+        "mean_reference": deviations.means(block.reference, compared),
+        "mean_limit_pct": deviations.means(block.limit_pct, known),
+        "mean_uncertainty_pct": deviations.means(block.reference_uncertainty_pct, stated),
+    }
 
 
 def _pressure_of_largest(block: Block) -> Floats:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import hashlib
-from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
 
@@ -13,13 +13,15 @@ from numpy.typing import NDArray
 from eosmuster.components import Component
 from eosmuster.diagnose.measured import Predictions, Suspicion, exchanged, suspicions
 from eosmuster.plan.schema import Plan
+from eosmuster.progress import Progress
 from eosmuster.quantities import PROPERTIES
 from eosmuster.sources import library
 from eosmuster.sources.measured.table import MeasuredSet, Reading
+from eosmuster.sweeping.planes import Plane
+from eosmuster.sweeping.scattered import scattered
 from eosmuster.sweeping.series import Nodes, Series
 
 Floats = NDArray[np.float64]
-Progress = Callable[[str, int, int], None]
 
 PREFIX = "measured:"
 """Measured sources are called by this and their DOI, or their file where that names none."""
@@ -31,9 +33,10 @@ class Measured:
 
     Attributes
     ----------
-    series : one a component, property and source
+    series : of saturated states, one a component, property and source
+    planes : of single-phase densities, one a component that is swept and source
     conflicts : (component, property, sentence) of sets that contradict the reference library, with the cause
-    left_out : (file, why) of what could not be read
+    left_out : (file, why) of what could not be read, (component, why) of single-phase points that are not judged
     files : (name, SHA-256) of every file read
     citations : source of a series -> full reference, as far as the file has it, and the files it was read from
     """
@@ -43,6 +46,7 @@ class Measured:
     left_out: tuple[tuple[str, str], ...] = ()
     files: tuple[tuple[str, str], ...] = ()
     citations: Mapping[str, str] = field(default_factory=dict)
+    planes: tuple[Plane, ...] = ()
 
 
 @dataclass(frozen=True, eq=False)
@@ -72,14 +76,16 @@ def measure(plan: Plan, progress: Progress) -> Measured:
         return Measured()
     folder, reading = folder_of(plan), read(plan, progress)
     names = sorted({one.source.file for one in reading.sets})
-    series = tuple(_series(plan, reading))
-    used = {one.source for one in series}
+    series, left_out = tuple(_series(plan, reading)), list(_diagnostics(reading))
+    planes = tuple(scattered(plan, reading.sets, PREFIX, left_out))
+    used = {one.source for one in (*series, *(one for plane in planes for one in plane.series))}
     return Measured(
         series,
         tuple((h.one.component.name, h.one.property, h.sentence) for h in held(reading, progress)),
-        tuple(_diagnostics(reading)),
+        tuple(left_out),
         tuple((name, _hash(folder / name)) for name in names),
         {key: text for key, text in citations(reading.sets).items() if key in used},
+        planes,
     )
 
 
@@ -131,7 +137,8 @@ def _hash(path: Path) -> str:
 def _diagnostics(reading: Reading) -> Iterator[tuple[str, str]]:
     for d in reading.diagnostics:
         where = f"{d.file}, block {d.block}" if d.block else d.file
-        yield where, f"{d.sentence}{f' ({d.lost} values lost)' if d.lost else ''}"
+        lost = f" ({d.lost} value{'s' if d.lost > 1 else ''} lost)" if d.lost else ""
+        yield where, d.sentence + lost
 
 
 def _series(plan: Plan, reading: Reading) -> Iterator[Series]:

@@ -13,7 +13,7 @@ from eosmuster.components import Component
 from eosmuster.models.model import BoundModel, bind
 from eosmuster.models.records import ModelRecord
 from eosmuster.plan.schema import Plan, SinglePhaseGrid
-from eosmuster.quantities import SINGLE_PHASE
+from eosmuster.quantities import PROPERTIES, SINGLE_PHASE
 from eosmuster.singlephase import caloric, solver
 from eosmuster.singlephase.solver import SinglePhase
 from eosmuster.sources import library_gate, library_states
@@ -22,8 +22,6 @@ from eosmuster.sweeping.judging import NO_REFERENCE, NOT_STABLE, Judged, judge
 from eosmuster.sweeping.series import Nodes, Series, uncertainty_levels
 
 Floats = NDArray[np.float64]
-Progress = Callable[[str, int, int], None]
-"""Called with what is being done, how much of it is done, and how much there is."""
 
 SINGLE_PHASE_NOTES = np.array([0, 8, 5, 5, 7], np.int16)
 """Status of the single-phase solver -> note, in the order of `eosmuster.singlephase.solver.STATUSES`."""
@@ -39,6 +37,7 @@ class Plane:
     temperature, pressure : (n,), K and Pa: pressure by pressure, each with all temperatures
     ideal_heat_capacity : (n,), J/(mol K): the reference's own, so that only the residual part is judged
     series : one a property, on these states
+    rectangle : whether its states are the plan's own; measured ones lie scattered, and span no region
     """
 
     row: int
@@ -46,35 +45,54 @@ class Plane:
     pressure: Floats
     ideal_heat_capacity: Floats
     series: tuple[Series, ...]
+    rectangle: bool = True
 
 
 @dataclass(frozen=True)
 class JudgedPlanes:
-    """What regions are looked for in.
+    """What regions are looked for in, and what was judged beside it.
 
     Attributes
     ----------
-    planes : of the components that have a reference
+    planes : the rectangles, of the components that have a reference on them
     judged : series by series, plane by plane
     bound : the models, with the plan's rule above the critical temperature
+    scattered : of measured states, in which no region is looked for
     """
 
     planes: tuple[Plane, ...]
     judged: tuple[Judged, ...]
     bound: tuple[BoundModel, ...]
+    scattered: tuple[Judged, ...] = ()
 
 
-def collect_planes(plan: Plan, left_out: list[tuple[str, str]]) -> Iterator[Plane]:
-    """Yield the single-phase states of each component with the reference library's values; none if there are none."""
+def collect_planes(plan: Plan, measured: Sequence[Plane], left_out: list[tuple[str, str]]) -> Iterator[Plane]:
+    """Yield the single-phase states of each component with the values of its references; none if there are none.
+
+    Parameters
+    ----------
+    measured : what the plan's files have; they come behind the library's plane of their component
+    left_out : gets what no reference has a value for
+    """
     grid, names = plan.single_phase, [name for name in plan.properties if name in SINGLE_PHASE]
     if grid is None or not names:
         return
     for row in plan.rows:
-        component = plan.components[row]
-        if "coolprop" not in plan.references_use or library_gate.limits(component) is None:
-            left_out.append((component.name, "no reference for its single-phase states but the library's equations"))
-            continue
-        yield _plane(plan, grid, row, component, names)
+        component, own = plan.components[row], [plane for plane in measured if plane.row == row]
+        if "coolprop" in plan.references_use and library_gate.limits(component) is not None:
+            yield _plane(plan, grid, row, component, names)
+        elif why := _without_library(names, own):
+            left_out.append((component.name, why))
+        yield from own
+
+
+def _without_library(names: Sequence[str], measured: Sequence[Plane]) -> str:
+    """Say which properties have no reference where the library's equations are none; "" if all have."""
+    covered = {one.property for plane in measured for one in plane.series}
+    if not covered:
+        return "no reference for its single-phase states: neither the library's equations nor measured densities"
+    rest = [PROPERTIES[name].label for name in names if name not in covered]
+    return f"no reference for its {', '.join(rest)}: only its density was measured" if rest else ""
 
 
 def flat(grid: SinglePhaseGrid) -> tuple[Floats, Floats]:
@@ -103,7 +121,7 @@ def _plane(plan: Plan, grid: SinglePhaseGrid, row: int, component: Component, na
             "",
             nodes,
             answers.values[name],
-            _of_these_states(uncertainty(plan, component, name, T, p)),
+            of_these_states(uncertainty(plan, component, name, T, p)),
             None,
             independent_of_library=False,
             phase=grid.phase,
@@ -120,8 +138,8 @@ def uncertainty(plan: Plan, component: Component, name: str, T: Floats, p: Float
     return uncertainty_pct(component, name, T, factor, pressure=p, **levels)
 
 
-def _of_these_states(values: Floats) -> Callable[[Floats], Floats]:
-    """Answer for the series' own states alone: the uncertainty depends on pressure too."""
+def of_these_states(values: Floats) -> Callable[[Floats], Floats]:
+    """Answer for a series' own states alone: the uncertainty is no function of the temperature."""
     return lambda _temperature: values
 
 
@@ -143,14 +161,24 @@ def judge_planes(
     if plan.single_phase is None or not planes:
         return JudgedPlanes((), (), ())
     bound = bind_all(records, components, plan.single_phase)
+    kinds = [tuple(plane for plane in planes if plane.rectangle is kind) for kind in (True, False)]
+    whole, scattered = (tuple(_judged(plan, of_kind, bound, components)) for of_kind in kinds)
+    return JudgedPlanes(kinds[0], whole, bound, scattered)
+
+
+def _judged(
+    plan: Plan, planes: Sequence[Plane], bound: Sequence[BoundModel], components: Sequence[Component]
+) -> Iterator[Judged]:
+    """Judge planes that have the same properties, series by series."""
+    if plan.single_phase is None or not planes:
+        return
     predicted, why = _predict_all(bound, planes, components, plan.single_phase.phase)
-    judged, start = [], 0
+    start = 0
     for plane in planes:
         stretch = slice(start, start := start + plane.temperature.size)
         for one in plane.series:
             values = predicted[one.property][:, stretch]
-            judged.append(judge(plan, one, components[plane.row], bound, values, why[:, stretch]))
-    return JudgedPlanes(tuple(planes), tuple(judged), bound)
+            yield judge(plan, one, components[plane.row], bound, values, why[:, stretch])
 
 
 def _predict_all(

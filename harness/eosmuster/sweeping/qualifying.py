@@ -16,6 +16,7 @@ from eosmuster.components import Component
 from eosmuster.models.model import BoundModel
 from eosmuster.plan.schema import Plan, SinglePhaseGrid
 from eosmuster.plan.tolerances import limit_pct, limit_steps
+from eosmuster.progress import Progress
 from eosmuster.quantities import PROPERTIES
 from eosmuster.record import Region
 from eosmuster.saturation import solver as saturation
@@ -23,7 +24,7 @@ from eosmuster.singlephase import solver
 from eosmuster.sources import library_gate, library_states
 from eosmuster.sources.uncertainty import pressure_borders, uncertainty_borders
 from eosmuster.sweeping.judging import Judged
-from eosmuster.sweeping.planes import PROPERTY, JudgedPlanes, Progress, molar_masses, uncertainty
+from eosmuster.sweeping.planes import PROPERTY, JudgedPlanes, molar_masses, uncertainty
 from eosmuster.sweeping.series import uncertainty_levels
 
 Floats = NDArray[np.float64]

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import asdict, dataclass, replace
 
 from eosmuster.compare.deviations import deviation_pct, statistics
@@ -11,6 +11,7 @@ from eosmuster.models.model import BoundModel
 from eosmuster.models.records import ModelRecord
 from eosmuster.plan.schema import Plan
 from eosmuster.plan.selection import model_records
+from eosmuster.progress import Progress, silent
 from eosmuster.quantities import SATURATION
 from eosmuster.record import Record, SummaryRow
 from eosmuster.sweeping import describing
@@ -22,15 +23,9 @@ from eosmuster.sweeping.planes import Plane, collect_planes, judge_planes
 from eosmuster.sweeping.predictions import Predictions
 from eosmuster.sweeping.qualifying import regions
 from eosmuster.sweeping.refining import windows
-from eosmuster.sweeping.series import Series, collect, refuse_empty
+from eosmuster.sweeping.saturated import collect
+from eosmuster.sweeping.series import Series, refuse_empty
 from eosmuster.sweeping.watching import Watched, watch
-
-Progress = Callable[[str, int, int], None]
-"""Called with what is being done, how much of it is done, and how much there is."""
-
-
-def silent(_what: str, _done: int, _of: int) -> None:
-    """Report nothing."""
 
 
 def run(plan: Plan, progress: Progress = silent) -> Record:
@@ -50,7 +45,7 @@ def run(plan: Plan, progress: Progress = silent) -> Record:
     found_windows = windows(plan, saturated, predictions.bound)
     progress("windows", 1, 1)
     in_planes = judge_planes(plan, found.planes, records, chosen.components)
-    judged = [*saturated, *in_planes.judged]
+    judged = [*saturated, *in_planes.judged, *in_planes.scattered]
     summary = _compared(_summary(plan, judged, predictions.bound), chosen, plan, found.series, records)
     record = Record(
         plan_name=plan.name,
@@ -95,9 +90,9 @@ def _gather(plan: Plan, progress: Progress) -> _Gathered:
     for one in collect(saturated, left_out):
         series.append(one)
         progress("references", one.row + 1, len(plan.components))
-    measured = measure(saturated, progress)
+    measured = measure(plan, progress)
     series += [one for one in measured.series if one.row in plan.rows]
-    for plane in collect_planes(plan, left_out):
+    for plane in collect_planes(plan, measured.planes, left_out):
         planes.append(plane)
         progress("single-phase references", plane.row + 1, len(plan.components))
     if plan.part is None:  # a part may have nothing to do, which the others make up for

@@ -1,8 +1,8 @@
-"""References as series: one component, property and source on the states of a plan, ready to be judged against."""
+"""A reference as a series: one component, property and source on the states of a plan, ready to be judged against."""
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable, Iterator
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
@@ -10,19 +10,10 @@ from numpy.typing import NDArray
 
 from eosmuster.components import Component
 from eosmuster.errors import NothingJudged
-from eosmuster.plan.schema import Decision, Plan
-from eosmuster.plan.tolerances import limit_steps
-from eosmuster.quantities import SATURATION
-from eosmuster.sources import handbook, library, library_gate
+from eosmuster.plan.schema import Decision
 
 Floats = NDArray[np.float64]
 Step = tuple[float, str]
-
-_ONE_TEMPERATURE = 2e-9
-"""Relative: limits are looked up 1e-9 off a step (`compare.axis`), so steps nearer than twice that would overlap."""
-
-BY_TEMPERATURE = tuple(name for name in SATURATION if name != "boiling_temperature")
-"""Properties asked for at a temperature; the boiling temperature is always asked for at a pressure."""
 
 
 @dataclass(frozen=True)
@@ -77,215 +68,9 @@ class Series:
     missing: NDArray[np.int16] | None = None
 
 
-def collect(plan: Plan, left_out: list[tuple[str, str]]) -> Iterator[Series]:
-    """Yield every series of a plan, component by component; what a source cannot give is said in `left_out`."""
-    for row in plan.rows if plan.properties else ():
-        component = plan.components[row]
-        if "coolprop" in plan.references_use:
-            yield from _library_series(plan, row, component, left_out)
-        if "handbook" in plan.references_use and component.cas:
-            yield from _correlation_series(plan, row, component)
-            yield from _table_series(plan, row, component)
-
-
-def _library_series(plan: Plan, row: int, component: Component, left_out: list[tuple[str, str]]) -> Iterator[Series]:
-    limits = library_gate.limits(component)
-    if limits is None:
-        left_out.append((component.name, "the reference library has no equation for it"))
-        return
-    grid = plan.grid.states_for(component)
-    by_pressure = plan.grid.coordinate == "pressure"
-    given = grid
-    if by_pressure:
-        grid = library.at_pressure(component, given, ["boiling_temperature"]).values["boiling_temperature"]
-        known = np.isfinite(grid)
-        if not known.all():
-            why = f"{int((~known).sum())} of {grid.size} pressures lie outside the reference library's range"
-            left_out.append((component.name, why))
-        if not known.any():
-            return
-        given = given[known]
-    ends = (limits.from_K, limits.to_K)
-    steps = {
-        p: _steps(
-            [*_tolerance_steps(plan, component, p), *_uncertainty_steps(component, p, plan.decision)], ends, grid
-        )
-        for p in plan.properties
-    }
-    nodes = _nodes(grid, (t for p in plan.properties for t, _ in steps[p]), ends)
-    wanted = sorted({"saturation_pressure", *plan.properties} - {"boiling_temperature"})
-    values = dict(library.saturation(component, nodes.temperature, wanted).values)
-    values["boiling_temperature"] = np.where(np.isfinite(values["saturation_pressure"]), nodes.temperature, np.nan)
-    pressure = values["saturation_pressure"].copy()
-    if by_pressure:
-        pressure[nodes.state] = given
-    for name in plan.properties:
-        at_pressure = name == "boiling_temperature" or (by_pressure and name != "saturation_pressure")
-        stated = pressure if by_pressure or at_pressure else nodes.pressure
-        placed = Nodes(nodes.temperature, stated, nodes.state, at_pressure)
-        yield Series(
-            component,
-            row,
-            name,
-            library.LIBRARY,
-            "",
-            placed,
-            values[name],
-            _library_uncertainty(component, name, plan.decision),
-            _library_evaluator(component, name, at_pressure),
-            steps[name],
-            independent_of_library=False,
-        )
-
-
-def _library_uncertainty(component: Component, name: str, decision: Decision) -> Callable[[Floats], Floats]:
-    factor, levels = decision.coverage_factor, uncertainty_levels(decision)
-    return lambda t: library.uncertainty_pct(component, name, t, factor, **levels)
-
-
 def uncertainty_levels(decision: Decision) -> dict[str, bool]:
     """Say which uncertainties count by a decision rule, as the sources are asked for them."""
     return {"remembered": decision.uncertainty != "read", "assumed": decision.uncertainty == "assumed"}
-
-
-def _cited_uncertainty(
-    reference: handbook.Correlation | handbook.Table, name: str, decision: Decision
-) -> Callable[[Floats], Floats]:
-    factor, assumed = decision.coverage_factor, decision.uncertainty == "assumed"
-    return lambda t: handbook.uncertainty_pct(reference, t, factor, name=name, assumed=assumed)[0]
-
-
-def _library_evaluator(
-    component: Component, name: str, at_pressure: bool
-) -> Callable[[Floats], tuple[Floats, Floats]]:
-    def evaluate(temperature: Floats) -> tuple[Floats, Floats]:
-        wanted = [p for p in BY_TEMPERATURE if p == name or (at_pressure and p == "saturation_pressure")]
-        values = library.saturation(component, temperature, wanted).values
-        pressure = values["saturation_pressure"] if at_pressure else np.full(temperature.shape, np.nan)
-        if name == "boiling_temperature":
-            return np.where(np.isfinite(pressure), temperature, np.nan), pressure
-        return values[name], pressure
-
-    return evaluate
-
-
-def _correlation_series(plan: Plan, row: int, component: Component) -> Iterator[Series]:
-    """Series of the handbook correlations, only where the plan's states lie in their range."""
-    by_pressure = plan.grid.coordinate == "pressure"
-    for name in plan.properties:
-        needs_vapor_pressure = name in {"saturation_pressure", "boiling_temperature"}
-        if by_pressure and not needs_vapor_pressure:
-            continue  # at a given pressure its temperature would have to come from another source
-        asked = "saturation_pressure" if needs_vapor_pressure else name
-        for correlation in handbook.correlations(component.cas, asked):
-            grid = plan.grid.states_for(component)
-            given = grid
-            if by_pressure:
-                grid = correlation.temperatures_at(given)
-            ends = gate(correlation, component)
-            inside = (grid >= ends[0]) & (grid <= ends[1])
-            if not inside.any():
-                continue
-            assumed = plan.decision.uncertainty == "assumed"
-            borders = [(t, "undecided") for t in handbook.uncertainty_borders(correlation, assumed=assumed)]
-            steps = _steps([*_tolerance_steps(plan, component, name), *borders], ends, grid)
-            nodes = _nodes(grid, (t for t, _ in steps), ends)
-            reach = (nodes.temperature >= ends[0]) & (nodes.temperature <= ends[1])
-            values = np.where(reach, correlation(nodes.temperature), np.nan)
-            at_pressure = name == "boiling_temperature"
-            pressure = values.copy() if by_pressure or at_pressure else nodes.pressure
-            if by_pressure:
-                pressure[nodes.state] = given[np.isfinite(grid)]
-            if at_pressure:
-                values = np.where(reach, nodes.temperature, np.nan)
-            state = nodes.state[reach[nodes.state]]
-            yield Series(
-                component,
-                row,
-                name,
-                correlation.source,
-                correlation.citation,
-                Nodes(nodes.temperature, pressure, state, at_pressure),
-                values,
-                _cited_uncertainty(correlation, name, plan.decision),
-                _correlation_evaluator(correlation, name, ends),
-                steps,
-            )
-
-
-def gate(correlation: handbook.Correlation, component: Component) -> tuple[float, float]:
-    """Range in K in which a correlation is used: its own, but never below the triple point or above Tc."""
-    low = max(correlation.from_K, component.triple_temperature or 0.0)
-    return low, min(correlation.to_K, component.critical_temperature)
-
-
-def _correlation_evaluator(
-    correlation: handbook.Correlation, name: str, ends: tuple[float, float]
-) -> Callable[[Floats], tuple[Floats, Floats]]:
-    def evaluate(temperature: Floats) -> tuple[Floats, Floats]:
-        gated = (temperature >= ends[0]) & (temperature <= ends[1])
-        values = np.where(gated, correlation(temperature), np.nan)
-        if name == "boiling_temperature":
-            return np.where(np.isfinite(values), temperature, np.nan), values
-        return values, np.full(temperature.shape, np.nan)
-
-    return evaluate
-
-
-def _table_series(plan: Plan, row: int, component: Component) -> Iterator[Series]:
-    """Series of tabulated values inside the plan's own range; they bring their own states."""
-    grid = plan.grid.states_for(component)
-    for name in plan.properties:
-        for table in handbook.tables(component.cas, name):
-            along = table.pressure if plan.grid.coordinate == "pressure" else table.temperature
-            inside = (along >= grid[0]) & (along <= grid[-1]) & (table.temperature < component.critical_temperature)
-            inside &= table.temperature >= (component.triple_temperature or 0.0) * (1.0 - _ONE_TEMPERATURE)
-            if not inside.any():
-                continue
-            at_pressure = name == "boiling_temperature"
-            pressure = table.pressure[inside] if at_pressure else np.full(int(inside.sum()), np.nan)
-            nodes = Nodes(table.temperature[inside], pressure, np.arange(int(inside.sum())), at_pressure)
-            uncertainty = _cited_uncertainty(table, name, plan.decision)
-            yield Series(
-                component, row, name, table.source, table.citation, nodes, table.values[inside], uncertainty, None
-            )
-
-
-def _tolerance_steps(plan: Plan, component: Component, name: str) -> list[Step]:
-    at = limit_steps(plan.tolerances, component, name)
-    return [(tr * component.critical_temperature, "limit_step") for tr in at]
-
-
-def _uncertainty_steps(component: Component, name: str, decision: Decision) -> list[Step]:
-    return [(t, "undecided") for t in library.uncertainty_borders(component, name, **uncertainty_levels(decision))]
-
-
-def _steps(steps: Iterable[Step], ends: tuple[float, float], grid: Floats) -> tuple[Step, ...]:
-    """Join the steps between limits and the ends of a reference's range.
-
-    A step that rounding alone keeps apart from a state, an end or another step moves there: 0.9 Tc is one
-    temperature, whether it was computed, read from a file, or is the 19th of 21 states.
-    """
-    places = np.array([*grid[np.isfinite(grid)], *ends])
-    joined = []
-    for t, kind in steps:
-        nearest = float(places[np.argmin(np.abs(places - t))])
-        at = nearest if abs(nearest - t) <= _ONE_TEMPERATURE * t else t
-        places = np.append(places, at)
-        joined.append((at, kind))
-    return (*joined, *((end, "reference_limit") for end in ends))
-
-
-def _nodes(grid: Floats, steps: Iterable[float], reach: tuple[float, float]) -> Nodes:
-    """Join states, in rising order, and the steps between them.
-
-    A state may be NaN at either end of the grid, where its pressure lies outside a reference's range (`reach`, K):
-    the plan then goes on as far as that range does.
-    """
-    known = grid[np.isfinite(grid)]
-    low, high = (end if np.isnan(state) else state for end, state in zip(reach, grid[[0, -1]], strict=True))
-    temperature = np.unique([*known, *(t for t in (*steps, *reach) if low <= t <= high)])
-    return Nodes(temperature, np.full(temperature.shape, np.nan), np.searchsorted(temperature, known))
 
 
 def refuse_empty(series: list[Series]) -> None:

@@ -146,10 +146,10 @@ def test_a_region_is_where_its_corners_are(plane_record, read_page):
 def test_states_and_regions_are_listed_beside_their_pictures(plane_record, read_page):
     page = read_page(plane_record)
     assert page.one("table", id="areas-0").rows() == [
-        ["PR", "alphane", "coolprop", "liquid", "41 %", "2", "1", "-33.15 to 76.85 (41 % of the plane)"]
+        ["PR", "alphane", "coolprop", "liquid", "41 %", "2", "1", "-33.15 to 76.85 (41 % of the plan's rectangle)"]
     ]
     captions = [f.one("figcaption").text for f in page.one("section", id="regions").all("figure")]
-    assert captions[0] == "PR -33.15 to 76.85 (41 % of the plane); 1 smaller not drawn"
+    assert captions[0] == "PR -33.15 to 76.85 (41 % of the plan's rectangle); 1 smaller not drawn"
     assert captions[1] == "SRK inside nowhere"
     block = plane_record.blocks[0]
     picture = page.all("svg", class_="reg")[1]

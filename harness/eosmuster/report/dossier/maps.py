@@ -77,6 +77,8 @@ def mark(cell: Cell | None, fluid: str, candidate: str) -> Mark:
         return Mark("void", "", f"{who}: not asked")
     if cell.verdict == "unavailable":
         return Mark("na", "n/a", f"{who}: unavailable")
+    if cell.unjudged:
+        return Mark("na", "–", f"{who}: no reference, so nothing was judged")
     inside = f"{cell.inside} of {some(cell.points, 'point')} inside"
     words = f"{who}: {inside}" + (f", {cell.unsolved} unsolved" if cell.unsolved else "")
     if cell.verdict == "inside":

@@ -8,7 +8,7 @@ from typing import Any
 import numpy as np
 
 from eosmuster.quantities import from_si
-from eosmuster.record import Block, Record, Region, WindowRow
+from eosmuster.record import POINT_VERDICTS, Block, Record, Region, WindowRow
 from eosmuster.report import words
 from eosmuster.report.dossier import bars, data, figures, maps, regions, svg, tables
 from eosmuster.report.dossier.data import Subject
@@ -157,6 +157,8 @@ def _bar(
     cell = subject.view.cells.get((fluid, candidate))
     if cell is None or cell.verdict == "unavailable":
         return {"drawing": "", "text": "n/a"}
+    if cell.unjudged:
+        return {"drawing": "", "text": "no reference"}
     own = found.get((fluid, candidate), [])
     sources = dict.fromkeys(w.reference_source for w in own)
     shown = [w for w in own if w.reference_source == next(iter(sources))]
@@ -213,9 +215,18 @@ def _region_maps(
     for candidate in offered[:_REGIONS]:
         region = by_candidate.get(candidate)
         rings = [] if region is None else [shown(r.temperature, r.pressure) for r in (region.outline, *region.holes)]
-        said = "inside nowhere" if region is None else words.region_span(record, region)
+        said = _without_region(block, candidate) if region is None else words.region_span(record, region)
         label = f"{svg.isolated(candidate)}, {svg.isolated(fluid)}: {said}"
         drawing = regions.region_map(axes, states, block, region, rings, candidate, label, (unit_t, unit_p))
         further = "" if region is None or region.connected < 2 else f"; {region.connected - 1} smaller not drawn"
         maps_of.append({"candidate": svg.name(candidate, 40), "text": said + further, "drawing": drawing})
     return maps_of
+
+
+def _without_region(block: Block | None, candidate: str) -> str:
+    """Say where a candidate without a region is inside; no region is looked for among measured points."""
+    if block is None or not words.measured(block.reference_source):
+        return "inside nowhere"
+    verdicts = block.verdict[block.candidates.index(candidate)]
+    inside = int((verdicts == POINT_VERDICTS.index("inside")).sum())
+    return f"inside at {inside} of {some(verdicts.size, 'measured point')}"

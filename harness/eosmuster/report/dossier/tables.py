@@ -75,10 +75,10 @@ def cut(
     )
 
 
-def standings(subject: Subject, record: Record, most: int = data.MOST_CANDIDATES) -> Table:
+def standings(subject: Subject, record: Record) -> Table:
     """Count the fluids and points of each candidate, worst first; of too many the worst are left out."""
     view = subject.view
-    rows = [_standing_row(s) for s in view.standings[-most:]]
+    rows = [_standing_row(s) for s in view.standings[-data.MOST_CANDIDATES :]]
     headers = ["candidate", "held", "by all", "undecided", "partly", "outside", "n/a", "points", "inside", "unsolved"]
     headers += ["largest deviation", "in", "held", "not held, worst first"]
     return Table(
@@ -224,7 +224,7 @@ def regions(subject: Subject, record: Record, most: int) -> Table:
         ]
         for r in sorted(subject.regions, key=lambda r: -r.share if np.isfinite(r.share) else 0.0)
     ]
-    headers = ["candidate", "fluid", "reference", "phase", "share of the plane", "separate regions", "holes"]
+    headers = ["candidate", "fluid", "reference", "phase", "share of the rectangle", "separate regions", "holes"]
     headers += [f"temperatures, {words.temperature_unit(record)}"]
     caption = f"{subject.view.label}: regions of temperature and pressure, the largest first"
     return cut(

@@ -4,11 +4,12 @@ from __future__ import annotations
 
 import glob
 import os
-from collections.abc import Callable, Iterable, Iterator, Sequence
+from collections.abc import Iterable, Iterator, Sequence
 from pathlib import Path
 
 from eosmuster.components import Component
 from eosmuster.errors import InputError
+from eosmuster.progress import Progress
 from eosmuster.quantities import shown
 from eosmuster.sources.laboratory import reader as laboratory
 from eosmuster.sources.measured.repeats import combined
@@ -21,9 +22,6 @@ IN_FOLDERS = (THERMOML, ".csv", ".tsv")
 """Kinds that are looked for in a folder, where a text may be anything."""
 
 DESCRIPTOR = ".json"
-
-Progress = Callable[[str, int, int], None]
-"""Told what is done, how much of it, and of how much."""
 
 
 def read_files(
@@ -76,7 +74,7 @@ def _matching(pattern: str, folder: Path) -> list[str]:
         raise InputError(f"references.files: {shown(pattern)} cannot be looked for: {error}") from None
 
 
-def read_folder(folder: Path, progress: Progress | None = None, own: Sequence[Component] = ()) -> Reading:
+def read_folder(folder: Path, progress: Progress | None = None) -> Reading:
     """Read all ThermoML and CSV files below a folder; see `read_files`.
 
     Raises
@@ -85,7 +83,7 @@ def read_folder(folder: Path, progress: Progress | None = None, own: Sequence[Co
     """
     if not folder.is_dir():
         raise InputError(f"{folder} is no folder; valid is one with ThermoML or CSV files")
-    return combined(readings(_below(folder), folder, progress, own))
+    return combined(readings(_below(folder), folder, progress))
 
 
 def _below(folder: Path) -> list[str]:

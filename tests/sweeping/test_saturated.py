@@ -8,8 +8,10 @@ import pytest
 from eosmuster.components import catalogue, find
 from eosmuster.errors import NothingJudged
 from eosmuster.plan.reading import parse_plan
-from eosmuster.sources import handbook, library
-from eosmuster.sweeping.series import Series, collect, refuse_empty
+from eosmuster.sources import handbook, library_gate
+from eosmuster.sources.bibliography import bibliography
+from eosmuster.sweeping.saturated import collect
+from eosmuster.sweeping.series import Series, refuse_empty
 
 PLAN = """
 components = ["propane"]
@@ -89,7 +91,7 @@ def test_tables_bring_their_own_states_and_have_no_windows() -> None:
     assert table.nodes.temperature.tolist() == [275.0, 450.0]
     assert table.evaluate is None
     assert table.independent_of_library
-    assert table.citation in handbook.bibliography()
+    assert table.citation in bibliography()
 
 
 def test_normal_boiling_points_are_asked_at_one_atmosphere() -> None:
@@ -102,7 +104,7 @@ def test_normal_boiling_points_are_asked_at_one_atmosphere() -> None:
 
 def test_the_library_is_asked_up_to_its_own_limits() -> None:
     s = series('"saturation_pressure"', "temperature = [50.0, 90.0, 360.0, 380.0]")["saturation_pressure", "coolprop"]
-    limits = library.limits(find("propane"))
+    limits = library_gate.limits(find("propane"))
     assert limits is not None
     assert {(limits.from_K, "reference_limit"), (limits.to_K, "reference_limit")} <= set(s.steps)
     assert {limits.from_K, limits.to_K} <= set(s.nodes.temperature)
