@@ -131,9 +131,9 @@ def region(found: RegionChange) -> str:
     Examples
     --------
     >>> region(RegionChange("moved", (0.5, 0.25), came=("limit_step",)))
-    'region: 50 -> 25 % of the plan's rectangle; it now ends at limit step too'
+    "region: 50 -> 25 % of the plan's rectangle; it now ends at limit step too"
     >>> region(RegionChange("appeared", (math.nan, 0.25)))
-    'region appeared: 25 % of the plan's rectangle'
+    "region appeared: 25 % of the plan's rectangle"
     """
     old, new = (number(100.0 * share, 4) for share in found.share)
     if found.state in (APPEARED, VANISHED):
