@@ -35,6 +35,10 @@ FIGURES = {
         r"1 two-parameter models, ordered: .* x as fast \(PR and PR, .*\[target: 40 x\]",
         r"1 three-parameter models, T\(p\), shuffled: .* x as fast",
     ],
+    "single_phase.py": [
+        r"PR, T and p, vapor: .* ns a state, .* x as fast \(CoolProp PR .* ns\)",
+        r"PR, T and p, liquid: .* ns a state, .* x as fast",
+    ],
     "accuracy.py": [
         r"own_components\.csv, SRK, vapor density, \d+ states: .* digits at worst, .* \(CoolProp: .* digits",
         r"reduced_states\.csv, vdW form, T\(p\), \d+ states: .* digits at worst, .* \(CoolProp: has no such form\)",
@@ -49,11 +53,12 @@ FIGURES = {
     "whole_command.py": [
         r"eosmuster --help: .* s, .* x \(.* s of python -c pass\) \[target: 0\.25 s\]",
         r"eosmuster list models: .* s",
-        r"eosmuster sweep: .* x \(.* s beside .* s of python -c .*\) \[target: 1\.5 x\]",
+        r"eosmuster sweep: .* x \(.* s beside .* s of python -c .*\)",
+        r"eosmuster sweep --dossier no: .* x \(.* s beside .* s of python -c .*\) \[target: 1\.5 x\]",
     ],
     "catalogue.py": [
         r"whole catalogue, --points all: .* s, .* MB at the peak \(\d+ points, .*\[target: 25 s and 1 GB\]",
-        r"whole catalogue, --points none: .* s, .* MB at the peak \(\d+ points, .*\[target: 8 s\]",
+        r"whole catalogue, --points none --dossier no: .* s, .* MB at the peak \(\d+ points, .*\[target: 8 s\]",
     ],
     "growth.py": [
         r"kernel at_pressure, 10\^3 states: .* ns a point \(.* MB of memory beyond its results",

@@ -20,13 +20,16 @@ import plans
 from measuring import EOSMUSTER, Times, Usage, alternating, figure, ratio, seconds
 
 TARGETS = {"all": "25 s and 1 GB", "none": "8 s"}
+PAGE = {"all": (), "none": ("--dossier", "no")}
+"""Everything, and the rows alone."""
 
 
 def swept(text: str, points: str) -> tuple[Usage, int, float]:
     """Sweep a plan as a whole command; also the number of points, and the size of what was written in MB."""
     with tempfile.TemporaryDirectory() as folder:
         Path(folder, "plan.toml").write_text(text, encoding="utf-8")
-        usage = measuring.child([*EOSMUSTER, "sweep", "plan.toml", "--out", "out", "--points", points], folder)
+        asked = ["--out", "out", "--points", points, *PAGE[points]]
+        usage = measuring.child([*EOSMUSTER, "sweep", "plan.toml", *asked], folder)
         with Path(folder, "out", "summary.csv").open(encoding="utf-8", newline="") as file:
             count = sum(int(row["points"]) for row in csv.DictReader(file))
         return usage, count, sum(path.stat().st_size for path in Path(folder, "out").iterdir()) / 1e6
@@ -52,7 +55,7 @@ def main() -> None:
         _, count, megabytes = last[points]
         beyond = median(a - b for a, b in zip(times[points], times["imports"], strict=True))
         figure(
-            f"whole catalogue, --points {points}",
+            " ".join(["whole catalogue, --points", points, *PAGE[points]]),
             f"{seconds(times[points])}, {median(peaks[points]):.0f} MB at the peak",
             f"{count} points, {megabytes:.0f} MB written; {ratio(times, points, 'imports'):.3g} x the "
             f"{seconds(times['imports'])} of the imports, {beyond / count * 1e9:.0f} ns a point beyond them",

@@ -19,6 +19,7 @@ import measuring
 FOLDER = Path(__file__).resolve().parent
 SCRIPTS = (
     "kernel.py",
+    "single_phase.py",
     "accuracy.py",
     "coverage.py",
     "whole_command.py",

@@ -3,7 +3,8 @@
     python tests/benchmarks/whole_command.py [--quick]
 
 Processor time (user and system) of child processes that take turns, as a user's shell would start them, in empty
-temporary folders: `eosmuster sweep` (the built-in broad plan: points, summaries, windows and manifest written)
+temporary folders: `eosmuster sweep` (the built-in broad plan: points, summaries, windows, manifest and, unless it
+is left out, the dossier written)
 against `python -c "import CoolProp, pandas, scipy.optimize"`; `eosmuster --help` and `eosmuster list models` against
 `python -c pass`. Each is started once beforehand, so that compiled files are there.
 """
@@ -39,16 +40,18 @@ def sweeping(quick: bool) -> None:
     sweep = command(*EOSMUSTER, "sweep", "plan.toml", plan=plans.two_fluids(5))
     tasks = {
         "sweep": sweep if quick else command(*EOSMUSTER, "sweep"),
+        "tables": command(*EOSMUSTER, "sweep", "--dossier", "no") if not quick else sweep,
         "imports": command(*plans.imports(quick)),
         "first": command(sys.executable, "-c", plans.imports(quick)[-1].split(",")[0]),
     }
     times = alternating(tasks, rounds=1 if quick else 7, warm=not quick)
-    figure(
-        "eosmuster sweep",
-        f"{ratio(times, 'sweep', 'imports'):.3g} x",
-        f'{seconds(times["sweep"])} beside {seconds(times["imports"])} of python -c "{plans.imports(quick)[-1]}"',
-        "1.5 x",
-    )
+    for name, what, target in (("sweep", "", ""), ("tables", " --dossier no", "1.5 x")):
+        figure(
+            f"eosmuster sweep{what}",
+            f"{ratio(times, name, 'imports'):.3g} x",
+            f'{seconds(times[name])} beside {seconds(times["imports"])} of python -c "{plans.imports(quick)[-1]}"',
+            target,
+        )
     beyond = median(a - b for a, b in zip(times["sweep"], times["first"], strict=True))
     figure(
         "eosmuster sweep beyond the import of the reference library",
