@@ -87,7 +87,7 @@ class _Bubbles:
 
 def _fitting(one: Equilibrium, state: Sequence[str], bubbles: Sequence[_Bubbles]) -> _Bubbles | None:
     """Find the bubble points that share most states with vapor compositions, and have no vapor of their own yet."""
-    if len(state) != 2 or VAPOR not in one.columns:
+    if len(state) != 2 or set(one.uncertainty) != {VAPOR}:  # what else it measured would be lost without a word
         return None
     shared = [(_shared(b.base, one, state), -i) for i, b in enumerate(bubbles) if VAPOR not in b.base.columns]
     most, place = max(shared, default=(0, 0))
