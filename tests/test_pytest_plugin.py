@@ -54,7 +54,8 @@ def loaded() -> None:
 def folder(pytester: pytest.Pytester, monkeypatch: pytest.MonkeyPatch) -> Path:
     """An empty folder in which pytest knows this plugin and those that are named, whatever else is installed."""
     monkeypatch.setenv("PYTEST_DISABLE_PLUGIN_AUTOLOAD", "1")
-    monkeypatch.delenv("PYTEST_ADDOPTS", raising=False)
+    for name in ("PYTEST_ADDOPTS", "CI", "BUILD_NUMBER"):
+        monkeypatch.delenv(name, raising=False)
     return pytester.path
 
 
@@ -122,6 +123,22 @@ def test_a_failure_says_all_that_is_needed_and_shows_no_code(run: Run) -> None:
         consecutive=False,
     )
     assert max(map(len, result.outlines)) <= 140
+
+
+def test_in_ci_where_pytest_trims_nothing_a_failure_is_listed_by_its_first_line(
+    run: Run, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setenv("CI", "true")
+    result = run(PLAN, "-k", "propane and :vdW:", "--junitxml=out.xml")
+    listed = result.outlines.index("=========================== short test summary info ============================")
+    assert len(result.outlines) == listed + 3
+    assert re.match(
+        r"FAILED .* - Failed: 3 of 3 points outside against .*, at worst \+\d+ % ", result.outlines[listed + 1]
+    )
+    assert sum("worst point" in line for line in result.outlines) == 5
+    failure = next(ElementTree.parse("out.xml").getroot().iter("failure"))
+    assert "\n" not in failure.get("message", "")
+    assert (failure.text or "").count("worst point") == 5
 
 
 def test_the_other_references_are_named_that_the_gate_is_met_against(run: Run) -> None:

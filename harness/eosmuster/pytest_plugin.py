@@ -63,9 +63,8 @@ class PlanFile(pytest.File):
         for key, name in zip(keys, item_names(keys), strict=True):
             yield PlanItem.from_parent(self, name=name, key=key)
 
-    def sweep(self) -> None:
+    def sweep(self, asking: PlanItem) -> None:
         """Sweep the plan, unless that was done; what goes wrong is an error of every item, and is not tried again."""
-        traced = ""
         if self._outcomes is None and not self._failure:
             try:
                 self._outcomes = outcomes(self._plan)
@@ -73,9 +72,9 @@ class PlanFile(pytest.File):
                 self._failure = str(error)
             except Exception as error:
                 self._failure = f"internal failure: {type(error).__name__}: {error}"
-                traced = f"\n{traceback.format_exc()}"
+                asking.add_report_section("setup", "traceback", traceback.format_exc())
         if self._failure:
-            pytest.fail(self._failure + traced, pytrace=False)
+            pytest.fail(self._failure, pytrace=False)
 
     def outcome(self, key: Key) -> Outcome:
         """Say what became of an item."""
@@ -95,7 +94,7 @@ class PlanItem(pytest.Item):
 
     def setup(self) -> None:
         """See to it that the plan was swept: the first item of a file that runs waits for it."""
-        self._file.sweep()
+        self._file.sweep(self)
 
     def runtest(self) -> None:
         """Pass, skip or fail as the sweep has it."""
@@ -104,6 +103,14 @@ class PlanItem(pytest.Item):
             pytest.fail(text, pytrace=False)
         if kind == "skipped":
             pytest.skip(text)
+
+    def repr_failure(self, excinfo: pytest.ExceptionInfo[BaseException], *styles: Any) -> Any:
+        """Show a failure whole in its place, and by its first line where pytest lists it: CI runs trim nothing."""
+        shown = super().repr_failure(excinfo, *styles)
+        crash = getattr(shown, "reprcrash", None)
+        if crash is not None:
+            crash.message = crash.message.partition("\n")[0]
+        return shown
 
     def reportinfo(self) -> tuple[Path, None, str]:
         """Give the heading of a failure."""
