@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import csv
 import math
 from collections import Counter
 from collections.abc import Iterable, Mapping
@@ -12,7 +11,7 @@ from numbers import Real
 from types import MappingProxyType
 
 from eosmuster.errors import InputError, suggestion
-from eosmuster.paths import references_folder
+from eosmuster.reference_rows import Row, rows
 
 FAMILIES: Mapping[str, str] = MappingProxyType(
     {
@@ -158,8 +157,7 @@ def equation_citations() -> Mapping[str, str]:
     >>> print(equation_citations()[find("propane").sources["equation"]])
     E. W. Lemmon, M. O. McLinden, W. Wagner, J. Chem. Eng. Data 54 (2009) 3141, doi:10.1021/je900217v
     """
-    with (references_folder() / "equations.csv").open(encoding="utf-8", newline="") as file:
-        return MappingProxyType({row["key"]: row["citation"] for row in csv.DictReader(file)})
+    return MappingProxyType({row["key"]: row["citation"] for _, row in rows("equations.csv", source=False)})
 
 
 def find(name: str) -> Component:
@@ -238,9 +236,13 @@ def _expanded(entry: str) -> tuple[Component, ...]:
 
 
 @cache
-def _rows() -> tuple[dict[str, str], ...]:
-    with (references_folder() / "components.csv").open(encoding="utf-8", newline="") as file:
-        return tuple(csv.DictReader(file))
+def _rows() -> tuple[Row, ...]:
+    return tuple(row for _, row in rows("components.csv"))
+
+
+def _of_omega(note: str) -> str:
+    """Say which constant was replaced, where one was."""
+    return f"omega {note}" if note.startswith("replaced") else note
 
 
 def _component(row: Mapping[str, str]) -> Component:
@@ -254,7 +256,7 @@ def _component(row: Mapping[str, str]) -> Component:
         aliases=tuple(filter(None, row["aliases"].split("|"))),
         library_name=row["name"],
         sources=_sources(row),
-        notes=tuple(filter(None, (row["acentric_note"], row["note"]))),
+        notes=tuple(filter(None, (_of_omega(row["acentric_note"]), row["note"]))),
         **constants,
     )
 

@@ -79,6 +79,32 @@ SATURATION = tuple(p.name for p in PROPERTIES.values() if p.kind == "saturation"
 SINGLE_PHASE = tuple(p.name for p in PROPERTIES.values() if p.kind == "single-phase")
 """Names of the properties of each kind of state, in the order in which they are shown."""
 
+CONTESTED_ABOVE: Mapping[str, float] = MappingProxyType(
+    {
+        "saturation_pressure": 1.0,
+        "liquid_density": 1.0,
+        "vapor_density": 2.0,
+        "enthalpy_of_vaporization": 2.0,
+        "entropy_of_vaporization": 2.0,
+        "liquid_heat_capacity": 3.0,
+        "vapor_heat_capacity": 3.0,
+        "density": 1.0,
+        "compressibility_factor": 1.0,
+    }
+)
+"""Median disagreement in % above which a fluid is contested; ours: about the tightest default limit of a property.
+
+Boiling temperatures are contested where the vapor pressures are, so they have none of their own.
+"""
+
+PHASES = ("liquid", "vapor", "supercritical", "stable")
+"""What the phase of a single-phase state may be stated as.
+
+Below the critical temperature a fluid is liquid or vapor. Above it a fluid is supercritical at every pressure, and a
+gas below the critical pressure counts as vapor too, as a liquid above that pressure does as liquid. ``stable`` is
+whichever of them is the stable one.
+"""
+
 # unit -> (factor, offset): SI value = (value + offset) * factor
 _TEMPERATURE = {
     "K": (1.0, 0.0),
@@ -104,6 +130,7 @@ _MOLAR_MASS = {"kg/mol": (1.0, 0.0), "g/mol": (1e-3, 0.0), "kg/kmol": (1e-3, 0.0
 _MOLAR_DENSITY = {"mol/m3": (1.0, 0.0), "kmol/m3": (1e3, 0.0), "mol/L": (1e3, 0.0)}
 _MASS_DENSITY = {"kg/m3": (1.0, 0.0), "g/cm3": (1e3, 0.0), "kg/L": (1e3, 0.0)}
 _MOLAR_ENERGY = {"J/mol": (1.0, 0.0), "kJ/mol": (1e3, 0.0)}
+_MASS_ENERGY = {"J/kg": (1.0, 0.0), "kJ/kg": (1e3, 0.0), "J/g": (1e3, 0.0)}
 _MOLAR_ENTROPY = {"J/(mol K)": (1.0, 0.0), "kJ/(mol K)": (1e3, 0.0)}
 _SPEED = {"m/s": (1.0, 0.0)}
 _THROTTLING = {"K/Pa": (1.0, 0.0), "K/bar": (1e-5, 0.0), "K/MPa": (1e-6, 0.0)}
@@ -120,6 +147,7 @@ UNITS: Mapping[str, Mapping[str, tuple[float, float]]] = MappingProxyType(
         "density": _MOLAR_DENSITY,
         "mass_density": _MASS_DENSITY,
         "energy": _MOLAR_ENERGY,
+        "mass_energy": _MASS_ENERGY,
         "entropy": _MOLAR_ENTROPY,
         "speed": _SPEED,
         "throttling": _THROTTLING,

@@ -40,7 +40,12 @@ REGION_EDGES = (
     "no_reference",
     "plan_limit",
     "unsolved",
+    "critical_point",
 )
+
+
+CAUSE_FOUND = "cause found: "
+"""What begins the sentence of a conflict of which it is known what is wrong."""
 
 
 @dataclass(frozen=True)
@@ -61,8 +66,8 @@ class Block:
     verdict : index into `POINT_VERDICTS`
     note : index into `notes`; 0 is the empty note
     independence : one of independent / constants / fitted for each candidate
-    contested : ``yes`` or ``no``: whether the references of this component and property disagree; "" where there is
-        only one, so that nothing can be said
+    contested : ``yes`` or ``no``: whether the references of this component and property disagree; "" where nothing
+        can be said, since there is only one, or since no two share enough states without sharing an equation
     """
 
     component: str
@@ -203,11 +208,14 @@ class Record:
         of what a reader must know (a replaced constant, a spin isomer)
     citations : source key -> full reference
     files : (name, SHA-256) of the measured files of the plan
-    conflicts : (component, property, sentence) of references that disagree, and who stands alone
+    conflicts : (component, property, sentence) of references that disagree, and who stands alone; the sentence begins
+        with `CAUSE_FOUND` where it says what is wrong with one of them
+    notes : (file, what) a reader of a measured file must know, though nothing was left out by it
     references : the plan's references in its order: the first that knows a fluid is the one the answer is given by
     display : temperature / pressure / density -> unit of what people read
     part : (number, of how many) where this is a part of a run: with the components of the whole plan in all that they
         share, and the points of the part's
+    regions_asked : whether regions were to be looked for at all
     plan_folder : folder beside which the plan's measured files lie; "" if it names none. It changes from one machine
         to the next and is no part of the results
     """
@@ -230,4 +238,6 @@ class Record:
     regions: tuple[Region, ...] = ()
     part: tuple[int, int] | None = None
     plan_folder: str = ""
+    regions_asked: bool = True
+    notes: tuple[tuple[str, str], ...] = ()
     version: int = RECORD_VERSION

@@ -17,7 +17,7 @@ TRANSCRIPTION = "read in a transcription that cites the paper"
 NAME_MATCHED = TRANSCRIPTION + ", as an ordered list without names; matched to names by refitting"
 MEMORY = "from memory"
 
-STRYJEK_VERA = "Stryjek and Vera, Can. J. Chem. Eng. 64 (1986) 323, Table 1"
+STRYJEK_VERA = "stryjek-vera-1986"
 # kappa1 of substances that are catalogued; HCl is left out on purpose, see README.md beside the table
 KAPPA1_NAMED = {"Nitrogen": 0.01996, "n-Hexane": 0.05104, "n-Dodecane": 0.05426}
 KAPPA1_MATCHED = {
@@ -44,8 +44,8 @@ KAPPA1_MATCHED = {
 }
 KAPPA1_REMEMBERED = {"Methanol": -0.16816, "Ethanol": -0.03374, "Acetone": -0.00888}
 
-JHAVERI_YOUNGREN = "Jhaveri and Youngren, SPE Reservoir Eng. 3 (1988) 1033"
-WHITSON_BRULE = "Whitson and Brule, Phase Behavior, SPE Monograph 20 (2000)"
+JHAVERI_YOUNGREN = "jhaveri-youngren-1988"
+WHITSON_BRULE = "whitson-brule-2000"
 SHIFTS = {
     "Nitrogen": -0.1927,
     "CarbonDioxide": -0.0817,
@@ -67,7 +67,7 @@ SHIFT_FORMULA = {
 }
 SHIFT_LEFT_OUT = {"CycloPropane"}
 
-BELL = "Bell, Satyro and Lemmon, J. Chem. Eng. Data 63 (2018) 2402, supporting information"
+BELL = "bell-2018"
 # shares its InChIKey with normal hydrogen, whose row is used
 BELL_SKIPPED = {"para-hydrogen"}
 

@@ -52,6 +52,62 @@ def test_the_same_model_gives_the_same_states():
     same(states(record), states(CATALOGUE["PR"]), rtol=1e-15)
 
 
+@pytest.mark.parametrize(
+    ("given", "expected"),
+    [
+        (["saturation_pressure", "liquid_density", "liquid_density"], ("saturation_pressure", "liquid_density")),
+        ("saturation_pressure", ("saturation_pressure",)),
+        ([], ()),
+    ],
+)
+def test_what_was_fitted_to_the_reference_is_said(given, expected):
+    assert read(fitted=given).fitted == expected
+    assert read().fitted == ()
+
+
+@pytest.mark.parametrize(
+    ("given", "message"),
+    [
+        (["vapour_pressure"], "fitted names 'vapour_pressure', which is no property; nearest: saturation_pressure"),
+        ([7], "fitted names 7, which is no property"),
+        (True, "fitted = True must be a list of properties"),
+        ({"saturation_pressure": 1}, "must be a list of properties"),
+    ],
+)
+def test_what_was_fitted_is_a_list_of_properties(given, message):
+    with pytest.raises(InputError, match=message):
+        read(fitted=given)
+
+
+def test_an_own_model_fitted_to_the_reference_is_not_independent(tmp_path):
+    """Its saturation pressures are the reference's by its own word; its densities owe their constants alone to it."""
+    plan = tmp_path / "plan.toml"
+    plan.write_text(FITTED, encoding="utf-8")
+    points = sweep(plan).summary
+    assert dict(zip(points["property"], points["independence"], strict=True)) == {
+        "saturation_pressure": "fitted",
+        "liquid_density": "constants",
+    }
+
+
+FITTED = """
+components = ["propane"]
+models = ["house PR"]
+properties = ["saturation_pressure", "liquid_density"]
+[states]
+reduced_temperature = [0.7, 0.8]
+[references]
+use = ["coolprop"]
+[[model]]
+name = "house PR"
+form = "Peng-Robinson"
+alpha = "Soave"
+parameters = { m = [0.37464, 1.54226, -0.26992] }
+fitted = ["saturation_pressure"]
+source = "invented"
+"""
+
+
 def test_one_number_is_for_every_component():
     m = 0.37464 + 1.54226 * 0.3 - 0.26992 * 0.09
     same(states(read(parameters={"m": m})), states(CATALOGUE["PR"]))

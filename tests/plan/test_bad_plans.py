@@ -218,6 +218,20 @@ BAD: dict[str, tuple[str, str]] = {
         "above_reduced_temperature = 0.9 is not below below_reduced_temperature = 0.5",
     ),
     "exception above 2": (BASE + EXCEPTION + "above_reduced_temperature = 2.0", "2.0 is out of range"),
+    "exception below 1.3, saturated": (
+        BASE + EXCEPTION + "below_reduced_temperature = 1.3",
+        "it must be .*at most 1$",
+    ),
+    "exception above 0, single phase": (
+        BASE + EXCEPTION.replace("saturation_pressure", "density") + "above_reduced_temperature = 0.0",
+        "0.0 is out of range; it must be above 0$",
+    ),
+    "exception range, single phase": (
+        BASE
+        + EXCEPTION.replace("saturation_pressure", "density")
+        + "above_reduced_temperature = 1.5\nbelow_reduced_temperature = 1.2",
+        "above_reduced_temperature = 1.5 is not below below_reduced_temperature = 1.2",
+    ),
     "exception above NaN": (BASE + EXCEPTION + "above_reduced_temperature = nan", "nan is not a finite number"),
     "exception above text": (
         BASE + EXCEPTION + 'above_reduced_temperature = "0.9"',

@@ -7,8 +7,9 @@ import pytest
 
 from eosmuster.errors import InputError
 from eosmuster.plan import builtin
+from eosmuster.plan.grids import Grid
 from eosmuster.plan.limits import DEFAULT_RULES
-from eosmuster.plan.schema import REFERENCES, Decision, Grid, Plan
+from eosmuster.plan.schema import REFERENCES, Decision, Plan
 from eosmuster.plan.tolerances import governing_rule
 from eosmuster.quantities import SATURATION, SINGLE_PHASE
 

@@ -3,14 +3,18 @@
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 from itertools import pairwise
 from pathlib import Path
 
 import pytest
 
+from eosmuster.errors import InputError
+from eosmuster.plan.grids import Grid
 from eosmuster.plan.limits import DEFAULT_RULES
 from eosmuster.plan.reading import load_plan, parse_plan
-from eosmuster.plan.schema import REFERENCES, Decision, Display, Gate, Grid, Limit, Plan, ToleranceRule
+from eosmuster.plan.schema import REFERENCES, Decision, Display, Gate, Limit, Plan, ToleranceRule
+from eosmuster.plan.states import choose_regions
 from eosmuster.quantities import PROPERTIES, SATURATION, SINGLE_PHASE
 
 MINIMAL = 'components = ["propane"]\nproperties = ["saturation_pressure"]\n'
@@ -179,6 +183,26 @@ def test_single_phase_states_are_every_temperature_with_every_pressure() -> None
     assert grid.pressure == pytest.approx((1e5, 10**5.5, 1e6, 10**6.5, 1e7), rel=1e-13)
     assert (grid.points, grid.phase, grid.supercritical_alpha) == (10, "supercritical", "Boston-Mathias")
     assert grid.logarithmic
+    assert grid.regions
+
+
+def test_regions_may_be_left_out() -> None:
+    text = """
+        components = ["propane"]
+        properties = ["density"]
+        [states.single_phase]
+        temperature = ["40 degC", "20 degC"]
+        pressure = ["1 bar", "2 bar"]
+        regions = "{}"
+    """
+    plan = parse(text.format("no"))
+    assert plan.single_phase is not None
+    assert not plan.single_phase.regions
+    assert choose_regions(plan, True) == replace(plan, single_phase=replace(plan.single_phase, regions=True))
+    with pytest.raises(InputError, match=r"states\.single_phase\.regions: unknown 'maybe'; valid: yes, no"):
+        parse(text.format("maybe"))
+    saturated = parse('components = ["propane"]\nproperties = ["saturation_pressure"]')
+    assert choose_regions(saturated, False) is saturated
 
 
 def test_names_ignore_case_and_groups_may_overlap_with_names() -> None:

@@ -8,7 +8,8 @@ import numpy as np
 import pytest
 
 from eosmuster.components import Component
-from eosmuster.plan.schema import LEVELS, Decision, Grid, Limit, Plan
+from eosmuster.plan.grids import Grid
+from eosmuster.plan.schema import LEVELS, Decision, Limit, Plan
 
 FLUID = Component("x", critical_temperature=400.0, critical_pressure=4e6, acentric_factor=0.1, molar_mass=0.05)
 

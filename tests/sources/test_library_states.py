@@ -15,6 +15,7 @@ from eosmuster.sources import backend, library, library_gate
 from eosmuster.sources.library_gate import (
     ANSWERED,
     BELOW_RANGE,
+    BEYOND_CRITICAL,
     FAILED,
     NOT_IN_LIBRARY,
     NOT_STABLE,
@@ -326,12 +327,23 @@ def test_the_stated_phase_has_to_be_the_stable_one() -> None:
     assert reason(PROPANE, 300.0, p, "vapor") == [yes, yes, no, no]
     assert reason(PROPANE, 300.0, p, "supercritical") == [no] * 4
     assert reason(PROPANE, 300.0, p, "stable") == [yes] * 4
-    T = [369.0, 369.89, 369.9, 600.0]
-    assert reason(PROPANE, T, 1e5, "vapor") == [yes, no, no, no]
-    assert reason(PROPANE, T, 1e7, "liquid") == [yes, no, no, no]
+    T, beyond = [369.0, 369.89, 369.9, 600.0], BEYOND_CRITICAL
+    assert reason(PROPANE, T, 1e5, "vapor") == [yes] * 4
+    assert reason(PROPANE, T, 1e7, "vapor") == [no, beyond, beyond, beyond]
+    assert reason(PROPANE, T, 1e7, "liquid") == [yes, beyond, beyond, beyond]
     assert reason(PROPANE, T, 1e7, "supercritical") == [no, no, yes, yes]
     assert reason(PROPANE, T, 1e5, "supercritical") == [no, no, yes, yes]
     assert "stable" in REASONS[NOT_STABLE]
+    assert "critical point" in REASONS[BEYOND_CRITICAL]
+
+
+def test_a_gas_above_the_critical_temperature_is_a_vapor_up_to_the_critical_pressure() -> None:
+    # propane's is 4.2512 MPa; what has just crossed the critical temperature differs by little
+    for T in (370.0, 450.0, 650.0):
+        assert reason(PROPANE, T, [1e3, 4.25e6, 4.26e6], "vapor") == [ANSWERED, ANSWERED, BEYOND_CRITICAL]
+        assert one(PROPANE, "density", T, 4.2e6, "vapor") == one(PROPANE, "density", T, 4.2e6, "stable")
+    below, above = (one(PROPANE, "density", T, 3e6, "vapor") for T in (369.88, 369.9))
+    assert above == pytest.approx(below, rel=2e-4)
 
 
 def test_at_the_vapour_pressure_either_phase_may_be_stated() -> None:
@@ -390,7 +402,7 @@ def test_between_two_critical_temperatures_no_phase_can_be_stated() -> None:
     assert higher - lower > 2.0
     T = [lower - 0.1, 0.5 * (lower + higher), higher + 0.1]
     p = 1e7
-    assert reason(find("R40"), T, p, "liquid") == [ANSWERED, NOT_STABLE, NOT_STABLE]
+    assert reason(find("R40"), T, p, "liquid") == [ANSWERED, BEYOND_CRITICAL, BEYOND_CRITICAL]
     assert reason(find("R40"), T, p, "supercritical") == [NOT_STABLE, NOT_STABLE, ANSWERED]
     assert reason(find("R40"), T, p, "stable") == [ANSWERED] * 3
 

@@ -20,7 +20,7 @@ from eosmuster.components import find
 from eosmuster.models.catalogue import CATALOGUE
 from eosmuster.models.custom import record_from_plan
 from eosmuster.models.model import bind
-from eosmuster.quantities import GAS_CONSTANT
+from eosmuster.quantities import GAS_CONSTANT, PHASES
 from eosmuster.singlephase import solver
 
 WITHIN = 1e-12
@@ -53,7 +53,7 @@ ROWS = rows()
 def given(table):
     """T, p and phase of rows."""
     T, p = (np.array([float(row[name]) for row in table]) for name in ("temperature_K", "pressure_Pa"))
-    return T, p, np.array([solver.PHASES.index(row["phase"]) for row in table])
+    return T, p, np.array([PHASES.index(row["phase"]) for row in table])
 
 
 def exact(table, name):

@@ -186,33 +186,20 @@ def cismondi_mollerup_slope(tau: Floats, k: Floats) -> Floats:
     return np.asarray(-k * (1.0 - tau) / (3.0 - tau))
 
 
-def _schmidt_wenzel_m(tau: Floats, omega: Floats) -> tuple[Floats, Floats]:
-    """m of Schmidt and Wenzel and its derivative with respect to Tr."""
-    tr = 1.0 - tau
-    m0, share = jets.schmidt_wenzel_bands(omega)
-    inner = 5.0 * tr - 3.0 * m0 - 1.0
-    light, light_slope = inner * inner / 70.0, inner / 7.0
-    heavy, heavy_slope = 0.71 * (tr - 0.779) ** 2, 1.42 * (tr - 0.779)
-    return np.asarray(m0 + light + share * (heavy - light)), np.asarray(
-        light_slope + share * (heavy_slope - light_slope)
-    )
-
-
 def schmidt_wenzel_excess(tau: Floats, omega: Floats) -> Floats:
     """Soave's form with m a function of Tr and omega (Schmidt and Wenzel, Chem. Eng. Sci. 35 (1980) 1503).
 
     Constants from memory; consistent with our own calculation.
     """
-    m, _ = _schmidt_wenzel_m(tau, omega)
+    m, _, _ = jets.schmidt_wenzel_m(tau, omega)
     return _square_excess(m * _one_less_root(tau))
 
 
 def schmidt_wenzel_slope(tau: Floats, omega: Floats) -> Floats:
     """Logarithmic slope of Schmidt and Wenzel's function."""
-    m, slope = _schmidt_wenzel_m(tau, omega)
-    tr = 1.0 - tau
-    root, x = np.sqrt(tr), _one_less_root(tau)
-    return np.asarray((2.0 * tr * slope * x - m * root) / (1.0 + m * x))
+    m, slope, _ = jets.schmidt_wenzel_m(tau, omega)
+    root, x = np.sqrt(1.0 - tau), _one_less_root(tau)
+    return np.asarray((2.0 * slope * x - m * root) / (1.0 + m * x))
 
 
 def stryjek_vera_above(kappa0: Floats, _kappa1: Floats) -> tuple[str, tuple[Floats, ...]]:

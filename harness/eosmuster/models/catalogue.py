@@ -243,7 +243,8 @@ _RECORDS = (
         form=_PR,
         alpha="Soave",
         parameters=_PENG_ROBINSON_M,
-        source="Jhaveri and Youngren, SPE Reservoir Eng. 3 (1988) 1033",
+        source="Jhaveri and Youngren, SPE Reservoir Eng. 3 (1988) 1033; listed shifts of ten fluids: Whitson and "
+        "Brule, Phase Behavior, SPE Monograph 20 (2000)",
         status="from memory, consistent with our own calculation",
         translation=CovolumeTranslation(Tabulated("jhaveri_youngren.csv", "shift")),
     ),

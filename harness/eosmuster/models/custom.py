@@ -22,9 +22,9 @@ from eosmuster.models.records import (
     VolumeTranslation,
     polynomial,
 )
-from eosmuster.quantities import shown, to_si
+from eosmuster.quantities import PROPERTIES, shown, to_si
 
-KEYS = ("name", "form", "alpha", "parameters", "supercritical", "translation", "source", "note")
+KEYS = ("name", "form", "alpha", "parameters", "supercritical", "translation", "fitted", "source", "note")
 TRANSLATIONS = ("volume", "fraction_of_covolume", "rackett")
 
 
@@ -38,7 +38,9 @@ def record_from_plan(table: Mapping[str, object], where: str) -> ModelRecord:
         component;
         ``supercritical`` is ``own`` (the alpha function's own rule above Tc) or ``Boston-Mathias``;
         ``translation`` is ``{volume = {component = "5 cm3/mol"}}``, ``{fraction_of_covolume = {component = 0.05}}``
-        or ``{rackett = [k, z0]}``, the constants of c = k (R Tc/pc)(z0 - z_RA)
+        or ``{rackett = [k, z0]}``, the constants of c = k (R Tc/pc)(z0 - z_RA);
+        ``fitted`` names the properties for which the parameters were fitted to the reference library's own values,
+        so that no verdict on these counts as independent
     where : file and table, for messages
 
     Raises
@@ -71,6 +73,7 @@ def record_from_plan(table: Mapping[str, object], where: str) -> ModelRecord:
         status="the user's own",
         translation=_translation(table.get("translation"), where),
         note=str(table.get("note", "")),
+        fitted=_fitted(table.get("fitted", []), where),
         own=True,
         supercritical=_rule(table.get("supercritical", OWN_RULE), where),
     )
@@ -81,6 +84,20 @@ def _text(table: Mapping[str, object], key: str, where: str) -> str:
     if not isinstance(value, str) or not value.strip():
         raise InputError(f"{where}: {key} = {shown(value)} must be a text that is not empty")
     return value.strip()
+
+
+def _fitted(value: object, where: str) -> tuple[str, ...]:
+    """Read names of properties; a single one may stand without brackets."""
+    names = [value] if isinstance(value, str) else value
+    if not isinstance(names, list):
+        raise InputError(
+            f'{where}: fitted = {shown(value)} must be a list of properties, e.g. ["saturation_pressure"]'
+        )
+    for name in names:
+        if not isinstance(name, str) or name not in PROPERTIES:
+            known = suggestion(str(name)[:60], PROPERTIES, most=len(PROPERTIES))
+            raise InputError(f"{where}: fitted names {shown(name)}, which is no property; {known}")
+    return tuple(dict.fromkeys(names))
 
 
 def _rule(value: object, where: str) -> str:

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import csv
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from functools import cache
@@ -27,8 +26,8 @@ from eosmuster.models.records import (
     VolumeTranslation,
 )
 from eosmuster.models.supercritical import Supercritical, supercritical_alpha
-from eosmuster.paths import references_folder
 from eosmuster.quantities import GAS_CONSTANT
+from eosmuster.reference_rows import Row, rows
 
 Floats = NDArray[np.float64]
 
@@ -134,12 +133,9 @@ def critical_compressibility(component: Component) -> float:
 
 
 @cache
-def parameter_file(name: str) -> Mapping[str, Mapping[str, str]]:
+def parameter_file(name: str) -> Mapping[str, Row]:
     """Read a file of ``references/parameters``, keyed by CAS number."""
-    path = references_folder() / "parameters" / name
-    with path.open(encoding="utf-8", newline="") as file:
-        rows = csv.DictReader(line for line in file if not line.startswith("#"))
-        return {row["cas"]: row for row in rows}
+    return {row["cas"]: row for _, row in rows(f"parameters/{name}")}
 
 
 def _constants(record: ModelRecord, component: Component) -> tuple[float, float]:

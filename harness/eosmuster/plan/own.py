@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING
 
 from eosmuster.components import Component
 from eosmuster.errors import InputError
-from eosmuster.plan.schema import HIGHEST_REDUCED_TEMPERATURE
+from eosmuster.plan.grids import HIGHEST_REDUCED_TEMPERATURE
 from eosmuster.plan.tables import Finder, Table
 from eosmuster.quantities import UNITS, shown, split_quantity
 

@@ -9,12 +9,15 @@ from pathlib import Path
 from eosmuster.components import Component
 from eosmuster.errors import InputError
 from eosmuster.plan import own, selection, settings
+from eosmuster.plan.constants import read_constants
+from eosmuster.plan.contested import read_contested_above
 from eosmuster.plan.files import parse_toml, read_text
+from eosmuster.plan.grids import Grid
 from eosmuster.plan.limits import DEFAULT_RULES
 from eosmuster.plan.rules import read_rules
-from eosmuster.plan.schema import Grid, Plan, ToleranceRule
+from eosmuster.plan.schema import Plan, ToleranceRule
 from eosmuster.plan.states import check_states, read_states
-from eosmuster.plan.tables import Table
+from eosmuster.plan.tables import Finder, Table
 from eosmuster.quantities import PROPERTIES, SATURATION, SINGLE_PHASE
 
 MOST_POINTS = 20_000_000
@@ -71,17 +74,24 @@ def parse_plan(text: str, name: str, where: str) -> Plan:
     table.check_keys(_KEYS)
     own_components = own.read_components(table, selection.find_family)
     find_component = selection.component_finder(own_components)
+    plan = replace(_swept(table, own_components, find_component), name=name, title=table.text("title", "") or name)
+    plan = replace(plan, text=text, gate=settings.read_gate(table, plan, find_component))
+    return _refuse_too_many(plan, where)
+
+
+def _swept(table: Table, own_components: tuple[Component, ...], find_component: Finder) -> Plan:
+    """Read all but the gate, which can name only what the plan sweeps; the caller gives the plan its name."""
     own_models = own.read_models(table, find_component)
     components = selection.select_components(table, own_components)
     saturated, single_phase = read_states(table)
     properties = _read_properties(table, saturated is not None, single_phase is not None)
     rules = read_rules(table, find_component, selection.find_family)
-    plan = Plan(
-        name=name,
-        title=table.text("title", "") or name,
+    return Plan(
+        name="",
+        title="",
         service=table.text("service", ""),
         path="",
-        text=text,
+        text="",
         components=components,
         models=selection.select_models(table, tuple(m.name for m in own_models)),
         own_models=own_models,
@@ -91,12 +101,12 @@ def parse_plan(text: str, name: str, where: str) -> Plan:
         decision=settings.read_decision(table),
         references_use=settings.read_references(table),
         display=settings.read_display(table),
-        constants=settings.read_constants(table),
+        constants=read_constants(table),
         reference_files=settings.read_files(table),
         single_phase=single_phase,
+        contested_above=read_contested_above(table.table("references")),
         left_out=(*selection.left_out(table), *_idle_rules(rules, components, properties)),
     )
-    return _refuse_too_many(replace(plan, gate=settings.read_gate(table, plan, find_component)), where)
 
 
 def _read_properties(plan: Table, saturated: bool, single_phase: bool) -> tuple[str, ...]:

@@ -82,14 +82,15 @@ def read_limit(value: object, property_name: str, where: str) -> Limit:
     # percent stays percent: 7 % by way of 0.07 would be 7.000000000000001 %
     percent = dimension in {"fraction", "logarithm"}
     factor = UNITS[dimension][unit][0] / (0.01 if percent else 1.0)
-    return Limit(number * factor, kinds[dimension])
+    written = " ".join(value.split()) if isinstance(value, str) else ""
+    return Limit(number * factor, kinds[dimension], written)
 
 
 def _read_exception(table: Table, find_component: Finder, find_family: Finder) -> list[ToleranceRule]:
     table.check_keys(_EXCEPTION_KEYS)
     name = table.known(table.text("property"), "property", PROPERTIES)
     limit = read_limit(table.data.get("limit"), name, table.at("limit"))
-    above, below = _read_range(table)
+    above, below = _read_range(table, PROPERTIES[name].kind)
     classes = [find_family(text, table.at("class")) for text in table.texts("class")]
     components = [find_component(text, table.at("component")) for text in table.texts("component")]
     level = _level(table, bool(classes), bool(components), (above, below) != (0.0, math.inf))
@@ -113,9 +114,11 @@ def _level(table: Table, of_class: bool, of_component: bool, ranged: bool) -> st
     return f"{base}_range" if ranged else base
 
 
-def _read_range(table: Table) -> tuple[float, float]:
-    above = _read_border(table, "above_reduced_temperature", 0.0)
-    below = _read_border(table, "below_reduced_temperature", math.inf)
+def _read_range(table: Table, kind: str) -> tuple[float, float]:
+    """Read a band of reduced temperature; a saturated state has none above 1, a single phase has them all."""
+    to = 1.0 if kind == "saturation" else math.inf
+    above = _read_border(table, "above_reduced_temperature", 0.0, to)
+    below = _read_border(table, "below_reduced_temperature", math.inf, to)
     if not above < below:
         raise InputError(
             f"{table.at()}: above_reduced_temperature = {above:g} is not below "
@@ -124,5 +127,5 @@ def _read_range(table: Table) -> tuple[float, float]:
     return above, below
 
 
-def _read_border(table: Table, key: str, default: float) -> float:
-    return table.number(key, above=0.0, to=1.0) if key in table.data else default
+def _read_border(table: Table, key: str, default: float, to: float) -> float:
+    return table.number(key, above=0.0, to=to) if key in table.data else default

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Mapping
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
@@ -10,18 +11,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from eosmuster.components import Component
+from eosmuster.plan.grids import Grid, SinglePhaseGrid
 
 if TYPE_CHECKING:
     from eosmuster.models.records import ModelRecord
+from eosmuster.quantities import CONTESTED_ABOVE
 
 Floats = NDArray[np.float64]
-
-COORDINATES = ("temperature", "reduced_temperature", "pressure")
-"""The one degree of freedom of a saturated pure substance, in the three ways it can be given."""
-
-LOWEST_REDUCED_TEMPERATURE = 0.45
-HIGHEST_REDUCED_TEMPERATURE = 0.99
-"""Ends of the default grid; the triple point replaces the lower one where it is higher."""
 
 LEVELS = (
     "default",
@@ -37,9 +33,6 @@ LEVELS = (
 A range of reduced temperatures makes a rule more specific than the same rule without one, never more
 specific than one that names a class or a component.
 """
-
-PHASES = ("liquid", "vapor", "supercritical", "stable")
-"""Phases of single-phase states: the root of the stated phase is evaluated, or the stable one."""
 
 LIMIT_KINDS = {
     "percent": "%",
@@ -66,78 +59,7 @@ MEASURED = "measured"
 GATE_REASONS = ("outside", "unsolved", "undecided", "unfit_reference", "no_reference", "unavailable")
 """What a gate can fail on: every verdict but ``inside``, and what a model cannot do for a component."""
 FIRST_REFERENCE = "first"
-"""In a gate: the first of the plan's references that knows the fluid, by which a report gives its answer."""
-
-
-@dataclass(frozen=True)
-class Grid:
-    """The saturated states of a plan: one coordinate, as the phase rule has it.
-
-    Attributes
-    ----------
-    coordinate : one of `COORDINATES`
-    values : strictly increasing, K, dimensionless or Pa; empty for the default range
-    default_range : from max(0.45 Tc, triple point) to 0.99 Tc of each component, evenly spaced
-    points : number of states of each component
-    """
-
-    coordinate: str = "reduced_temperature"
-    values: tuple[float, ...] = ()
-    default_range: bool = True
-    points: int = 41
-
-    def states_for(self, component: Component) -> Floats:
-        """Return the states of one component.
-
-        Returns
-        -------
-        array of shape (points,), strictly increasing: pressures in Pa if `coordinate` is ``pressure``,
-        else temperatures in K. Listed states are never cut to what the component can do.
-
-        Examples
-        --------
-        >>> c = Component("x", critical_temperature=400.0, critical_pressure=4e6, acentric_factor=0.1)
-        >>> Grid(points=3).states_for(c).tolist()
-        [180.0, 288.0, 396.0]
-        >>> Grid("temperature", (250.0, 300.0), False, 2).states_for(c).tolist()
-        [250.0, 300.0]
-        """
-        if self.default_range:
-            return default_temperatures(component, self.points)
-        values = np.array(self.values, dtype=np.float64)
-        return values * component.critical_temperature if self.coordinate == "reduced_temperature" else values
-
-
-def default_temperatures(component: Component, points: int) -> Floats:
-    """Space `points` temperatures (K) evenly from max(0.45 Tc, triple point) to 0.99 Tc, ends included."""
-    tc = component.critical_temperature
-    lowest = max(LOWEST_REDUCED_TEMPERATURE * tc, component.triple_temperature or 0.0)
-    return np.linspace(lowest, HIGHEST_REDUCED_TEMPERATURE * tc, points)
-
-
-@dataclass(frozen=True)
-class SinglePhaseGrid:
-    """The single-phase states of a plan: every temperature with every pressure, as the phase rule has it.
-
-    Attributes
-    ----------
-    temperature : K, strictly increasing
-    pressure : Pa, strictly increasing
-    phase : one of `PHASES`
-    supercritical_alpha : one of `eosmuster.models.records.SUPERCRITICAL_RULES`, of all models but the plan's own
-    logarithmic : whether pressures are evenly spaced in their logarithm, so that areas of regions are measured there
-    """
-
-    temperature: tuple[float, ...]
-    pressure: tuple[float, ...]
-    phase: str = "stable"
-    supercritical_alpha: str = "own"
-    logarithmic: bool = False
-
-    @property
-    def points(self) -> int:
-        """Number of states."""
-        return len(self.temperature) * len(self.pressure)
+"""In a gate: the first of the plan's references with a value for the fluid, by which a report gives its answer."""
 
 
 @dataclass(frozen=True)
@@ -148,10 +70,12 @@ class Limit:
     ----------
     value : positive, in the unit of its kind
     kind : a key of `LIMIT_KINDS`; ``logarithm`` limits 100 abs(ln(predicted/reference)), for a saturation pressure
+    written : as the plan has it, e.g. ``0.5 mbar``, for people; "" if it is ours
     """
 
     value: float
     kind: str
+    written: str = field(default="", compare=False, repr=False)
 
     def __str__(self) -> str:
         if self.kind == "K/Pa":  # nobody thinks in kelvin per pascal
@@ -291,6 +215,7 @@ class Plan:
     gate : what fails a build
     constants : where catalogued components have Tc, pc and omega from: ``library``, or a cited critical table
     left_out : (what, why) of everything the plan names or selects that is not swept
+    contested_above : property -> median disagreement of references, in %, above which they are contested
     part : (number, of how many) where only a part of the components is swept, see `eosmuster.plan.parts`
     """
 
@@ -313,6 +238,7 @@ class Plan:
     left_out: tuple[tuple[str, str], ...] = ()
     constants: str = "library"
     single_phase: SinglePhaseGrid | None = None
+    contested_above: Mapping[str, float] = field(default_factory=lambda: dict(CONTESTED_ABOVE))
     part: tuple[int, int] | None = None
 
     @property

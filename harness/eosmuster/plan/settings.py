@@ -1,4 +1,4 @@
-"""The small tables of a plan: ``[decision]``, ``[constants]``, ``[references]``, ``[gate]`` and ``[display]``."""
+"""The small tables of a plan: ``[decision]``, ``[references]``, ``[gate]`` and ``[display]``."""
 
 from __future__ import annotations
 
@@ -6,6 +6,7 @@ from collections.abc import Callable, Mapping
 from dataclasses import asdict
 
 from eosmuster.errors import InputError, suggestion
+from eosmuster.plan.contested import KEY as CONTESTED_KEY
 from eosmuster.plan.schema import (
     DECISION_RULES,
     FIRST_REFERENCE,
@@ -42,13 +43,6 @@ def read_decision(plan: Table) -> Decision:
     )
 
 
-def read_constants(plan: Table) -> str:
-    """Read where the constants of catalogued components come from; the tables are known to the sweep."""
-    table = plan.table("constants")
-    table.check_keys(("source",))
-    return table.text("source", "library")
-
-
 def read_files(plan: Table) -> tuple[str, ...]:
     """Read the patterns of measured files."""
     return tuple(plan.table("references").texts("files"))
@@ -57,7 +51,7 @@ def read_files(plan: Table) -> tuple[str, ...]:
 def read_references(plan: Table) -> tuple[str, ...]:
     """Read what the candidates are judged against."""
     table = plan.table("references")
-    table.check_keys(("use", "files"))
+    table.check_keys(("use", "files", CONTESTED_KEY))
     used = table.chosen("use", REFERENCES, REFERENCES)
     if not used:
         raise InputError(f"{table.at('use')}: no reference, so nothing can be judged; valid: {', '.join(REFERENCES)}")

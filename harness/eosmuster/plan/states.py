@@ -6,19 +6,22 @@ The phase rule decides how many: a pure substance has two degrees of freedom, le
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 from itertools import pairwise
 
 import numpy as np
 
 from eosmuster.errors import InputError
 from eosmuster.models.records import SUPERCRITICAL_RULES
-from eosmuster.plan.schema import COORDINATES, PHASES, Grid, SinglePhaseGrid
+from eosmuster.plan.grids import COORDINATES, Grid, SinglePhaseGrid
+from eosmuster.plan.schema import Plan
 from eosmuster.plan.tables import Table
-from eosmuster.quantities import PROPERTIES, SATURATION, SINGLE_PHASE, shown, to_si
+from eosmuster.quantities import PHASES, PROPERTIES, SATURATION, SINGLE_PHASE, shown, to_si
 
 MOST_STATES = 100_000
 """States of one component in one plan."""
 
+_YES_OR_NO = ("yes", "no")
 _ONE_OF = f"give exactly one of {', '.join(COORDINATES)}"
 _UNITS = {"temperature": "K", "pressure": "Pa"}
 
@@ -45,6 +48,12 @@ def read_states(plan: Table) -> tuple[Grid | None, SinglePhaseGrid | None]:
     if len(given) != 1:
         raise InputError(f"{states.at()}: {_phase_rule(given)}, so {_ONE_OF}")
     return _read_coordinate(states, given[0]), single_phase
+
+
+def choose_regions(plan: Plan, asked: bool) -> Plan:
+    """Say whether regions are looked for, whatever the plan itself says; nothing without single-phase states."""
+    grid = plan.single_phase
+    return plan if grid is None else replace(plan, single_phase=replace(grid, regions=asked))
 
 
 def check_states(properties: tuple[str, ...], saturated: bool, single_phase: bool, where: str) -> None:
@@ -74,7 +83,7 @@ def check_states(properties: tuple[str, ...], saturated: bool, single_phase: boo
 
 
 def _read_single_phase(table: Table) -> SinglePhaseGrid:
-    table.check_keys(("temperature", "pressure", "phase", "supercritical_alpha"))
+    table.check_keys(("temperature", "pressure", "phase", "supercritical_alpha", "regions"))
     missing = [c for c in ("temperature", "pressure") if c not in table.data]
     if missing:
         raise InputError(
@@ -90,6 +99,7 @@ def _read_single_phase(table: Table) -> SinglePhaseGrid:
         phase=table.one_of("phase", PHASES, "stable"),
         supercritical_alpha=table.one_of("supercritical_alpha", SUPERCRITICAL_RULES, "own"),
         logarithmic=ratio.size > 1 and bool(np.ptp(ratio) <= 1e-9 * ratio.mean()),
+        regions=table.one_of("regions", _YES_OR_NO, "yes") == "yes",
     )
 
 

@@ -25,7 +25,6 @@ def limit_pct(
     rules: Iterable[ToleranceRule],
     component: Component,
     property: str,  # noqa: A002 - the word of the plan
-    temperature: Floats,
     reduced_temperature: Floats,
     reference: Floats,
 ) -> Floats:
@@ -36,7 +35,6 @@ def limit_pct(
     rules : a plan's `tolerances` (its default rules included)
     component : for its name, class and molar mass
     property : a key of `eosmuster.quantities.PROPERTIES`
-    temperature : K, shape (n,); for limits banded in kelvin one day, bands are in reduced temperature now
     reduced_temperature : T / Tc, shape (n,)
     reference : SI value, shape (n,); absolute limits are expressed in percent of it
 
@@ -50,7 +48,7 @@ def limit_pct(
     >>> c = Component("x", critical_temperature=400.0, critical_pressure=4e6, acentric_factor=0.1)
     >>> rule = ToleranceRule("saturation_pressure", Limit(2.0, "percent"), "property")
     >>> tr = np.array([0.5, 0.8])
-    >>> limit_pct([rule], c, "saturation_pressure", 400 * tr, tr, np.array([1e4, 1e5])).tolist()
+    >>> limit_pct([rule], c, "saturation_pressure", tr, np.array([1e4, 1e5])).tolist()
     [2.0, 2.0]
     """
     reference = np.asarray(reference, dtype=np.float64)

@@ -12,7 +12,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from eosmuster.models.attraction import mean_attraction
+from eosmuster.models.attraction import attraction_beyond
 from eosmuster.models.critical import critical_point
 from eosmuster.models.model import Parameters
 from eosmuster.quantities import GAS_CONSTANT
@@ -150,9 +150,7 @@ def log_fugacity_coefficients(parameters: Parameters, states: Saturation) -> tup
         found = []
         for v in reduced_volumes(parameters, states):
             z = per_volume * v  # p V/(R T): the form's own pressure would cancel to noise in a cold liquid
-            far = v * 1e9
-            rest = mean_attraction(v, far, s, m) * (far - v) + 1.0 / far
-            found.append(np.asarray(z - 1.0 - np.log(z * (v - 1.0) / v) - q * rest))
+            found.append(np.asarray(z - 1.0 - np.log(z * (v - 1.0) / v) - q * attraction_beyond(v, s, m)))
     return found[0], found[1]
 
 

@@ -98,6 +98,12 @@ def vapor(form: Shape, at: Point) -> Volume:
     return _kept(found, (at.attraction > 0.0) & (found.distance > 0.0))
 
 
+def gas(form: Shape, at: Point) -> Volume:
+    """Root of the lowest Gibbs energy where it lies above the critical volume, however hot; NaN elsewhere."""
+    found = stable(form, at)
+    return _kept(found, found.distance > 0.0)
+
+
 def stable(form: Shape, at: Point) -> Volume:
     """Root of the lowest Gibbs energy.
 

@@ -10,9 +10,8 @@ judged by the model's own Tc.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable
 from dataclasses import dataclass, fields, replace
-from types import MappingProxyType
 from typing import Any
 
 import numpy as np
@@ -20,7 +19,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from eosmuster.errors import InputError, suggestion
 from eosmuster.models.model import Parameters
-from eosmuster.quantities import GAS_CONSTANT, shown
+from eosmuster.quantities import GAS_CONSTANT, PHASES, shown
 from eosmuster.singlephase import roots
 from eosmuster.singlephase.departures import departures
 from eosmuster.singlephase.prepared import (
@@ -36,14 +35,14 @@ from eosmuster.singlephase.roots import Point, Shape, Volume
 Floats = NDArray[np.float64]
 Flags = NDArray[np.bool_]
 
-PHASES = ("liquid", "vapor", "supercritical", "stable")
-"""What can be asked for.
+LIQUID, VAPOR, SUPERCRITICAL, STABLE = range(len(PHASES))
+"""Index of what can be asked for in `PHASES`.
 
-liquid, vapor : T < Tc of the model, and V_EOS below or above the form's critical volume; may be metastable
+liquid : T < Tc of the model, and V_EOS below the form's critical volume; may be metastable
+vapor : V_EOS above the form's critical volume: T < Tc, where it may be metastable, or a hotter gas
 supercritical : T >= Tc, at any pressure
 stable : the volume of the lowest Gibbs energy, whatever it is called
 """
-LIQUID, VAPOR, SUPERCRITICAL, STABLE = range(4)
 
 STATUSES = ("solved", "no_such_phase", "invalid", "unavailable", "no_volume")
 """Outcome of an element: `SinglePhase.status` holds the index into this tuple.
@@ -196,23 +195,22 @@ def _block_at_density(part: Prepared, T: Floats, rho: Floats, given: Floats) -> 
 def _volume(form: Shape, point: Point, tau: Floats, wanted: NDArray[np.int8]) -> Volume:
     """Root of the phase asked for; NaN where there is none."""
     w, distance = np.full(tau.shape, np.nan), np.full(tau.shape, np.nan)
-    for phase, (find, where) in _ROOTS.items():
-        here = wanted == phase
+    for phase, find, where in _ROOTS:
+        here = (wanted == phase) & where(tau)
         if here.any():
             found = find(form, point)
-            here &= where(tau)
             w, distance = np.where(here, found.w, w), np.where(here, found.distance, distance)
     return Volume(w, distance)
 
 
-_ROOTS: Mapping[int, tuple[Callable[[Shape, Point], Volume], Callable[[Floats], Flags]]] = MappingProxyType(
-    {
-        LIQUID: (roots.liquid, lambda tau: tau > 0.0),
-        VAPOR: (roots.vapor, lambda tau: tau > 0.0),
-        SUPERCRITICAL: (roots.stable, lambda tau: tau <= 0.0),
-        STABLE: (roots.stable, lambda tau: tau <= np.inf),
-    }
+_ROOTS: tuple[tuple[int, Callable[[Shape, Point], Volume], Callable[[Floats], Flags]], ...] = (
+    (LIQUID, roots.liquid, lambda tau: tau > 0.0),
+    (VAPOR, roots.vapor, lambda tau: tau > 0.0),
+    (VAPOR, roots.gas, lambda tau: tau <= 0.0),
+    (SUPERCRITICAL, roots.stable, lambda tau: tau <= 0.0),
+    (STABLE, roots.stable, lambda tau: tau <= np.inf),
 )
+"""Which root a phase is, and at which tau = 1 - T/Tc."""
 
 
 def _state(part: Prepared, at: Attraction, point: Point, volume: Volume, T: Floats, p: Floats) -> SinglePhase:

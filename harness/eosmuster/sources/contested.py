@@ -11,7 +11,7 @@ from dataclasses import dataclass
 from functools import cache
 from types import MappingProxyType
 
-from eosmuster.sources.rows import rows
+from eosmuster.reference_rows import rows
 
 FILE = "conflicts.csv"
 

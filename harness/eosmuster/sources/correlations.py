@@ -55,7 +55,7 @@ def dippr_116(T: Floats, coefficients: Coefficients) -> Floats:
     """Give the saturated liquid density by DIPPR equation 116, mol/m3.
 
     rho_c + A t^0.35 + B t^(2/3) + C t + D t^(4/3) in kg/m3, with t = 1 - T/T_c, over the molar mass M
-    printed beside it. `coefficients` are A, B, C, D, rho_c (kg/m3), T_c (K), M (g/mol). Source: VDI Heat
+    printed beside it. `coefficients` are A, B, C, D, T_c (K), rho_c (kg/m3), M (g/mol). Source: VDI Heat
     Atlas, 2nd ed. (2010), part D.
 
     Examples

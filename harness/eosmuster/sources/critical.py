@@ -13,10 +13,12 @@ from dataclasses import dataclass, field
 from functools import cache
 from types import MappingProxyType
 
+from eosmuster.reference_rows import Row, flag, number_or_none, rows
 from eosmuster.sources.handbook import Count
-from eosmuster.sources.rows import Row, flag, number_or_none, rows
 
 FILE = "critical_constants/critical_constants.csv"
+PREFIX = "critical:"
+"""What the names of these sources begin with; the key of the citation follows."""
 
 
 @dataclass(frozen=True)
@@ -109,7 +111,7 @@ def _entry(where: str, row: Row) -> CriticalConstants:
         critical_density=None if volume is None else 1.0 / volume,
         acentric_factor=number_or_none(where, row, "acentric_factor"),
         errors=_errors(where, row, volume),
-        source=f"critical:{row['source']}",
+        source=PREFIX + row["source"],
         citation=row["source"],
         excluded=flag(where, row),
         note=row["note"],

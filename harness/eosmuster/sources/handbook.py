@@ -19,10 +19,10 @@ import numpy as np
 
 from eosmuster.components import catalogue
 from eosmuster.errors import InputError, suggestion
+from eosmuster.reference_rows import Row, flag, number, rows
 from eosmuster.sources.cited import Correlation, Table
 from eosmuster.sources.correlations import FORMS
 from eosmuster.sources.printed import last_digits
-from eosmuster.sources.rows import Row, flag, number, rows
 
 CORRELATION_FILES: Mapping[str, str] = MappingProxyType(
     {
@@ -31,7 +31,20 @@ CORRELATION_FILES: Mapping[str, str] = MappingProxyType(
         "enthalpy_of_vaporization": "enthalpy_of_vaporization.csv",
     }
 )
+SHARED_FILE = "handbook/shared_equations.csv"
 TABLE_FILES = ("saturation_tables.csv", "heats_of_vaporization.csv", "normal_boiling_points.csv")
+
+
+NO_WITNESS = (
+    "no evidence of its own",  # it repeats another row
+    "another substance's row",
+    "parahydrogen",
+    "a decimal point seems lost",
+    "the transcription carries M",
+    "a sublimation pressure",
+)
+"""Said in the note of an excluded row that is no witness either: its numbers are not, or not its own, measurements of
+that property of that substance."""
 
 
 @dataclass(frozen=True)
@@ -83,6 +96,32 @@ def tables(cas: str, property: str, *, include_excluded: bool = False) -> tuple[
     """
     found = _tables().get((cas, property), ())
     return found if include_excluded else tuple(t for t in found if not t.excluded)
+
+
+def is_witness(reference: Correlation | Table) -> bool:
+    """Tell whether an excluded reference may be heard as a witness all the same, by its note.
+
+    >>> [(c.source, is_witness(c)) for c in correlations("355-25-9", "saturation_pressure", include_excluded=True)]
+    [('handbook:antoine-landolt-boernstein-20', False)]
+    """
+    return not any(reason in reference.note for reason in NO_WITNESS)
+
+
+def shares_library_equation(cas: str, source: str) -> bool:
+    """Tell whether a source (as results name it) has its values of a component from the library's own equation.
+
+    As far as ``references/handbook/shared_equations.csv`` knows: each row with the evidence, which the source states,
+    or an agreement that two independent equations do not have.
+
+    >>> shares_library_equation("7732-18-5", "handbook:iapws-r6-95")
+    True
+    """
+    return (cas, source) in _shared()
+
+
+@cache
+def _shared() -> frozenset[tuple[str, str]]:
+    return frozenset((row["cas"], f"handbook:{row['source']}") for _, row in rows(SHARED_FILE))
 
 
 def counts() -> tuple[Count, ...]:

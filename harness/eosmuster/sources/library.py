@@ -48,6 +48,12 @@ the equation's, at 250 K 3 %."""
 
 _SUSPECT_BELOW = 100.0  # Pa: far above any saturation pressure that contradicts its equation, so that few are checked
 
+BOILING = "boiling_temperature"
+
+_SLOPE_STEP = 1e-4
+"""Relative, of `slope`: the chord of a vapour pressure is then within 1e-5 of the tangent, where ten times as much
+would do for an uncertainty, and the digits that the difference loses are not missed."""
+
 _OUTPUTS = ("temperature", "saturation_pressure", "liquid_density", "vapor_density")
 _NEEDED: Mapping[str, tuple[str, ...]] = MappingProxyType(
     {
@@ -97,6 +103,35 @@ def at_pressure(component: Component, pressure: ArrayLike, properties: Sequence[
     '373.124'
     """
     return _answers(component, "p", pressure, properties)
+
+
+def slope(component: Component, at: ArrayLike, name: str) -> Floats:
+    """Give how a property changes along the saturation line: with temperature, a boiling temperature with pressure.
+
+    Parameters
+    ----------
+    at : K; Pa for ``boiling_temperature``; any shape
+    name : as for `saturation`
+
+    Returns
+    -------
+    SI, in that shape: the chord to both sides, to one at an end of the range; NaN outside
+
+    Examples
+    --------
+    >>> from eosmuster.components import find
+    >>> water = find("water")
+    >>> by_temperature, by_pressure = slope(water, 373.15, "saturation_pressure"), slope(water, 101418.0, BOILING)
+    >>> f"{by_temperature:.0f} Pa/K {by_temperature * by_pressure:.4f}"
+    '3619 Pa/K 1.0000'
+    """
+    x, ask = np.asarray(at, np.float64), at_pressure if name == BOILING else saturation
+    step = _SLOPE_STEP * x
+    low, middle, high = (ask(component, x + k * step, [name]).values[name] for k in (-1.0, 0.0, 1.0))
+    left, right = np.isfinite(low), np.isfinite(high)
+    with np.errstate(invalid="ignore", divide="ignore"):  # neither side has a value
+        rise = np.where(right, high, middle) - np.where(left, low, middle)
+        return np.asarray(rise / (step * (left.astype(np.float64) + right)))
 
 
 def _answers(component: Component, given: str, values: ArrayLike, properties: Sequence[str]) -> Answers:

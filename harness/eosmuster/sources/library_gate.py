@@ -25,16 +25,17 @@ REASONS = (
     "below the range of the reference equation",
     "at or above the critical point, or above the range of the reference equation",
     "the library found no solution",
-    "the library's vapour pressure contradicts its own equation of state",
+    "the library's vapor pressure contradicts its own equation of state",
     "above the temperatures of the reference equation",
     "above the pressures of the reference equation",
     "solid, by the library's melting line",
     "the stated phase is not the stable one of the reference there",
+    "beyond the reference's critical point there is no such phase; phase = 'stable' takes whatever is there",
 )
 """Why there is no answer: `Answers.reason` holds the index into this tuple, 0 where there is one."""
 
 ANSWERED, NOT_IN_LIBRARY, BELOW_RANGE, ABOVE_RANGE, FAILED, INCONSISTENT = range(6)
-TOO_HOT, TOO_COMPRESSED, SOLID, NOT_STABLE = range(6, len(REASONS))
+TOO_HOT, TOO_COMPRESSED, SOLID, NOT_STABLE, BEYOND_CRITICAL = range(6, len(REASONS))
 
 ROUNDING = 1e-12
 """By so much a temperature may lie below a range: 0.01 degC is 273.15999999999997 K."""
@@ -58,6 +59,7 @@ class Reach:
     critical_K : the stored (published) critical temperature and the equation's numerical one, the lower first: what
         phase a state between them is in is in doubt
     own_critical_K : the numerical one
+    critical_Pa : the lower of the two critical pressures
     reducing_K, reducing_density : what tau and delta are made with, K and mol/m3
     gas_constant : the equation's own, J/(mol K)
     molar_mass : the equation's own, kg/mol
@@ -67,6 +69,7 @@ class Reach:
     highest_Pa: float
     critical_K: tuple[float, float]
     own_critical_K: float
+    critical_Pa: float
     reducing_K: float
     reducing_density: float
     gas_constant: float
@@ -156,11 +159,13 @@ def _limits(name: str) -> Limits:
 def _reach(name: str) -> Reach:
     equation = state(name)
     own, published = equation.T_critical(), catalogue()[name].critical_temperature
+    pressures = equation.p_critical(), catalogue()[name].critical_pressure
     return Reach(
         highest_K=equation.Tmax(),
         highest_Pa=equation.pmax(),
         critical_K=(min(own, published), max(own, published)),
         own_critical_K=own,
+        critical_Pa=min(pressures),
         reducing_K=equation.T_reducing(),
         reducing_density=equation.rhomolar_reducing(),
         gas_constant=equation.gas_constant(),

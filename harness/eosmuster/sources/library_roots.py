@@ -10,15 +10,12 @@ from types import MappingProxyType
 import numpy as np
 from numpy.typing import NDArray
 
+from eosmuster.quantities import PHASES
 from eosmuster.sources import backend, helmholtz
-from eosmuster.sources.library_gate import ANSWERED, FAILED, NOT_STABLE, SOLID, Codes, Reach
+from eosmuster.sources.library_gate import ANSWERED, BEYOND_CRITICAL, FAILED, NOT_STABLE, SOLID, Codes, Reach
 
 Floats = NDArray[np.float64]
 Flags = NDArray[np.bool_]
-
-PHASES = ("liquid", "vapor", "supercritical", "stable")
-"""What a phase may be stated as. Below the critical temperature a fluid is liquid or vapor, above it supercritical
-at every pressure; ``stable`` is whichever of the three is the stable one."""
 
 AT_BOUNDARY = 1e-9
 """So near to the vapour pressure (relative) both phases are stable."""
@@ -135,9 +132,13 @@ def _phase_reason(
     lower, higher = ends.critical_K
     in_doubt = (lower <= T) & (higher >= T)
     other = np.zeros(T.shape, np.bool_) if stated == "stable" else (phase != PHASES.index(stated)) | in_doubt
+    if stated == "vapor":
+        # hotter it is a gas, up to the critical pressure
+        other &= (lower > T) | (phase == _LIQUID) | (p >= ends.critical_Pa)
+    beyond = other & (lower <= T) & (stated != "supercritical")
     unknown = np.isnan(boundary.pressure) & (phase != _SUPERCRITICAL)
-    tests = (_solid(name, T, p), unknown, other)
-    return np.select(tests, (SOLID, FAILED, NOT_STABLE), ANSWERED).astype(np.int8)
+    tests = (_solid(name, T, p), unknown, beyond, other)
+    return np.select(tests, (SOLID, FAILED, BEYOND_CRITICAL, NOT_STABLE), ANSWERED).astype(np.int8)
 
 
 def _solid(name: str, T: Floats, p: Floats) -> Flags:

@@ -13,7 +13,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from eosmuster.components import Component
 from eosmuster.errors import InputError, suggestion
-from eosmuster.quantities import SINGLE_PHASE
+from eosmuster.quantities import PHASES, SINGLE_PHASE
 from eosmuster.sources import backend
 from eosmuster.sources.library_gate import (
     ANSWERED,
@@ -30,7 +30,7 @@ from eosmuster.sources.library_gate import (
     range_reason,
     reach,
 )
-from eosmuster.sources.library_roots import PHASES, evaluate
+from eosmuster.sources.library_roots import evaluate
 
 Floats = NDArray[np.float64]
 
@@ -44,8 +44,9 @@ def single_phase(
     ----------
     temperature, pressure : K and Pa, broadcast against each other
     phase : one of `PHASES` (InputError on another). Where it is not the stable phase of the reference there is no
-        answer: a liquid below its vapour pressure, a vapor above it, either at or above the critical temperature,
-        ``supercritical`` at or below it.
+        answer: a liquid below its vapour pressure or at or above the critical temperature, a vapor above its vapour
+        pressure or, from the critical temperature on, above the critical pressure, ``supercritical`` at or below
+        the critical temperature.
     properties : names in `eosmuster.quantities.SINGLE_PHASE` (InputError on another). Residual is against the ideal
         gas at the same temperature and pressure; the gas constant is the equation's own.
 
@@ -159,6 +160,38 @@ def density(component: Component, temperature: ArrayLike, pressure: ArrayLike, p
         asked &= within.to_K > T
     result[asked] = backend.density(component.library_name, root, T[asked], p[asked])
     return result
+
+
+def density_slopes(
+    component: Component, temperature: ArrayLike, pressure: ArrayLike, phase: str = ""
+) -> tuple[Floats, Floats]:
+    """Give how single-phase densities change with temperature and with pressure, each at a constant other.
+
+    Parameters
+    ----------
+    as for `density`
+
+    Returns
+    -------
+    mol/(m3 K) and mol/(m3 Pa), of the root that `density` gives; NaN where it gives none
+
+    Examples
+    --------
+    >>> from eosmuster.components import find
+    >>> by_temperature, by_pressure = density_slopes(find("argon"), [300.0], [1e3])  # nearly ideal: -p/RT^2, 1/RT
+    >>> f"{by_temperature[0] * 8.314462618 * 300.0**2 / 1e3:.4f} {by_pressure[0] * 8.314462618 * 300.0:.4f}"
+    '-1.0000 1.0000'
+    """
+    T, p = np.broadcast_arrays(np.asarray(temperature, np.float64), np.asarray(pressure, np.float64))
+    known, slopes = np.isfinite(density(component, T, p, phase)), np.full((2, *T.shape), np.nan)
+    if known.any():
+        outputs = ("rhomolar", "isobaric_expansion_coefficient", "isothermal_compressibility")
+        root = {"liquid": "liquid", "vapor": "gas"}.get(phase, "")
+        rho, expansion, compressibility = backend.single_phase(
+            component.library_name, root, T[known], p[known], outputs
+        )
+        slopes[:, known] = -rho * expansion, rho * compressibility
+    return slopes[0], slopes[1]
 
 
 def _range_reason(component: Component, T: Floats, p: Floats) -> Codes:

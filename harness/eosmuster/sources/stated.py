@@ -17,7 +17,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from eosmuster.components import Component, catalogue
-from eosmuster.sources.rows import Row, number, rows
+from eosmuster.reference_rows import Row, number, rows
 
 Floats = NDArray[np.float64]
 Codes = NDArray[np.int8]
@@ -37,10 +37,12 @@ STAND_INS: Mapping[str, str] = MappingProxyType(
         "liquid_heat_capacity": "isobaric_heat_capacity",
         "vapor_heat_capacity": "isobaric_heat_capacity",
         "compressibility_factor": "density",  # Z = p/(rho R T)
-        "fugacity_coefficient": "density",  # an integral over Z
     }
 )
 """Property -> the one whose relative uncertainty it takes, which has rows in the tables."""
+
+UNSTATED = "unstated"
+"""The coverage factor of a source that names none."""
 
 LIBRARY_FILE, HANDBOOK_FILE = "uncertainty/coolprop.csv", "uncertainty/handbook.csv"
 DEFAULTS_FILE = "uncertainty/class_defaults.csv"
@@ -58,7 +60,7 @@ class Statement:
     phase : ``liquid``, ``vapor`` or ``supercritical``, if it is stated for that phase alone; else ""
     uncertainty_pct : expanded, in %
     coverage_factor : ``2``, or ``unstated``, which is taken as 2
-    source : the paper; for a handbook the key into the bibliography
+    source : key into `equation_citations`, or several joined by "|"; for a handbook the key into the bibliography
     how_read : ``read``, ``read in a transcription that ...`` or ``from memory``, and what was made of it
     """
 
@@ -95,6 +97,11 @@ def statements(component: str, name: str, source: str = "") -> tuple[Statement, 
     """
     file = HANDBOOK_FILE if source else LIBRARY_FILE
     return tuple(s for s in _statements(file).get((component, name), ()) if source in ("", s.source))
+
+
+def remembered(statement: Statement) -> bool:
+    """Tell whether it was noted down from memory, and not read."""
+    return statement.how_read.startswith("from memory")
 
 
 def largest(found: Iterable[Statement], temperature: ArrayLike) -> Floats:

@@ -45,13 +45,13 @@ def uncertainty_pct(
     Returns
     -------
     shape of `temperature`, or of both; NaN where no uncertainty is stated in ``references/uncertainty/coolprop.csv``,
-    nor assumed: so always for residuals and the Joule-Thomson coefficient. Some properties follow another:
+    nor assumed: so always for residuals, the Joule-Thomson coefficient and the fugacity coefficient. Some properties
+    follow another:
 
     - the boiling temperature the vapour pressure, U(T) = U(p) / (dln p/dln T);
     - the entropy of vaporization the enthalpy of vaporization, being that over T;
     - the heat capacities of saturated phases the isobaric heat capacity there;
-    - the compressibility factor, at given T and p, the density, and so does the fugacity coefficient; that of a
-      liquid carries the vapour pressure's besides, from which its fugacity is reckoned
+    - the compressibility factor, at given T and p, the density
 
     Examples
     --------
@@ -97,11 +97,32 @@ def uncertainty_borders(
     if assumed and component.library_name in catalogue():
         # a statement on a box of temperature and pressure hides a default's border at some pressures only
         ends.update(stated.assumed_borders(component, asked, () if asked in SINGLE_PHASE else found))
-    within = limits(component)
-    if name == "fugacity_coefficient" and within is not None:
-        liquid = uncertainty_borders(component, "saturation_pressure", remembered=remembered, assumed=assumed)
-        ends.update((*liquid, within.to_K))
     return tuple(sorted(ends))
+
+
+def coverage_factor_unstated(
+    component: Component, name: str, temperature: ArrayLike, *, remembered: bool = True
+) -> NDArray[np.bool_]:
+    """Tell where the uncertainty of a saturated property comes from a source that states no coverage factor.
+
+    It is taken as k = 2 then. Never of what is assumed, nor of the heat capacities.
+
+    Examples
+    --------
+    >>> from eosmuster.components import find
+    >>> coverage_factor_unstated(find("propane"), "saturation_pressure", [170.0, 300.0]).tolist()
+    [False, True]
+    """
+    T = np.asarray(temperature, np.float64)
+    found = counted(component, name, remembered=remembered)
+    known = stated.largest((s for s in found if s.coverage_factor != stated.UNSTATED), T)
+    return np.asarray(stated.largest(found, T) > np.nan_to_num(known))
+
+
+def counted(component: Component, name: str, *, remembered: bool = True) -> tuple[stated.Statement, ...]:
+    """Give what is stated of a saturated property, by the statements on the property that it follows."""
+    asked = "saturation_pressure" if name == "boiling_temperature" else stated.STAND_INS.get(name, name)
+    return () if asked in SINGLE_PHASE else _statements(component, asked, remembered)
 
 
 def pressure_borders(component: Component, name: str, *, remembered: bool = True) -> tuple[float, ...]:
@@ -175,22 +196,18 @@ def _single_phase(
     found = _statements(component, asked, remembered)
     if name in SINGLE_PHASE:
         T, p = np.broadcast_arrays(T, np.asarray(np.nan if pressure is None else pressure, np.float64))
-        matters = name == "fugacity_coefficient" or any(s.phase for s in found)
-        phase = _phase(component, T, p) if matters else np.full(T.shape, "")
+        phase = _phase(component, T, p) if any(s.phase for s in found) else np.full(T.shape, "")
     else:
         p, phase = phase_boundary(component, T), np.full(T.shape, name.partition("_")[0])
     values = stated.largest_at(found, T, p, phase)
     values = np.where(_in_critical_region(component, T, p), np.nan, values)
     values = _filled(component, asked, T, values, assumed)
-    if name == "fugacity_coefficient":
-        saturated = _stated(component, "saturation_pressure", T, remembered, assumed)
-        values = np.where(phase == "liquid", values + saturated, values)
     return np.where(p > 0.0, values, np.nan)
 
 
 def _statements(component: Component, name: str, remembered: bool) -> tuple[stated.Statement, ...]:
     found = stated.statements(component.library_name, name)
-    return tuple(s for s in found if remembered or not s.how_read.startswith("from memory"))
+    return tuple(s for s in found if remembered or not stated.remembered(s))
 
 
 def _filled(component: Component, name: str, T: Floats, values: Floats, assumed: bool) -> Floats:

@@ -54,21 +54,6 @@ def test_units_in_the_header() -> None:
     assert np.isnan(one.pressure).all()
 
 
-def test_a_density_by_mass_becomes_molar() -> None:
-    reading = read(
-        "component,phase,temperature [K],pressure [MPa],density [g/cm3],U(density; k=2) [g/cm3],u(temperature) [K]\n"
-        "propane,liquid,290,2.0,0.5079,0.0006,0.01\npropane,gas,290,0.1,0.00186,0.00001,0.01\n"
-    )
-    liquid, vapor = reading.sets
-    assert (liquid.property, liquid.phase, liquid.state) == ("density", "liquid", "single_phase")
-    assert vapor.phase == "vapor"
-    np.testing.assert_allclose(liquid.values, 507.9 / M_PROPANE)
-    np.testing.assert_allclose(liquid.standard_uncertainty, 0.3 / M_PROPANE)
-    np.testing.assert_allclose(liquid.temperature_uncertainty, 0.01)
-    np.testing.assert_allclose(liquid.pressure, 2e6)
-    assert not liquid.level_assumed.any()
-
-
 @pytest.mark.parametrize(
     ("column", "value", "u", "assumed"),
     [
@@ -193,10 +178,10 @@ def test_an_empty_cell_is_no_value() -> None:
 @pytest.mark.parametrize(
     ("u", "words", "points"),
     [
-        ("0", "read without their uncertainty: 0 counts as missing", 2),
-        ("-3", "read without their uncertainty, which is negative", 2),
-        ("2000", "left out: their stated uncertainty is larger than the value", 1),
-        ("0.0001", "claim an uncertainty below the rounding of their own last digit", 2),
+        ("0", "line 2 read without the uncertainty: 0 counts as missing", 2),
+        ("-3", "line 2 read without the uncertainty, which is negative", 2),
+        ("2000", "line 2 left out: the stated uncertainty is larger than the value", 1),
+        ("0.0001", "line 2: the stated uncertainty is below the rounding of the last printed digit", 2),
         ("few", "nothing is taken of line 2: 'few' is text in a column of numbers", 2),
     ],
 )
@@ -267,7 +252,7 @@ def test_components_of_the_plan_are_known() -> None:
     reading = read(text, own=[own])
     assert only(reading).component is own
     [sentence] = told(reading)
-    assert sentence.endswith("line 2 left out: plant cut 7 has no molar mass, which a density by mass needs")
+    assert sentence.endswith("line 2 left out: plant cut 7 has no molar mass, which 'kg/m3' needs")
 
 
 def test_lines_of_another_length_are_left_out() -> None:
@@ -275,9 +260,11 @@ def test_lines_of_another_length_are_left_out() -> None:
     assert len(only(reading)) == 1
     [sentence] = told(reading)
     assert sentence.startswith(
-        "row: 2 lines left out: they have another number of cells than the header in line 1, as line 3"
+        "row: 2 lines (3, 4) left out: another number of cells than the 3 of the header in line 1, 4 in line 3; "
     )
     assert "a decimal comma" in sentence
+    [alone] = told(pressures("propane,300,998", "propane,310"))
+    assert alone.startswith("row: line 3 left out: another number of cells than the 3 of the header in line 1, 2 in")
 
 
 def test_a_density_needs_its_pressure() -> None:
@@ -293,6 +280,6 @@ def test_a_phase_nobody_knows_is_refused() -> None:
     ]
 
 
-def test_nothing_but_delimiters_is_refused():
+def test_nothing_but_delimiters_is_refused() -> None:
     reading = laboratory.read_text(b",", "empty.csv")
     assert [d.sentence for d in reading.diagnostics] == ["it holds nothing but empty cells"]

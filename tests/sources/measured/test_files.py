@@ -56,6 +56,13 @@ def test_a_pattern_that_names_nothing_is_an_error(folder: Path, pattern: str) ->
         read_files(["lab/*.xml", pattern], folder)
 
 
+@pytest.mark.parametrize("patterns", [["lab/density.json"], ["lab/*.json", "lab/density.json"]])
+def test_patterns_that_name_nothing_but_descriptors_are_an_error(folder: Path, patterns: list[str]) -> None:
+    with pytest.raises(InputError, match=r"references\.files: 'lab/.*json' names no file in .* but descriptors"):
+        read_files(patterns, folder)
+    assert read_files([*patterns, "lab/density.csv"], folder).files == 1
+
+
 def test_a_kind_that_is_not_read_is_listed(folder: Path) -> None:
     [found] = read_files(["lab/*.png"], folder).diagnostics
     assert str(found) == "lab/plot.png: its kind '.png' is not read; valid: .xml, .csv, .tsv, .txt"
@@ -67,6 +74,30 @@ def test_a_folder_is_read_with_all_below_it(folder: Path) -> None:
     assert files(reading) == ["lab/a.xml", "lab/deep/c.CSV", "lab/density.csv"]
     assert reading.files == 4
     assert told == [("measured", done, 4) for done in range(4)]
+
+
+def test_a_large_folder_lists_every_bad_file_and_reads_the_others(tmp_path: Path) -> None:
+    bad = {
+        "cut.xml": GOOD_XML[: len(GOOD_XML) // 2],
+        "empty.xml": b"",
+        "page.xml": b"<html/>",
+        "laughs.xml": b"<!DOCTYPE x><x/>",
+        "empty.csv": b"",
+        "binary.csv": b"a,b\0c\n\0",
+        "words.csv": b"just words",
+    }
+    for i in range(60):
+        (tmp_path / f"{i:03}").mkdir()
+        (tmp_path / f"{i:03}" / "good.csv").write_text(GOOD_CSV.format(250 + i))
+        for name, content in bad.items() if i % 4 == 0 else ():
+            (tmp_path / f"{i:03}" / name).write_bytes(content)
+    expected = {f"{i:03}/{name}" for i in range(0, 60, 4) for name in bad}
+    told: list[tuple[str, int, int]] = []
+    reading = read_folder(tmp_path, progress=lambda *what: told.append(what))
+    assert {d.file for d in reading.diagnostics if d.code == "file"} == expected
+    assert [s.values.tolist() for s in reading.sets if s.source.file.endswith(".csv")] == [[998000.0]] * 60
+    assert reading.files == 165
+    assert told == [("measured", done, 165) for done in range(165)]
 
 
 @pytest.mark.parametrize("pattern", ["lab", "lab/", "."])

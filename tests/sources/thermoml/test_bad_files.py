@@ -12,6 +12,7 @@ from time import process_time
 import pytest
 
 from eosmuster.sources.measured.table import Reading
+from eosmuster.sources.thermoml import columns
 from eosmuster.sources.thermoml import reader as thermoml
 
 FIXTURES = Path(__file__).parents[1] / "fixtures" / "thermoml"
@@ -104,6 +105,29 @@ def test_a_file_that_breaks_off_keeps_the_blocks_before(share: float) -> None:
 def test_rows_of_a_block_that_has_no_end_are_said_to_be_left_out() -> None:
     cut = GOOD[: GOOD.index("</NumValues>") + len("</NumValues>")]
     assert only(read(cut)).endswith("what block 1 held so far is left out")
+
+
+@pytest.mark.parametrize("begin", [0, GOOD.rindex("<PureOrMixtureData>")], ids=["read", "nobody's"])
+@pytest.mark.parametrize("rows_kept", [1, 3, 50])
+def test_the_values_of_a_block_that_has_no_end_are_counted(begin: int, rows_kept: int) -> None:
+    """Of a block that is not wanted the first row is looked at, and the others are skipped."""
+    start = GOOD.index("<NumValues>", begin)
+    row = GOOD[start : GOOD.index("</NumValues>", start) + len("</NumValues>")]
+    before = GOOD[:start].count("<PropertyValue>")
+    reading = read(GOOD[:start] + row * rows_kept + row[:40])
+    [told] = [d for d in reading.diagnostics if d.code == "file"]
+    assert told.lost == rows_kept
+    assert reading.values == before + rows_kept
+    assert sum(map(len, reading.sets)) + sum(reading.unread.values()) == before
+
+
+def test_a_block_of_too_many_kinds_of_rows_is_given_up_and_counted(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(columns, "_MOST_GROUPS", 1)
+    monkeypatch.setattr(columns, "_MOST_WAITING", 2)
+    reading = read(GOOD.replace("<nExpandUncertValue>0.8</nExpandUncertValue>", ""))
+    [told] = reading.diagnostics
+    assert told.sentence == "the rows of a block are of more than 1 kinds; what block 1 held so far is left out"
+    assert told.lost == reading.values == 2
 
 
 @pytest.mark.parametrize("before", ["\ufeff", " \n\t"])

@@ -206,11 +206,11 @@ def test_stated_uncertainties_become_standard_ones(read: Callable[[str], Reading
 @pytest.mark.parametrize(
     ("number", "code", "words", "lost"),
     [
-        (6, "uncertainty", "no usable level of confidence: 95 % is assumed", 0),
+        (6, "uncertainty", "without a usable level of confidence: 95 % is assumed", 0),
         (10, "uncertainty", "0 counts as missing", 0),
         (11, "uncertainty", "which is negative", 0),
-        (12, "uncertainty", "left out: their stated uncertainty is larger than the value", 1),
-        (13, "rounding", "below the rounding of their own last digit", 0),
+        (12, "uncertainty", "left out: the stated uncertainty is larger than the value", 1),
+        (13, "rounding", "below the rounding of the last printed digit", 0),
     ],
 )
 def test_what_is_odd_about_an_uncertainty_is_said(

@@ -113,7 +113,7 @@ def test_an_absurd_uncertainty_is_named_and_replaced(reading: Reading) -> None:
     np.testing.assert_allclose(one.standard_uncertainty[0], 0.05 / 3.0**0.5)  # half of 0.0001 kPa over sqrt(3)
     [told] = [d for d in reading.diagnostics if d.file == one.source.file and d.block == 16]
     assert "11 of 23 points (row 1: 0.0013 kPa, stated 2.65e-08)" in told.sentence
-    assert "below the rounding of their own last digit, which cannot be" in told.sentence
+    assert "below the rounding of the last printed digit, which cannot be" in told.sentence
 
 
 def test_the_fixtures_are_valid_against_the_schema() -> None:

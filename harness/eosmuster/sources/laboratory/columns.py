@@ -12,15 +12,15 @@ from __future__ import annotations
 
 import json
 import re
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
 from typing import Any
 
 from eosmuster.errors import InputError, suggestion
 from eosmuster.quantities import UNITS, shown, split_quantity
+from eosmuster.sources.laboratory.coverage import STANDARD, Coverage, coverage
 from eosmuster.sources.laboratory.text import PLAIN, Style
-from eosmuster.sources.measured.uncertainty import coverage_factor
 
 DIMENSIONS: Mapping[str, tuple[str, ...]] = {
     "temperature": ("temperature",),
@@ -30,13 +30,13 @@ DIMENSIONS: Mapping[str, tuple[str, ...]] = {
     "liquid_density": ("density", "mass_density"),
     "vapor_density": ("density", "mass_density"),
     "density": ("density", "mass_density"),
-    "enthalpy_of_vaporization": ("energy",),
+    "enthalpy_of_vaporization": ("energy", "mass_energy"),
 }
 """Quantities of columns of numbers -> dimensions their unit may have."""
 
 STATE = ("temperature", "pressure")
 TEXTS = ("component", "phase", "method")
-PHASES = ("liquid", "vapor", "fluid")
+PHASES: tuple[str, ...] = ("liquid", "vapor", "fluid")
 
 _OTHER_NAMES = {"fluid": "component", "substance": "component", "vapor_pressure": "saturation_pressure"}
 _UNCERTAINTY = re.compile(
@@ -57,8 +57,7 @@ class Column:
     quantity : a key of `DIMENSIONS`, or one of `TEXTS`
     uncertainty : True for the uncertainty of the quantity
     unit, dimension : of the numbers; "" for texts. An uncertainty may be a ``fraction`` of its value
-    divisor : of an expanded uncertainty; 1 for a standard one and for values
-    level_assumed : True if the divisor had to be assumed
+    coverage : how far an uncertainty is expanded
     style : how its numbers are written
     """
 
@@ -68,19 +67,18 @@ class Column:
     uncertainty: bool = False
     unit: str = ""
     dimension: str = ""
-    divisor: float = 1.0
-    level_assumed: bool = False
+    coverage: Coverage = STANDARD
     style: Style = PLAIN
 
     @property
     def factor(self) -> float:
         """SI value of a unit step of the column."""
-        return UNITS[self.dimension][self.unit][0] / self.divisor
+        return UNITS[self.dimension][self.unit][0] / self.coverage.divisor
 
     def si(self, value: float) -> float:
-        """Give a value in SI (a mass density in kg/m3)."""
+        """Give a value in SI (one by mass still by mass: kg/m3, J/kg)."""
         factor, offset = UNITS[self.dimension][self.unit]
-        return (value + (0.0 if self.uncertainty else offset)) * factor / self.divisor
+        return (value + (0.0 if self.uncertainty else offset)) * factor / self.coverage.divisor
 
 
 @dataclass(frozen=True)
@@ -94,6 +92,7 @@ class Descriptor:
     missing : cells that stand for no value
     delimiter : "" if it is not declared
     citation : the first of its sources, "" if it names none
+    file : its name; "" if there is none
     """
 
     fields: Mapping[str, Mapping[str, Any]] = field(default_factory=dict)
@@ -101,6 +100,12 @@ class Descriptor:
     missing: frozenset[str] = frozenset({""})
     delimiter: str = ""
     citation: str = ""
+    file: str = ""
+
+
+def descriptors_of(path: Path) -> tuple[Path, ...]:
+    """Give where the descriptor of a CSV file may be, in the order in which they count."""
+    return path.with_suffix(".json"), path.with_suffix(".schema.json"), path.parent / "datapackage.json"
 
 
 def descriptor_beside(path: Path) -> Descriptor:
@@ -108,7 +113,7 @@ def descriptor_beside(path: Path) -> Descriptor:
 
     Raises `InputError` if there is one that cannot be read; gives an empty one if there is none.
     """
-    for file in (path.with_suffix(".json"), path.with_suffix(".schema.json"), path.parent / "datapackage.json"):
+    for file in descriptors_of(path):
         if file.is_file():
             found = _load(file)
             if "resources" in found:
@@ -153,6 +158,7 @@ def _descriptor(found: Mapping[str, Any], file: str) -> Descriptor:
         missing=frozenset(map(str, missing)) | {""} if isinstance(missing, list) else frozenset({""}),
         delimiter=str(dialect.get("delimiter", "")) if isinstance(dialect, dict) else "",
         citation=_citation(found.get("sources")),
+        file=file,
     )
 
 
@@ -177,7 +183,7 @@ def column(title: str, place: int, described: Mapping[str, Any]) -> Column:
     Examples
     --------
     >>> found = column("u(density, k=2) [kg/m3]", 3, {})
-    >>> found.quantity, found.uncertainty, found.unit, found.divisor
+    >>> found.quantity, found.uncertainty, found.unit, found.coverage.divisor
     ('density', True, 'kg/m3', 2.0)
     >>> column("temperature [degC]", 0, {}).si(25.0)
     298.15
@@ -196,14 +202,35 @@ def column(title: str, place: int, described: Mapping[str, Any]) -> Column:
         raise InputError(f"column {shown(title)} has no unit; write e.g. '{title} [{_example(quantity)}]'")
     _, known = split_quantity(f"1 {unit}", dimensions, f"column {shown(title)}")
     dimension = next(d for d in dimensions if known in UNITS[d])
-    divisor, assumed = _divisor(uncertain, described) if is_uncertainty else (1.0, False)
+    expanded = _coverage(uncertain, described) if is_uncertainty else STANDARD
     style = Style(str(described.get("decimalChar") or "."), str(described.get("groupChar") or ""))
-    return Column(title, place, quantity, is_uncertainty, known, dimension, divisor, assumed, style)
+    return Column(title, place, quantity, is_uncertainty, known, dimension, expanded, style)
+
+
+def holds_values(title: str, described: Mapping[str, Any]) -> bool:
+    """Tell whether a column holds measured values, also one that cannot be read: it is no remark, state or text.
+
+    What is not called as a property that is known is one if it has a unit.
+
+    >>> [holds_values(title, {}) for title in ("density [barg]", "viscosity [Pa s]", "u(density) [%]", "operator")]
+    [True, True, False, False]
+    """
+    if "uncertainty_of" in described or (_UNCERTAINTY.match(title) and not described.get("quantity")):
+        return False
+    named = _UNIT.match(title)
+    name = _folded(str(described.get("quantity") or (named["name"] if named else title)))
+    if name in DIMENSIONS or name in TEXTS:
+        return name not in STATE and name not in TEXTS
+    return bool(described.get("unit") or (named and named["unit"]))
+
+
+def _folded(name: str) -> str:
+    folded = re.sub(r"[\s-]+", "_", name.strip().casefold()).replace("vapour", "vapor")
+    return _OTHER_NAMES.get(folded, folded)
 
 
 def _quantity(name: str, title: str) -> str:
-    folded = re.sub(r"[\s-]+", "_", name.strip().casefold()).replace("vapour", "vapor")
-    folded = _OTHER_NAMES.get(folded, folded)
+    folded = _folded(name)
     valid = (*DIMENSIONS, *TEXTS)
     if folded not in valid:
         raise InputError(f"column {shown(title)} is not read; {suggestion(folded, valid, most=len(valid))}")
@@ -221,18 +248,6 @@ def _example(quantity: str) -> str:
     return {"temperature": "K", "pressure": "kPa", "density": "kg/m3"}.get(DIMENSIONS[quantity][0], "kJ/mol")
 
 
-def _divisor(uncertain: re.Match[str] | None, described: Mapping[str, Any]) -> tuple[float, bool]:
-    """Give what makes a standard uncertainty of an uncertainty, and whether that had to be assumed."""
-    stated = [described.get("coverage_factor"), uncertain["k"] if uncertain else None]
-    factor, level = _first_number(stated), _first_number([described.get("level")])
-    expanded = uncertain is not None and uncertain["kind"] == "U"
-    if not expanded and factor is None and level is None:
-        return 1.0, False
-    return coverage_factor(level, factor)
-
-
-def _first_number(values: Iterable[object]) -> float | None:
-    for value in values:
-        if isinstance(value, (int, float, str)) and re.fullmatch(r"\d{1,3}(\.\d{1,6})?", str(value)):
-            return float(value)
-    return None
+def _coverage(uncertain: re.Match[str] | None, described: Mapping[str, Any]) -> Coverage:
+    kind, factor = (uncertain["kind"], uncertain["k"]) if uncertain else ("u", None)
+    return coverage(kind == "U", [described.get("coverage_factor"), factor], described.get("level"))

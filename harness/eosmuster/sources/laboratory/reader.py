@@ -27,11 +27,16 @@ from eosmuster.sources.laboratory.columns import (
     Descriptor,
     column,
     descriptor_beside,
+    holds_values,
 )
 from eosmuster.sources.laboratory.points import beside, sets_of
 from eosmuster.sources.laboratory.table import Key, Table
 from eosmuster.sources.laboratory.text import DELIMITERS, LARGEST_FILE, decoded, delimiter_of, header_of, lines_of
+from eosmuster.sources.measured.faults import listed
 from eosmuster.sources.measured.table import Diagnostic, MeasuredSet, Reading, Source
+
+Line = tuple[int, list[str]]
+"""Its number, and its cells."""
 
 VALUES = tuple(name for name in DIMENSIONS if name not in STATE)
 """Quantities whose columns hold measured values."""
@@ -80,13 +85,14 @@ def read_text(data: bytes, name: str, descriptor: Descriptor | None = None, own:
         return _refused(name, str(error), told)
     if delimiter != "," and not descriptor.delimiter:
         told.append(Diagnostic(name, 0, "writing", f"its cells are delimited by {DELIMITERS[delimiter]}, it seems"))
-    columns_told, columns = _columns(lines[0][1], name, descriptor)
+    columns_told, columns = _columns(lines, name, descriptor)
     whole, whole_told = _whole(name, descriptor, columns)
-    strays, rows = _strays(name, lines, columns)
+    strays, rows = _strays(name, lines, descriptor)
     finder = _Finder(own)
     table = Table(rows, columns, whole, descriptor.missing, finder)
-    lost = sum(one.lost for one in strays)
-    source = Source(name, citation=descriptor.citation)
+    lost = sum(one.lost for one in (*columns_told, *strays))
+    beside_it = Path(name).with_name(descriptor.file).as_posix() if descriptor.file else ""
+    source = Source(name, citation=descriptor.citation, descriptor=beside_it)
     return _reading(table, finder, source, [*told, *columns_told, *whole_told, *strays], lost)
 
 
@@ -94,7 +100,7 @@ def _refused(name: str, why: str, before: Sequence[Diagnostic] = ()) -> Reading:
     return Reading(diagnostics=(*before, Diagnostic(name, 0, "file", why)), files=1)
 
 
-def _lines(text: str, descriptor: Descriptor) -> tuple[str, list[tuple[int, list[str]]]]:
+def _lines(text: str, descriptor: Descriptor) -> tuple[str, list[Line]]:
     """Give the delimiter and all lines, the header first."""
     header = header_of(text)
     if not header:
@@ -119,33 +125,33 @@ def _whole(name: str, descriptor: Descriptor, columns: dict[Key, Column]) -> tup
     return {key: text for key, text in descriptor.whole.items() if key not in twice}, told
 
 
-def _strays(
-    name: str, lines: Sequence[tuple[int, list[str]]], columns: dict[Key, Column]
-) -> tuple[list[Diagnostic], list[tuple[int, list[str]]]]:
-    """Leave out the lines that have another number of cells than the header."""
+def _strays(name: str, lines: Sequence[Line], descriptor: Descriptor) -> tuple[list[Diagnostic], list[Line]]:
+    """Leave out the lines that have another number of cells than the header: a value of each property a line."""
     (first, header), rows = lines[0], lines[1:]
     fitting = [(number, cells) for number, cells in rows if len(cells) == len(header)]
     strays = [(number, cells) for number, cells in rows if len(cells) != len(header)]
     if not strays:
         return [], fitting
     number, cells = strays[0]
+    named = listed("line", [line for line, _ in strays])
     sentence = (
-        f"{len(strays)} lines left out: they have another number of cells than the header in line {first}, as line "
-        f"{number} with {len(cells)} instead of {len(header)}; a decimal comma or a delimiter in a text does that"
+        f"{named} left out: another number of cells than the {len(header)} of the header in line {first}, "
+        f"{len(cells)} in line {number}; a decimal comma or a delimiter in a text does that"
     )
-    values = sum((quantity, False) in columns for quantity in VALUES)
+    values = sum(holds_values(title, descriptor.fields.get(title, {})) for title in header)
     return [Diagnostic(name, 1, "row", sentence, len(strays) * values)], fitting
 
 
-def _columns(header: Sequence[str], name: str, descriptor: Descriptor) -> tuple[list[Diagnostic], dict[Key, Column]]:
+def _columns(lines: Sequence[Line], name: str, descriptor: Descriptor) -> tuple[list[Diagnostic], dict[Key, Column]]:
     """Find what the columns hold; a column that is not known, or holds what another does too, is not read."""
+    header = lines[0][1]
     told: list[Diagnostic] = []
     found: dict[Key, list[Column]] = defaultdict(list)
     for place, title in enumerate(header):
         try:
             one = column(title, place, descriptor.fields.get(title, {}))
         except InputError as error:
-            told.append(Diagnostic(name, 0, "column", str(error)))
+            told.append(Diagnostic(name, 0, "column", str(error), _values(lines, place, descriptor)))
         else:
             found[one.quantity, one.uncertainty].append(one)
     told += (
@@ -155,8 +161,18 @@ def _columns(header: Sequence[str], name: str, descriptor: Descriptor) -> tuple[
     for (quantity, _), several in found.items():
         if len(several) > 1:
             titles = " and ".join(shown(one.title) for one in several)
-            told.append(Diagnostic(name, 0, "column", f"{titles} are both {quantity}; neither is read"))
+            sentence = f"{titles} are both {quantity}; neither is read"
+            lost = sum(_values(lines, one.place, descriptor) for one in several)
+            told.append(Diagnostic(name, 0, "column", sentence, lost))
     return told, {key: several[0] for key, several in found.items() if len(several) == 1}
+
+
+def _values(lines: Sequence[Line], place: int, descriptor: Descriptor) -> int:
+    """Count the measured values in a column, whether or not it can be read."""
+    header = lines[0][1]
+    if not holds_values(header[place], descriptor.fields.get(header[place], {})):
+        return 0
+    return sum(len(row) == len(header) and row[place] not in descriptor.missing for _, row in lines[1:])
 
 
 @dataclass

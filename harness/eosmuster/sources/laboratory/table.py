@@ -20,6 +20,11 @@ _NEEDED: Mapping[str, tuple[str, ...]] = {
 }
 _NEEDED_ELSE = ("temperature",)
 
+UNUSED: Mapping[str, str] = {"saturation_pressure": "pressure", "boiling_temperature": "temperature"}
+"""Properties that are a coordinate of their state themselves, and which: one that is given besides is not used."""
+
+_BY_MASS: Mapping[str, int] = {"mass_density": -1, "mass_energy": 1}
+"""Dimensions by mass -> the power of the molar mass that makes them molar."""
 
 POINT = ("line", "value", "temperature", "pressure", "stated", "rounding", "temperature_u", "pressure_u", "digits")
 
@@ -93,12 +98,9 @@ def point_of(table: Table, quantity: str, i: int, component: Component) -> tuple
     """Give `POINT` but the line, SI; raises `Lost`."""
     value, scale, number = _value(table, quantity, i, component)
     needed = _NEEDED.get(quantity, _NEEDED_ELSE)
-    temperature, temperature_u = _state(table, "temperature", i, needed)
-    pressure, pressure_u = _state(table, "pressure", i, needed)
-    if quantity == "saturation_pressure":
-        pressure = pressure_u = nan
-    if quantity == "boiling_temperature":
-        temperature = temperature_u = nan
+    unused = UNUSED.get(quantity)
+    temperature, temperature_u = _state(table, "temperature", i, needed) if unused != "temperature" else (nan, nan)
+    pressure, pressure_u = _state(table, "pressure", i, needed) if unused != "pressure" else (nan, nan)
     stated = _stated(table, quantity, i, value, component)
     rounding = number.half_unit * scale / sqrt(3.0)
     return value, temperature, pressure, stated, rounding, temperature_u, pressure_u, float(number.digits)
@@ -128,11 +130,12 @@ def _trusted(numbers: Numbers, i: int) -> Number | None:
 
 
 def _molar(column: Column, component: Component) -> float:
-    if column.dimension != "mass_density":
+    """Give what makes a value of the column molar."""
+    if column.dimension not in _BY_MASS:
         return 1.0
     if component.molar_mass is None:
-        raise Lost("state", f"{component.name} has no molar mass, which a density by mass needs")
-    return 1.0 / component.molar_mass
+        raise Lost("state", f"{component.name} has no molar mass, which {shown(column.unit)} needs")
+    return float(component.molar_mass ** _BY_MASS[column.dimension])
 
 
 def _state(table: Table, quantity: str, i: int, needed: Sequence[str]) -> tuple[float, float]:

@@ -12,6 +12,7 @@ from eosmuster.errors import InputError
 from eosmuster.progress import Progress
 from eosmuster.quantities import shown
 from eosmuster.sources.laboratory import reader as laboratory
+from eosmuster.sources.laboratory.columns import descriptors_of
 from eosmuster.sources.measured.repeats import combined
 from eosmuster.sources.measured.table import Diagnostic, Reading
 from eosmuster.sources.thermoml import reader as thermoml
@@ -45,15 +46,38 @@ def read_files(
 
     Raises
     ------
-    InputError : a pattern that names no file.
+    InputError : a pattern that names no file, or patterns that name nothing but descriptors.
     """
+    return combined(readings(_found(patterns, folder), folder, progress, own))
+
+
+def evidence(patterns: Sequence[str], folder: Path) -> list[str]:
+    """Name all files that `read_files` reads, in order, whatever they give, and all that may describe them.
+
+    Raises
+    ------
+    InputError : a pattern that names no file, or patterns that name nothing but descriptors.
+    """
+    found = _found(patterns, folder)
+    tables = (Path(name) for name in found if Path(name).suffix.lower() in TABLES)
+    named = {*found, *(beside.as_posix() for table in tables for beside in descriptors_of(table))}
+    return sorted(name for name in named if (folder / name).is_file() and os.access(folder / name, os.R_OK))
+
+
+def _found(patterns: Sequence[str], folder: Path) -> list[str]:
+    """Name the files of data that patterns name, each once."""
     found: dict[str, None] = {}
     for pattern in patterns:
         named = [name for name in _named(pattern, folder) if _is_file(folder / name)]
         if not named:
             raise InputError(f"references.files: {shown(pattern)} names no file in {folder}")
         found |= dict.fromkeys(name for name in named if not name.endswith(DESCRIPTOR))
-    return combined(readings(found, folder, progress, own))
+    if patterns and not found:
+        all_named = ", ".join(map(shown, patterns))
+        raise InputError(
+            f"references.files: {all_named} names no file in {folder} but descriptors; name their tables"
+        )
+    return list(found)
 
 
 def _named(pattern: str, folder: Path) -> list[str]:

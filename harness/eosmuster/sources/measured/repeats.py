@@ -70,8 +70,7 @@ def _ten_digits(x: Floats) -> Floats:
 def _repeated(one: MeasuredSet, repeats: NDArray[np.bool_], other: MeasuredSet) -> Diagnostic:
     file = "" if other.source.file == one.source.file else f"{other.source.file}, "
     where = "the block itself" if other is one else f"{file}block {other.block}"
-    sentence = (
-        f"{one.component.name}, {one.property}: {int(repeats.sum())} of {len(one)} points were read before, "
-        f"the first of them in {where}; they are marked, not dropped"
-    )
+    about = f"{one.component.name}, {one.property.replace('_', ' ')}"
+    count = f"{int(repeats.sum())} of {len(one)} points"
+    sentence = f"{about}: {count} read before, the first of them in {where}: marked, not dropped"
     return Diagnostic(one.source.file, one.block, "repeated", sentence)

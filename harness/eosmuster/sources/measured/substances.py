@@ -5,7 +5,6 @@ Everything a file says of a substance has to agree; what contradicts itself is r
 
 from __future__ import annotations
 
-import csv
 import re
 from collections import Counter, defaultdict
 from collections.abc import Iterator, Mapping
@@ -15,8 +14,8 @@ from types import MappingProxyType
 
 from eosmuster.components import Component, catalogue
 from eosmuster.errors import InputError
-from eosmuster.paths import references_folder
 from eosmuster.quantities import shown
+from eosmuster.reference_rows import Row, rows
 
 _INCHIKEY = re.compile(r"[A-Z]{14}-[A-Z]{10}-[A-Z]\Z")
 _INVERTED = re.compile(r"([^,]+), *(.+-)\Z")
@@ -151,9 +150,8 @@ def _atoms(formula: str) -> Counter[str] | None:
 
 
 @cache
-def _rows() -> tuple[dict[str, str], ...]:
-    with (references_folder() / "formulas.csv").open(encoding="utf-8", newline="") as file:
-        return tuple(csv.DictReader(file))
+def _rows() -> tuple[Row, ...]:
+    return tuple(row for _, row in rows("formulas.csv"))
 
 
 @cache

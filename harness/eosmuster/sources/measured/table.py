@@ -43,6 +43,9 @@ CODES: Mapping[str, str] = MappingProxyType(
 )
 """What the codes of diagnostics mean."""
 
+ONLY_SAID = ("substance", "phase", "state", "writing", "uncertainty", "rounding", "repeated")
+"""Codes of what is only said, and leaves nothing out, where no value was lost by it."""
+
 
 @dataclass(frozen=True)
 class Source:
@@ -53,11 +56,13 @@ class Source:
     file : as it was named to the reader
     doi : of the paper, "" where the file names none
     citation : authors, title, journal, year, as far as the file has them
+    descriptor : the file beside it that says how to read it, named likewise; "" where there is none
     """
 
     file: str
     doi: str = ""
     citation: str = ""
+    descriptor: str = ""
 
     @property
     def name(self) -> str:
@@ -180,6 +185,11 @@ class Diagnostic:
     code: str
     sentence: str
     lost: int = 0
+
+    @property
+    def left_out(self) -> bool:
+        """Whether anything was not read because of it: values, or a column, a row, a block, a file."""
+        return bool(self.lost) or self.code not in ONLY_SAID
 
     def __str__(self) -> str:
         return f"{self.file}{f', block {self.block}' if self.block else ''}: {self.sentence}"

@@ -17,8 +17,12 @@ Floats = NDArray[np.float64]
 ASSUMED_LEVEL = 95.0
 """Level of confidence (%) of an expanded uncertainty that comes without one: what nearly all of them state."""
 
+FACTORS, LEVELS = (0.5, 10.0), (50.0, 100.0)
+"""Coverage factors that can be, both ends included, and levels of confidence (%), the last excluded."""
+
 BELOW_ROUNDING = (
-    "claim an uncertainty below the rounding of their own last digit, which cannot be; that rounding is used instead"
+    "the stated uncertainty is below the rounding of the last printed digit, which cannot be; that rounding is used "
+    "instead"
 )
 """What is said of such points."""
 
@@ -46,9 +50,9 @@ def coverage_factor(level: float | None, factor: float | None = None) -> tuple[f
     >>> coverage_factor(None, 2.0)
     (2.0, False)
     """
-    if factor is not None and 0.5 <= factor <= 10.0:
+    if factor is not None and FACTORS[0] <= factor <= FACTORS[1]:
         return factor, False
-    usable = level is not None and 50.0 <= level < 100.0
+    usable = level is not None and LEVELS[0] <= level < LEVELS[1]
     chosen = level if level is not None and usable else ASSUMED_LEVEL
     return NormalDist().inv_cdf(0.5 + chosen / 200.0), not usable
 

@@ -56,10 +56,15 @@ class Block:
         if not self.begun:
             self.header.add(kind, elements)
             return
-        taker = self.pure or self.binary
-        self.values += sum(taker.seen.values()) if taker is not None else 0
+        self.values = self.seen
         self.pure = self.binary = None
         self.whole = "block", f"a {kind} is declared after its first values"
+
+    @property
+    def seen(self) -> int:
+        """How many values its rows held so far, but those that were skipped."""
+        taker = self.pure or self.binary
+        return self.values + (sum(taker.seen.values()) if taker is not None else 0)
 
     def add(self, shape: Shape, texts: list[str]) -> bool:
         """Take a row; False if the rest of the block is not wanted."""

@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 
 from eosmuster.errors import InputError
 from eosmuster.quantities import shown
+from eosmuster.sources.measured.faults import listed
 from eosmuster.sources.thermoml.header import Factors, Header
 from eosmuster.sources.thermoml.layout import Assessment, Layout, Place, layout, referring
 from eosmuster.sources.thermoml.nodes import counts, numbers
@@ -126,6 +127,8 @@ class Groups:
         waiting.texts.append(texts)
         if self.count % _MOST_WAITING == 0:
             self._finish()
+            if len(self._done) > _MOST_GROUPS:
+                raise InputError(f"the rows of a block are of more than {_MOST_GROUPS} kinds")
 
     def groups(self) -> list[Group]:
         """Give all rows there were."""
@@ -139,8 +142,6 @@ class Groups:
                     self.seen[key] = self.seen.get(key, 0) + times * len(waiting.rows)
                 self._done.append(_group(waiting, self._wanted))
         self._shapes.clear()
-        if len(self._done) > _MOST_GROUPS:
-            raise InputError(f"the rows of a block are of more than {_MOST_GROUPS} kinds")
 
 
 class BlockRows:
@@ -280,15 +281,4 @@ class Losses:
     def told(self) -> Iterator[tuple[str, int]]:
         """Give a sentence and the lost values of every fault."""
         for fault, rows in self._rows.items():
-            yield f"{listed(sorted(rows))} left out: {fault}", self._values[fault]
-
-
-def listed(rows: Sequence[int]) -> str:
-    """Name rows, the first three of many.
-
-    >>> listed([2]), listed([2, 3, 4, 5])
-    ('row 2', '4 rows (2, 3, 4, ...)')
-    """
-    if len(rows) == 1:
-        return f"row {rows[0]}"
-    return f"{len(rows)} rows ({', '.join(map(str, rows[:3]))}{', ...' if len(rows) > 3 else ''})"
+            yield f"{listed('row', sorted(rows))} left out: {fault}", self._values[fault]

@@ -23,7 +23,7 @@ from eosmuster.sources.thermoml.header import Reference, description, references
 from eosmuster.sources.thermoml.joining import joined
 from eosmuster.sources.thermoml.nodes import text, texts
 from eosmuster.sources.thermoml.shape import BLOCK, ROW, Node, Shape, nodes
-from eosmuster.sources.thermoml.stream import read_parts
+from eosmuster.sources.thermoml.stream import BrokenOff, read_parts
 
 _GIVEN_NAMES = re.compile(r"\s*\[[^\[\]]*\]\Z")
 _LONGEST_CITATION = 600
@@ -41,7 +41,7 @@ def read_file(path: Path, shown_as: str = "") -> Reading:
     Returns
     -------
     whatever could be read, and a diagnostic for everything that could not; nothing is raised for bad content.
-    Repeated points are not marked yet: `eosmuster.sources.measured_repeats.combined` does that, for one file or many.
+    Repeated points are not marked yet: `eosmuster.sources.measured.repeats.combined` does that, for one file or many.
     """
     name = shown_as or str(path)
     try:
@@ -63,8 +63,8 @@ def read_stream(stream: BinaryIO, name: str) -> Reading:
     file = _File(name)
     try:
         read_parts(stream, file.take)
-    except InputError as error:
-        file.break_off(str(error))
+    except BrokenOff as error:
+        file.break_off(str(error), error.skipped)
     return file.reading()
 
 
@@ -110,10 +110,12 @@ class _File:
         self._values += values
         self._block = Block(block.number + 1, self._compounds)
 
-    def break_off(self, why: str) -> None:
+    def break_off(self, why: str, skipped: int) -> None:
         """Note that the rest cannot be read; rows of a block that has not ended are left out."""
-        begun = f"; what block {self._block.number} held so far is left out" if self._block.begun else ""
-        self._diagnostics.append(Diagnostic(self._name, 0, "file", f"{why}{begun}"))
+        block, lost = self._block, self._block.seen + skipped
+        begun = f"; what block {block.number} held so far is left out" if block.begun else ""
+        self._diagnostics.append(Diagnostic(self._name, 0, "file", f"{why}{begun}", lost))
+        self._values += lost
 
     def reading(self) -> Reading:
         """Give what was read."""

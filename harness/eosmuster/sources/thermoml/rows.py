@@ -9,15 +9,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from eosmuster.components import Component
+from eosmuster.sources.measured.faults import listed, uncertainty_faults
 from eosmuster.sources.measured.table import NO_UNCERTAINTY, Diagnostic, MeasuredSet, Source
-from eosmuster.sources.measured.uncertainty import (
-    ASSUMED_LEVEL,
-    BELOW_ROUNDING,
-    Settled,
-    rounding_uncertainty,
-    settled,
-)
-from eosmuster.sources.thermoml.columns import BlockRows, Group, Losses, listed
+from eosmuster.sources.measured.uncertainty import ASSUMED_LEVEL, Settled, rounding_uncertainty, settled
+from eosmuster.sources.thermoml.columns import BlockRows, Group, Losses
 from eosmuster.sources.thermoml.header import Coordinate, Header
 from eosmuster.sources.thermoml.wanted import LARGEST, PRESSURE_FACTOR, SMALLEST, Wanted
 
@@ -119,35 +114,22 @@ class _Points:
         for sentence, lost in self._losses.told():
             yield "row", sentence, lost
         if self._missing:
-            yield "row", f"{listed(sorted(self._missing))} without a value of it", 0
+            yield "row", f"{listed('row', sorted(self._missing))} without a value of it", 0
 
     def uncertainty_faults(self) -> Iterator[tuple[str, str, int]]:
         """Give code, sentence and lost values of what was wrong with uncertainties."""
-        judged, columns, unit = self.judged, self.columns, self.wanted.declared.name.rpartition(", ")[2]
-        rows, value, stated = columns["row"], columns["value"], columns["stated"]
+        yield from uncertainty_faults(self.judged, self._named)
+        assumed = self.columns["assumed"].astype(np.bool_)
+        if assumed.any():
+            sentence = f"{self._named(assumed)} without a usable level of confidence: {ASSUMED_LEVEL:g} % is assumed"
+            yield "uncertainty", sentence, 0
 
-        def of(mask: Flags) -> str:
-            first = int(np.argmax(mask))
-            example = f"row {rows[first]:.0f}: {value[first]:.10g} {unit}, stated {stated[first]:.3g}"
-            return f"{int(mask.sum())} of {mask.size} points ({example})"
-
-        left_out = judged.too_large
-        if left_out.any():
-            lost = int(left_out.sum())
-            yield "uncertainty", f"{of(left_out)} left out: their stated uncertainty is larger than the value", lost
-        if judged.negative.any():
-            yield "uncertainty", f"{of(judged.negative)} read without their uncertainty, which is negative", 0
-        if judged.zero.any():
-            yield "uncertainty", f"{of(judged.zero)} read without their uncertainty: 0 counts as missing", 0
-        if judged.floored.any() and (judged.floored & ~left_out).any():
-            yield "rounding", f"{of(judged.floored & ~left_out)} {BELOW_ROUNDING}", 0
-        if columns["assumed"].any():
-            assumed = columns["assumed"].astype(np.bool_)
-            yield (
-                "uncertainty",
-                f"{of(assumed)} state no usable level of confidence: {ASSUMED_LEVEL:g} % is assumed",
-                0,
-            )
+    def _named(self, marked: Flags) -> str:
+        """Say how many points are marked, with the first of them."""
+        columns, unit = self.columns, self.wanted.declared.name.rpartition(", ")[2]
+        row, value, stated = (columns[name][np.argmax(marked)] for name in ("row", "value", "stated"))
+        example = f"row {row:.0f}: {value:.10g} {unit}, stated {stated:.3g}"
+        return f"{int(marked.sum())} of {marked.size} points ({example})"
 
 
 def _in_order(tables: Sequence[Floats]) -> dict[str, Floats]:
@@ -173,13 +155,10 @@ def _at(coordinate: Coordinate | None, group: Group, into: Floats) -> None:
 
 
 def _set(points: _Points, source: Source, block: int, component: Component, written: str) -> MeasuredSet:
-    wanted, judged, columns = points.wanted, points.judged, points.columns
-    kept = ~judged.too_large
-    if not kept.all():
-        columns = {name: column[kept] for name, column in columns.items()}
-    value = columns["value"]
-    si = wanted.factor / value if wanted.inverse else wanted.factor * value
-    per_unit = np.abs(si / value)  # first-order: dx_SI/x_SI = dx/x, for the inverse as well
+    """Give the points that say something as a set."""
+    wanted, judged, kept = points.wanted, points.judged, ~points.judged.too_large
+    columns = {name: column[kept] for name, column in points.columns.items()}
+    values, uncertainty, rounding = _in_si(wanted, columns["value"], judged.uncertainty[kept], points.rounding[kept])
     return MeasuredSet(
         source=source,
         block=block,
@@ -193,13 +172,20 @@ def _set(points: _Points, source: Source, block: int, component: Component, writ
         rows=columns["row"].astype(np.int64),
         temperature=columns["temperature"],
         pressure=columns["pressure"] * PRESSURE_FACTOR,
-        values=si,
-        standard_uncertainty=judged.uncertainty[kept] * per_unit,
-        rounding=points.rounding[kept] * per_unit,
+        values=values,
+        standard_uncertainty=uncertainty,
+        rounding=rounding,
         temperature_uncertainty=columns["temperature_u"],
         pressure_uncertainty=columns["pressure_u"] * PRESSURE_FACTOR,
         digits=columns["digits"].astype(np.int64),
         origin=judged.origin[kept],
         level_assumed=columns["assumed"].astype(np.bool_),
-        repeats=np.zeros(value.size, np.bool_),
+        repeats=np.zeros(values.size, np.bool_),
     )
+
+
+def _in_si(wanted: Wanted, value: Floats, *uncertainties: Floats) -> tuple[Floats, ...]:
+    """Give values and their uncertainties in SI."""
+    si = wanted.factor / value if wanted.inverse else wanted.factor * value
+    per_unit = np.abs(si / value)  # first-order: dx_SI/x_SI = dx/x, for the inverse as well
+    return si, *(u * per_unit for u in uncertainties)

@@ -39,6 +39,14 @@ _MOST_BYTES = 4 << 20
 Take = Callable[[str, Shape, list[str], int], bool]
 
 
+class BrokenOff(InputError):
+    """The rest of a file cannot be read: why, and how many values were ``skipped`` in the block that has no end."""
+
+    def __init__(self, why: str, skipped: int) -> None:
+        super().__init__(why)
+        self.skipped = skipped
+
+
 def read_parts(stream: BinaryIO, take: Take, *, shortcut: bool = True) -> None:
     """Hand the parts of a ThermoML file to `take` as they end.
 
@@ -52,8 +60,8 @@ def read_parts(stream: BinaryIO, take: Take, *, shortcut: bool = True) -> None:
 
     Raises
     ------
-    InputError : not ThermoML, not well formed, cut off, a document type definition, or beyond all bounds; what
-        was handed out before is sound.
+    BrokenOff : not ThermoML, not well formed, cut off, a document type definition, or beyond all bounds; what was
+        handed out before is sound.
 
     Examples
     --------
@@ -62,9 +70,9 @@ def read_parts(stream: BinaryIO, take: Take, *, shortcut: bool = True) -> None:
     >>> text = f"<DataReport xmlns='{NAMESPACE}'><Compound><sCommonName>x</sCommonName></Compound></DataReport>"
     >>> read_parts(io.BytesIO(text.encode()), lambda name, *part: print(name, nodes(*part[:2])) or True)
     Compound [('sCommonName', 'x')]
-    >>> read_parts(io.BytesIO(b"<!DOCTYPE x><DataReport/>"), print)
+    >>> read_parts(io.BytesIO(b"<!DOCTYPE x><DataReport/>"), print)  # doctest: +ELLIPSIS
     Traceback (most recent call last):
-    eosmuster.errors.InputError: it has a document type definition (line 1); without one it can be read
+    eosmuster.sources.thermoml.stream.BrokenOff: it has a document type definition (line 1); ...
     """
     parser = _Parser(take)
     feeder = Shortcut(parser) if shortcut else None
@@ -77,12 +85,14 @@ def read_parts(stream: BinaryIO, take: Take, *, shortcut: bool = True) -> None:
         if feeder is not None:
             feeder.close()
         parser.close()
+    except InputError as error:
+        raise BrokenOff(str(error), parser.skipped) from None
     except expat.ExpatError as error:
-        raise InputError(parser.what_is_wrong(error)) from None
+        raise BrokenOff(parser.what_is_wrong(error), parser.skipped) from None
     except (LookupError, ValueError) as error:  # an encoding nobody knows, or of more than one byte
         if parser.begun:
             raise
-        raise InputError(f"its encoding cannot be read: {shown(str(error))}") from None
+        raise BrokenOff(f"its encoding cannot be read: {shown(str(error))}", 0) from None
     finally:
         parser.release()
 
@@ -148,6 +158,11 @@ class _Parser:
         if error.code in _CUT_OFF:
             return f"it breaks off in line {error.lineno + self._lines}"
         return f"it is not well formed in line {error.lineno + self._lines}: {expat.ErrorString(error.code)}"
+
+    @property
+    def skipped(self) -> int:
+        """How many values were skipped of a block that has not ended."""
+        return self._skipped if self._skipping else 0
 
     def close(self) -> None:
         """Tell that there are no more bytes."""

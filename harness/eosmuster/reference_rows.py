@@ -12,11 +12,17 @@ from eosmuster.paths import references_folder
 Row = Mapping[str, str]
 
 
-def rows(file: str) -> Iterator[tuple[str, Row]]:
+def rows(file: str, *, source: bool = True) -> Iterator[tuple[str, Row]]:
     """Read a table: where each row stands, for messages, and its cells by column name.
 
-    `file` is relative to the reference folder. Raises `InputError` on a row of another length than the header, or
-    without a source.
+    Parameters
+    ----------
+    file : relative to the reference folder
+    source : whether every row has to name its source; only a table of citations has no such column
+
+    Raises
+    ------
+    InputError : a row of another length than the header, or without a source
 
     Examples
     --------
@@ -30,9 +36,10 @@ def rows(file: str) -> Iterator[tuple[str, Row]]:
         for cells in lines:
             where = f"references/{file}, line {lines.line_num}"
             if len(cells) != len(header):
-                raise InputError(f"{where}: {len(cells)} cells, but the header names {len(header)} columns")
+                count = f"{len(cells)} cell{'' if len(cells) == 1 else 's'}"
+                raise InputError(f"{where}: {count}, but the header names {len(header)} columns")
             row = dict(zip(header, cells, strict=True))
-            if not row["source"]:
+            if source and not row["source"]:
                 raise InputError(f"{where}: no source; name a key of references/bibliography.bib")
             yield where, row
 
