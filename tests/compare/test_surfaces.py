@@ -31,8 +31,10 @@ def test_polynomials_of_its_degree_are_exact_in_every_cell():
     grid = f(*np.meshgrid(X, Y, indexing="ij"))
     cell, unit = everywhere(X, Y)
     for row in (0, 1):
-        found = surface(np.stack([grid, 2 * grid])[None]).at(np.full(len(cell), row), cell, unit)
-        assert found[0] == pytest.approx((1 + row) * f(*unit.T), abs=1e-10)  # abs: cancellation among the weights
+        found = surface(np.stack([grid, 2 * grid])[None]).at(np.full(len(cell), row), cell, unit[:, None])
+        assert found[0, :, 0] == pytest.approx(
+            (1 + row) * f(*unit.T), abs=1e-10
+        )  # abs: cancellation among the weights
 
 
 def test_nothing_is_taken_from_beyond_a_step():
@@ -41,16 +43,16 @@ def test_nothing_is_taken_from_beyond_a_step():
     cell, unit = everywhere(x, Y)
     real = np.diff(x)[cell[:, 0]] > 0
     found = surface(np.broadcast_to(value[:, None], (1, 1, 7, len(Y))), x, joined=np.diff(x) > 0).at(
-        np.zeros(real.sum(), int), cell[real], unit[real]
+        np.zeros(real.sum(), int), cell[real], unit[real][:, None]
     )
-    assert found[0] == pytest.approx(np.where(unit[real, 0] < 0.3, 1.0 + 10.0 * unit[real, 0], -7.0))
+    assert found[0, :, 0] == pytest.approx(np.where(unit[real, 0] < 0.3, 1.0 + 10.0 * unit[real, 0], -7.0))
 
 
 def test_where_a_node_is_missing_nothing_is_expected():
     grid = np.ones((1, 1, len(X), len(Y)))
     grid[..., -1, -1] = np.nan
     cell, unit = everywhere(X, Y)
-    found = surface(grid).at(np.zeros(len(cell), int), cell, unit)[0]
+    found = surface(grid).at(np.zeros(len(cell), int), cell, unit[:, None])[0, :, 0]
     assert np.isnan(found[-1])
     assert found[0] == pytest.approx(1.0)
 
@@ -67,5 +69,5 @@ def test_bends_are_second_differences():
 def test_two_nodes_are_a_straight_line_without_bends():
     table = np.array([[[[1.0, 3.0], [2.0, 4.0]]]])
     plain = surface(table, np.array([0.0, 1.0]), np.array([0.0, 1.0]))
-    assert plain.at(np.array([0]), np.array([[0, 0]]), np.array([[0.5, 0.5]]))[0, 0] == pytest.approx(2.5)
+    assert plain.at(np.array([0]), np.array([[0, 0]]), np.array([[[0.5, 0.5]]]))[0, 0, 0] == pytest.approx(2.5)
     assert (plain.bends() == 0.0).all()

@@ -1,10 +1,12 @@
 """Which reference stands alone: constructed sources whose answer is known, and fluids that must not be contested."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
 from eosmuster.components import find
-from eosmuster.diagnose.conflicts import Source, find_conflict
+from eosmuster.diagnose.conflicts import Conflict, Source, confront, find_conflict
 from eosmuster.plan.reading import parse_plan
 from eosmuster.quantities import SATURATION
 from eosmuster.sources import handbook, library
@@ -40,6 +42,12 @@ def test_one_against_two_stands_alone() -> None:
     assert found.others == ("a", "c")
     assert found.size_pct == pytest.approx(100 * (1.04 / 1.0005 - 1), abs=0.06)
     assert (found.from_K, found.to_K) == (200.0, 300.0)
+
+
+@pytest.mark.parametrize(("high", "span"), [(300.0, "200.0-300.0 K"), (200.04, "at 200.0 K")])
+def test_where_they_disagree_is_a_range_or_a_temperature(high: float, span: str) -> None:
+    found = Conflict("x", "liquid_density", ("a",), ("b", "c"), 4.0, 5.0, 200.0, high)
+    assert found.sentence == f"a stands alone against b, c by +4.00 % (median; 5.00 % at most), {span}"
 
 
 def test_the_sign_is_that_of_the_lonely_one_wherever_it_stands() -> None:
@@ -119,7 +127,9 @@ reduced_temperature = {{ points = 21 }}
     series = list(collect(parse_plan(text, "x", "x"), []))
     watched = watch(series)
     assert watched.conflicts == ()
-    assert set(watched.contested.values()) == {"no"}
+    # the one table of R134a's liquid density was computed from the library's equation: there is nothing to compare
+    alone = {(0, "liquid_density"): ""} if name == "R134a" else {}
+    assert watched.contested == {(0, "saturation_pressure"): "no", (0, "liquid_density"): "no"} | alone
 
 
 # ---------------------------------------------------------------- tables without common states, and witnesses
@@ -178,6 +188,64 @@ def test_a_witness_accuses_nobody() -> None:
 def test_every_saturation_property_can_be_contested(name: str) -> None:
     pair = [continuous("a", 1.0), continuous("b", 1.5)]
     assert find_conflict("x", name, pair) is not None
+
+
+def test_a_table_of_one_or_two_states_convicts_nobody_and_is_not_convicted() -> None:
+    """It is but a witness: with three states it stands alone."""
+    sources = [continuous("a", 1.0), continuous("b", 1.001)]
+    for count, alone in ((1, None), (2, None), (3, ("few",))):
+        found = find_conflict("x", "liquid_density", [*sources, tabulated("few", 1.5, [210.0, 230.0, 250.0][:count])])
+        assert (found and found.alone) == alone
+    small = tabulated("few", 1.0, [210.0])
+    apart = find_conflict("x", "liquid_density", [continuous("right", 1.0), continuous("wrong", 1.2), small])
+    assert apart is not None
+    assert (apart.alone, apart.others) == (("wrong",), ("right", "few"))
+
+
+def test_formulas_are_compared_at_the_only_state_of_a_plan() -> None:
+    one = [
+        Source(s.name, T[:1], s.values[:1], NONE[:1], s.evaluate)
+        for s in (continuous("a", 1.0), continuous("b", 1.1))
+    ]
+    assert find_conflict("x", "liquid_density", one) is not None
+
+
+def test_whether_anything_was_compared_is_told() -> None:
+    apart = [continuous("a", 1.0, high=240.0), continuous("b", 1.5, low=260.0)]
+    assert not confront("x", "liquid_density", apart).compared
+    assert confront("x", "liquid_density", [apart[0], continuous("c", 1.0)]).compared
+
+
+def test_sources_of_one_equation_have_one_vote() -> None:
+    """Two against two tell nothing; where two of the four are one equation, it stands alone against the others."""
+    first, copy = continuous("a", 1.0), continuous("copy of a", 1.0)
+    others = [continuous("c", 1.05), continuous("d", 1.051)]
+    even = find_conflict("x", "liquid_density", [first, copy, *others])
+    assert even is not None
+    assert even.alone == ()
+    shared = [replace(one, equation="one") for one in (first, copy)]
+    found = find_conflict("x", "liquid_density", [*shared, *others])
+    assert found is not None
+    assert (found.alone, found.others) == (("a",), ("c", "d"))
+
+
+def test_another_threshold_is_the_plans() -> None:
+    pair = [continuous("a", 1.0), continuous("b", 1.03)]
+    assert find_conflict("x", "liquid_density", pair, above=5.0) is None
+    assert find_conflict("x", "liquid_density", pair, above=2.0) is not None
+
+
+@pytest.mark.parametrize(
+    ("factors", "alone"),
+    [((1.04, 1.041), ("library",)), ((1.04,), None), ((1.04, 0.9), None), ((0.9, 1.0), None)],
+    ids=["two that agree", "one", "two that do not", "one is wrong itself"],
+)
+def test_excluded_sources_accuse_the_library_alone(factors: tuple[float, ...], alone: tuple[str, ...] | None) -> None:
+    excluded = [continuous(f"excluded {i}", factor) for i, factor in enumerate(factors)]
+    found = confront("x", "liquid_density", [continuous("library", 1.0)], excluded=excluded).conflict
+    assert (found and found.alone) == alone
+    used = [continuous("library", 1.0), continuous("used", 1.0), continuous("used too", 1.0)]
+    assert confront("x", "liquid_density", used, excluded=excluded).conflict is None
 
 
 def test_very_many_tables_are_held_against_each_other_by_their_size() -> None:

@@ -7,6 +7,7 @@ tests/sources/thermoml/test_real_files.py.
 from __future__ import annotations
 
 import os
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
@@ -14,7 +15,8 @@ import pytest
 from numpy.typing import NDArray
 
 from eosmuster.components import Component
-from eosmuster.diagnose.measured import Predictions, Suspicion, exchanged, suspicions
+from eosmuster.diagnose.measured import exchanged, suspicions
+from eosmuster.diagnose.measured_set import Predictions, Suspicion
 from eosmuster.sources import library
 from eosmuster.sources.measured.table import MeasuredSet
 from eosmuster.sources.thermoml.reader import read_file
@@ -36,7 +38,14 @@ def predictions(one: MeasuredSet, present: list[Component]) -> Predictions:
     names = ["saturation_pressure", "liquid_density", "vapor_density"]
     saturated = library.saturation(one.component, one.temperature, names).values
     others = {c: values(c, one) for c in present if c is not one.component}
-    return Predictions(values(one.component, one), others, *(saturated[name] for name in names))
+    other_phase = {"liquid": saturated["vapor_density"], "vapor": saturated["liquid_density"]}.get(one.phase)
+    return Predictions(
+        values(one.component, one),
+        others,
+        saturated["saturation_pressure"],
+        other_phase,
+        lambda temperature: values(one.component, replace(one, temperature=temperature)),
+    )
 
 
 def values(component: Component, one: MeasuredSet) -> NDArray[np.float64]:

@@ -2,15 +2,19 @@
 
 import csv
 import io
+import re
 from pathlib import Path
 
 import pytest
 
 from eosmuster.cli import main
+from eosmuster.components import find
 from eosmuster.diagnose.findings import SEVERITIES, Finding
+from eosmuster.models.catalogue import CATALOGUE
+from eosmuster.models.model import bind
 from eosmuster.plan import builtin
 from eosmuster.plan.reading import parse_plan
-from eosmuster.prechecks.checks import precheck
+from eosmuster.prechecks.checks import alpha_findings, precheck
 from eosmuster.prechecks.text import csv_text, precheck_text
 
 PLAN = """
@@ -43,7 +47,11 @@ def test_propylene_glycol_contradicts_its_own_equation(findings) -> None:
 def test_the_cyclohexane_row_that_holds_another_substance(findings) -> None:
     [found] = told(findings, "CycloHexane", "critical temperature")
     assert found.subject.startswith("critical:iupac")
-    assert "stands alone" in found.sentence
+    assert "gives 532.7 K, -3.75 % from the median" in found.sentence
+    assert found.sentence.endswith("sources: it stands alone; it is not used")
+    assert found.severity == "note"
+    [pressure] = told(findings, "CycloHexane", "critical pressure")
+    assert "gives 37.9 bar, -6.93 % from the median 40.724 bar of 4 sources" in pressure.sentence
 
 
 def test_cyclopropane_tables_share_an_error(findings) -> None:
@@ -89,9 +97,85 @@ def test_worst_comes_first(findings) -> None:
 
 def test_text_fits_and_csv_holds_every_finding(findings) -> None:
     text = precheck_text(parse_plan(PLAN, "faults", "faults"), findings, 100)
+    assert not any(line.lstrip().startswith("%") for line in text.splitlines())  # a number and its % stay together
+    assert not re.search(r"\w-$", text, re.MULTILINE)  # and a source's name stays whole
     assert max(map(len, text.splitlines())) <= 100
     rows = list(csv.DictReader(io.StringIO(csv_text(findings).decode())))
     assert [r["sentence"] for r in rows] == [f.sentence for f in findings]
+
+
+OTHER = """
+components = ["propane", "propylene glycol"]
+models = ["SRK"]
+properties = ["saturation_pressure", "density"]
+[states]
+reduced_temperature = { points = 3 }
+[states.single_phase]
+temperature = [400.0, 450.0]
+pressure = [1e5, 2e5]
+phase = "stable"
+supercritical_alpha = "RULE"
+[constants]
+source = "SOURCE"
+"""
+
+
+def checked(rule: str, source: str) -> list[Finding]:
+    return precheck(parse_plan(OTHER.replace("RULE", rule).replace("SOURCE", source), "other", "other"))
+
+
+def test_what_a_plan_swaps_in_is_what_is_checked() -> None:
+    """Passut and Danner's omega of propane is not its definition's; CRC's pc of the glycol is what others have."""
+    usual, passut, crc = (checked("own", s) for s in ("library", "passut-danner-1973", "crc-95"))
+    assert told(usual, "n-Propane", "acentric factor") == []
+    [omega] = told(passut, "n-Propane", "acentric factor")
+    assert omega.subject == "critical:passut-danner-1973"
+    assert omega.sentence.startswith("critical:passut-danner-1973 gives 0.1454, but psat(0.7 Tc)/pc")
+    [stored] = told(usual, "PropyleneGlycol", "critical pressure")
+    assert stored.sentence == (
+        "stored constant: 72.9175 bar, +23.59 % from the median 59 bar of 2 other sources: it stands alone"
+    )
+    [library] = told(crc, "PropyleneGlycol", "critical pressure")  # the library's is one of the others now
+    assert library.subject == "stored constant"
+    assert library.sentence.endswith("of 3 sources: it stands alone")
+
+
+@pytest.mark.parametrize(
+    ("model", "said"),
+    [
+        # kappa1 = -0.03136 ends at Tc: kappa1 (2)(-0.3) is what alpha' loses there
+        ("PRSV", ["alpha' jumps by -0.0188, from -0.5828 to -0.6016; alpha'' jumps by -0.114, from 0.596 to 0.4817"]),
+        ("SW", ["alpha'' jumps by +0.579, from 0.03562 to 0.6148"]),
+        ("PR-Twu95", []),  # both sides meet to the digits that are printed
+        ("PR", []),
+    ],
+)
+def test_a_joint_at_the_critical_temperature_is_told_as_one(model: str, said: list[str]) -> None:
+    """Not as the want of convexity or of a negative third derivative that differences across it would look like."""
+    propane = find("propane")
+    found = [f for f in alpha_findings(bind(CATALOGUE[model], [propane]), [propane]) if abs(f.value - 1.0) < 0.005]
+    assert [f.sentence for f in found] == [f"{what} at 369.9 K (Tr 1.00)" for what in said]
+
+
+def test_what_a_model_breaks_for_many_fluids_is_one_row() -> None:
+    """Whatever their temperatures, one of them or a stretch, and however much an alpha function jumps there."""
+    fluids = [find(name) for name in ("propane", "n-octane", "MM", "n-perfluorohexane", "R245ca")]
+    plan = parse_plan(PLAN, "faults", "faults")
+    for model in ("PRSV", "PR-Twu91"):
+        found = list(alpha_findings(bind(CATALOGUE[model], fluids), fluids))
+        rows = [line for line in precheck_text(plan, found, 200).split("\n") if line.startswith(model)]
+        kinds = [re.split(r"  +", row)[1] for row in rows]
+        assert len(set(kinds)) == len(rows) < len(found)
+        assert not re.search(r"\d", "".join(kinds))
+
+
+def test_the_plan_s_rule_above_the_critical_temperature_is_what_is_checked() -> None:
+    """Boston and Mathias's function breaks the rule for the third derivative from Tc on, Soave's own does not."""
+    own, other = (
+        {f.value for f in told(checked(rule, "library"), "n-Propane", "alpha function")}
+        for rule in ("own", "Boston-Mathias")
+    )
+    assert own != other
 
 
 def test_command(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:

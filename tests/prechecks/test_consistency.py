@@ -11,8 +11,10 @@ import pytest
 from eosmuster.components import catalogue, find
 from eosmuster.models.catalogue import CATALOGUE
 from eosmuster.models.model import BoundModel, bind
+from eosmuster.prechecks.checks import consistency_findings
 from eosmuster.prechecks.consistency import TOLERANCE, battery
-from eosmuster.prechecks.identities import IDENTITIES, isotherm
+from eosmuster.prechecks.identities import IDENTITIES
+from eosmuster.prechecks.quadrature import isotherm
 from eosmuster.singlephase import solver
 
 
@@ -46,6 +48,7 @@ def broken_alpha(order: int, factor: float) -> BoundModel:
 @pytest.mark.parametrize(
     ("order", "caught"),
     [
+        (1, {"enthalpy by quadrature", "entropy by quadrature"}),
         (1, {"Gibbs-Helmholtz", "isochoric heat capacity", "Maxwell (ds/dp)_T = -(dv/dT)_p", "T ds = dh - v dp"}),
         (2, {"isobaric heat capacity", "isochoric heat capacity"}),
     ],
@@ -58,12 +61,39 @@ def test_a_broken_derivative_is_caught(order: int, caught: set[str]) -> None:
     assert found["departure by quadrature"] < TOLERANCE
 
 
+def test_every_broken_component_counts() -> None:
+    """PR with the second derivative of alpha a little wrong: the worst fluid is named, the others are counted."""
+    fluids = [find(name) for name in ("propane", "argon", "methane", "water")]
+    bound = bind(CATALOGUE["PR"], fluids)
+    right = bound.parameters.alpha.jet
+
+    def wrong(*arguments: np.ndarray) -> tuple[np.ndarray, ...]:
+        values, slopes, curvatures = right(*arguments)
+        return values, slopes, curvatures * factor
+
+    found: dict[float, tuple[int, str]] = {}
+    for factor in (1.0, 1.0 + 1e-6):
+        broken = replace(
+            bound, parameters=replace(bound.parameters, alpha=replace(bound.parameters.alpha, jet=wrong))
+        )
+        every = list(battery(broken, fluids))
+        [one] = [w for w in every if w.identity == "isochoric heat capacity"]
+        told = [f.sentence for f in consistency_findings(every) if f.subject == "PR" and "isochoric" in f.sentence]
+        found[factor] = one.broken, told[0] if told else ""
+    assert found[1.0] == (0, "")
+    count, sentence = found[1.0 + 1e-6]
+    assert count == 4
+    assert sentence.endswith("; so it does for 3 more fluids")
+
+
 BREAKERS: dict[str, Callable[[solver.SinglePhase], solver.SinglePhase]] = {
     "Joule-Thomson": lambda s: replace(s, enthalpy_by_pressure=s.enthalpy_by_pressure * 1.000001),
     "slope of the isotherm": lambda s: replace(s, pressure_by_density=s.pressure_by_density * 1.000001),
     "speed of sound": lambda s: replace(s, pressure_by_temperature=s.pressure_by_temperature * 1.000001),
     "g = h - T s, h = u + p v": lambda s: replace(s, residual_entropy=s.residual_entropy * 1.000001),
     "departure by quadrature": lambda s: replace(s, log_fugacity_coefficient=s.log_fugacity_coefficient * 1.000001),
+    "enthalpy by quadrature": lambda s: replace(s, residual_enthalpy=s.residual_enthalpy * 1.000001),
+    "entropy by quadrature": lambda s: replace(s, residual_entropy=s.residual_entropy * 1.000001),
 }
 
 

@@ -86,7 +86,7 @@ def test_causes_are_named_and_values_lost_are_counted(checked: Checked) -> None:
     sets = told(findings, "measured set")
     assert {f.severity for f in sets} == {"contradiction"}
     assert any("exchanged" in f.sentence and f.component == "n-Propane" for f in sets)
-    assert any("1.01325 is between atm and bar" in f.sentence for f in sets)
+    assert any("bar stored as atm (1.01325)" in f.sentence for f in sets)
     assert all((f.from_K, f.to_K) == (251.0, 332.0) for f in sets)
     assert any(f.sentence.endswith("(1 value lost)") for f in told(findings, "measured file"))
 

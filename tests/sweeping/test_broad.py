@@ -379,15 +379,25 @@ def test_passing_limits_and_risks_can_be_recomputed(
 # ---------------------------------------------------------------- contested references
 
 
+def _equation(source: str, component: str) -> str:
+    """Give what a source is computed from, as far as that is known: the library, or the source itself."""
+    shared = handbook.shares_library_equation(components.catalogue()[component].cas, source)
+    return "coolprop" if shared else source
+
+
 def test_contested_is_a_matter_of_the_references_of_a_fluid(
     broad_points: pd.DataFrame, broad_summary: pd.DataFrame
 ) -> None:
-    """One word for all sources and candidates of a component and property, and none where a single source speaks."""
+    """One word for all sources of a component and property, and none where a single equation speaks."""
     about = broad_points.groupby(["component", "property"])[["contested", "reference_source"]].agg(set)
     assert (about["contested"].map(len) == 1).all()
     word = about["contested"].map(min)
     assert set(word) == {"yes", "no", ""}
-    assert ((word == "") == (about["reference_source"].map(len) == 1)).all()
+    sources = about["reference_source"].items()
+    alone = np.array([len({_equation(source, name) for source in each}) == 1 for (name, _), each in sources])
+    assert (word[~alone] != "").all()
+    # what is excluded by its deviation from the library speaks against it where it stands alone
+    assert word[alone & (word != "")].to_dict() == {("PropyleneGlycol", "saturation_pressure"): "yes"}
     rows = broad_summary[broad_summary["verdict"] != "unavailable"]
     assert [word[key] for key in zip(rows["component"], rows["property"], strict=True)] == rows["contested"].to_list()
 
@@ -399,7 +409,14 @@ def test_independence(broad_points: pd.DataFrame) -> None:
     kinds = broad_points.drop_duplicates([*ROW, "independence"])[[*ROW, "independence"]]
     assert not kinds.duplicated(ROW).any()
     library = kinds["reference_source"] == "coolprop"
-    assert set(kinds.loc[~library, "independence"]) == {"independent"}
+    named = zip(kinds["reference_source"], kinds["component"], strict=True)
+    owed = np.array([_equation(*one) == "coolprop" for one in named]) & ~library
+    assert set(kinds.loc[~library & ~owed, "independence"]) == {"independent"}
+    # what a table computed from the library's equation says of a candidate is what the library says
+    columns = ["component", "candidate", "property", "independence"]
+    by_table, by_library = (set(kinds.loc[which, columns].itertuples(index=False)) for which in (owed, library))
+    assert by_table
+    assert by_table <= by_library
     of = kinds[library].groupby(["candidate", "property"])["independence"].agg(set)
     # its own constants, and parameters from evaluated measurements: Bell, Satyro and Lemmon (2018)
     assert of["PR-Twu91", "saturation_pressure"] == of["PR-Twu91", "liquid_density"] == {"independent"}

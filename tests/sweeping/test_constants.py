@@ -69,6 +69,51 @@ def test_only_a_whole_set_makes_a_candidate_independent() -> None:
     assert labels == {"crc-95": ("constants",), "passut-danner-1973": ("independent",)}
 
 
+CALORIC = """
+components = ["propane"]
+models = ["PR"]
+properties = ["liquid_heat_capacity", "vapor_heat_capacity", "isobaric_heat_capacity"]
+[states]
+reduced_temperature = { from = 0.7, to = 0.9, points = 3 }
+[states.single_phase]
+temperature = [300.0, 320.0, 350.0]
+pressure = [1e5, 2e5, 3e5]
+phase = "vapor"
+[references]
+use = ["coolprop"]
+[constants]
+source = "passut-danner-1973"
+"""
+
+
+def test_a_whole_set_of_constants_leaves_the_ideal_gas_to_the_reference() -> None:
+    """No constant of the library is left, and still only the residual part of a heat capacity is judged."""
+    record = run(parse_plan(CALORIC, "caloric", "caloric"))
+    assert {row.property: row.unsolved for row in record.summary} == dict.fromkeys(
+        ("liquid_heat_capacity", "vapor_heat_capacity", "isobaric_heat_capacity"), 0
+    )
+    [region] = record.regions
+    assert region.property == "isobaric_heat_capacity"
+    assert {block.independence for block in record.blocks} == {("independent",)}
+
+
+def test_a_series_takes_the_first_part_that_knows_the_fluid() -> None:
+    """IUPAC part 2 (Ambrose and Tsonopoulos) has the n-alkanes; its n-decane is excluded, so no part has that."""
+    chosen = choose(parse_plan(PLAN.format(source="iupac-critical").replace("water", "n-decane"), "series", "series"))
+    assert chosen.components[0].sources["critical_temperature"] == "critical:iupac-critical-2"
+    assert chosen.left == (("n-Decane", "no Tc and pc in iupac-critical"),)
+
+
+@pytest.mark.parametrize("source", ["iupac-critical-1", "c", "p", "i", "crc-9", "CRC-95", ""])
+def test_a_part_of_a_name_is_no_name(source: str) -> None:
+    """It would mean whatever begins so: "i" took propane from part 2 and left cyclohexane to the library."""
+    with pytest.raises(InputError, match=rf"constants\.source.*'{source}'"):
+        plan(source)
+
+
 def test_an_unknown_table_is_one_sentence() -> None:
-    with pytest.raises(InputError, match=r"constants.source = 'crc-59' is unknown; nearest: crc-95"):
-        choose(plan("crc-59"))
+    """It is refused when the plan is read, before anything is computed."""
+    with pytest.raises(InputError, match=r"^constants: constants.source = 'crc-59' is unknown; nearest: crc-95"):
+        plan("crc-59")
+    with pytest.raises(InputError, match=r"nearest: iupac-critical-11.*valid: library, crc-95, .*, iupac-critical$"):
+        plan("iupac-critical-1")

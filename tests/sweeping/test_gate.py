@@ -13,6 +13,8 @@ import pytest
 from eosmuster.plan.parts import plan_part
 from eosmuster.plan.reading import parse_plan
 from eosmuster.plan.schema import GATE_REASONS, Gate, Plan
+from eosmuster.report.rows import badness, verdict_counts
+from eosmuster.report.sizes import blocks_by_key
 from eosmuster.sweeping.gate import (
     MOST_NAMED,
     Key,
@@ -21,7 +23,6 @@ from eosmuster.sweeping.gate import (
     gate_failures,
     nothing_judged,
     silent_line,
-    verdict_counts,
     worst_lines,
 )
 
@@ -83,6 +84,7 @@ def test_a_gate_fails_on_what_it_names_only(record: Any) -> None:
     def failures(*reasons: str) -> dict[str, int]:
         found = gate_failures(record, replace(plan(PLAN), gate=Gate(reasons)))
         assert bool(found) == bool(found.counts) == bool(found.rows)
+        assert not found.silent
         return dict(found.counts)
 
     assert failures("outside", "unsolved") == {"outside": counts["outside"]}
@@ -142,10 +144,19 @@ def test_the_first_reference_is_the_first_that_knows_the_fluid(wide: Any) -> Non
     assert first == gate_failures(record, plan(WIDE))
 
 
+def test_the_first_reference_is_one_with_a_value(swept: Swept) -> None:
+    """The library knows cyclopropane, yet not below 273 K: the answer and the gate go on to the handbook."""
+    text = PLAN.replace('"propane", "helium"', '"cyclopropane"').replace('"coolprop"', '"coolprop", "handbook"')
+    text = text.replace("reduced_temperature = [0.6, 0.8, 0.95]", "temperature = [200.0, 220.0]")
+    found = gate_failures(swept(text).record, plan(text, 'references = ["first"]'))
+    assert found.judged > 0
+    assert not found.silent
+
+
 def test_a_reference_is_not_asked_by_the_beginning_of_its_name(wide: Any) -> None:
     found = gate_failures(wide.record, replace(plan(WIDE), gate=Gate(references=("hand",))))
     assert found.judged == 0
-    assert not found
+    assert not found.counts
 
 
 def test_an_unavailable_row_has_no_reference_and_is_asked_whatever_the_references(wide: Any) -> None:
@@ -160,10 +171,14 @@ def test_what_nothing_was_judged_of_is_named(wide: Any) -> None:
     found = gate_failures(wide.record, only)
     cut = [Key("nobody's cut", "PR", name) for name in ("saturation_pressure", "liquid_density")]
     assert list(found.silent) == cut
-    assert not found
+    assert not found.counts
+    assert found  # what was asked and not judged is not met
+    assert found.counted == "2 not judged at all"
+    assert worst_lines(wide.record, found) == [silent_line(found)]
     assert "nothing was judged of 2 that the gate asks: nobody's cut | PR | saturation_pressure" in silent_line(found)
     failing = gate_failures(wide.record, replace(only, gate=replace(only.gate, fail_on=("no_reference",))))
     assert failing.counts["no_reference"] >= 2
+    assert failing.counted == f"{failing.counts['no_reference']} no_reference"
     assert silent_line(failing) in worst_lines(wide.record, failing)
 
 
@@ -176,14 +191,27 @@ def test_rows_come_worst_first_and_ten_are_named(wide: Any) -> None:
     assert {"outside", "partly", "unavailable"} <= {row.verdict for row in found.rows}
     outside = [row.max_pct for row in found.rows if row.verdict == "outside" and row.inside == 0]
     assert outside == sorted(outside, reverse=True)
+    blocks = blocks_by_key(wide.record.blocks)
+    assert list(found.rows) == sorted(found.rows, key=lambda row: badness(row, blocks))
     lines = worst_lines(wide.record, found)
-    assert len(lines) == MOST_NAMED + 1 < len(found.rows)
-    assert lines[-1] == f"{len(found.rows) - MOST_NAMED} more rows; all are in summary.csv"
+    assert len(lines) == MOST_NAMED + 2 < len(found.rows)
+    assert lines[-1] == silent_line(found)  # the own component, which no reference knows
+    assert lines[-2] == f"{len(found.rows) - MOST_NAMED} more rows; all are in summary.csv"
     first = found.rows[0]
     assert lines[0].startswith(f"{first.component}, {first.candidate}, ")
     assert (
         f"against {first.reference_source}: {first.outside} of {first.points} points outside, at worst " in lines[0]
     )
+
+
+def test_of_equals_the_larger_deviation_comes_first_in_the_unit_that_is_read(swept: Swept) -> None:
+    """A seventh of helium's boiling point is half a kelvin; a fortieth of propane's is ten times that."""
+    text = PLAN.replace("saturation_pressure", "boiling_temperature").replace('"vdW"', '"RK"')
+    text = text.replace("reduced_temperature = [0.6, 0.8, 0.95]", 'pressure = ["0.5 bar"]')
+    propane, helium = gate_failures(swept(text).record, plan(text, 'candidates = ["RK"]')).rows
+    assert (propane.component, helium.component) == ("n-Propane", "Helium")
+    assert helium.verdict == propane.verdict == "outside"
+    assert abs(helium.max_pct) > abs(propane.max_pct)
 
 
 def test_rows_without_a_judged_point_come_after_those_that_are_outside(swept: Swept) -> None:

@@ -8,6 +8,7 @@ from typing import Any
 import numpy as np
 import pytest
 
+import eosmuster as em
 from eosmuster.components import Component, find
 from eosmuster.models.catalogue import CATALOGUE
 from eosmuster.models.model import bind
@@ -15,6 +16,7 @@ from eosmuster.quantities import PROPERTIES
 from eosmuster.record import POINT_VERDICTS
 from eosmuster.saturation import solver
 from eosmuster.singlephase import solver as single_phase
+from eosmuster.sources import library
 from eosmuster.sweeping.judging import NOTES, SATURATION_NOTES, independence, summarise, unavailable_row
 from eosmuster.sweeping.planes import SINGLE_PHASE_NOTES
 from eosmuster.sweeping.series import Nodes, Series
@@ -86,6 +88,50 @@ def test_every_status_of_the_single_phase_solver_has_a_note() -> None:
         "unavailable": "no value could be computed",
         "no_volume": "the volume translation takes off more than the volume",
     }
+
+
+STEAM = """
+components = ["water"]
+models = ["vdW", "PR"]
+properties = ["liquid_heat_capacity", "entropy_of_vaporization"]
+[states]
+pressure = ["PRESSURE", "100 bar"]
+[references]
+use = ["coolprop"]
+"""
+
+
+def test_what_the_reference_owes_is_no_failure_of_the_candidate(swept: Swept) -> None:
+    """At 1 bar vdW boils at 254.8 K; the reference equation, and its ideal gas, begin at the triple point."""
+    heat, entropy = swept(STEAM.replace("PRESSURE", "1 bar")).record.blocks
+    said = [(POINT_VERDICTS[v], heat.notes[n]) for v, n in zip(heat.verdict[:, 0], heat.note[:, 0], strict=True)]
+    assert said[0] == (
+        "no_reference",
+        "the ideal gas's heat capacity is not known at the candidate's own temperature",
+    )
+    assert said[1][0] != "no_reference"
+    assert np.isfinite(heat.reference).all()
+    assert np.isfinite(entropy.deviation_pct).all()  # no ideal gas is in it
+
+
+def test_what_the_reference_owes_is_counted_and_noted_in_the_summary(swept: Swept) -> None:
+    results = swept(STEAM.replace("PRESSURE", "1 bar"))
+    rows = {(r.candidate, r.property): r for r in results.record.summary}
+    cold = rows["vdW", "liquid_heat_capacity"]
+    assert (cold.points, cold.unsolved, cold.no_reference) == (2, 0, 1)
+    assert cold.note.startswith("1 point: the ideal gas's heat capacity is not known")
+    assert np.isfinite(cold.passing_limit_pct)
+    assert rows["PR", "liquid_heat_capacity"].note == ""
+
+
+def test_a_window_ends_where_the_reference_owes_a_value(swept: Swept) -> None:
+    wide = STEAM.replace("PRESSURE", "1 bar") + '[tolerance]\nliquid_heat_capacity = "99 %"\n'
+    [window] = [w for w in swept(wide).record.windows if (w.candidate, w.property) == ("vdW", "liquid_heat_capacity")]
+    assert (window.from_end, window.to_end) == ("no_reference", "plan_limit")
+    # it begins where vdW boils at the triple point: at the pressure that the reference has at that end
+    pressure = library.saturation(find("water"), [window.from_K], ["saturation_pressure"])
+    boiling = em.saturate("water", "vdW", pressure=pressure.values["saturation_pressure"]).temperature
+    assert boiling == pytest.approx(273.16, abs=1e-4)
 
 
 def test_points_above_a_candidate_s_own_critical_point_are_unsolved(swept: Swept) -> None:

@@ -15,6 +15,7 @@ from eosmuster.components import find
 from eosmuster.models.catalogue import CATALOGUE
 from eosmuster.models.model import bind
 from eosmuster.plan import builtin
+from eosmuster.plan.reading import parse_plan
 from eosmuster.plan.schema import Plan
 from eosmuster.plan.tolerances import limit_pct
 from eosmuster.record import REGION_EDGES, Record, Region
@@ -51,7 +52,7 @@ def margin(plan: Plan, region: Region, T: Floats, p: Floats) -> Floats:
     parameters = bind(CATALOGUE[region.candidate], [component]).parameters.take(0)
     states = solver.at_pressure(parameters, T, p, region.phase)
     predicted = PROPERTY[name](states, ideal_heat_capacity(component, T), np.array([component.molar_mass]))
-    limit = limit_pct(plan.tolerances, component, name, T, T / component.critical_temperature, reference)
+    limit = limit_pct(plan.tolerances, component, name, T / component.critical_temperature, reference)
     expanded = uncertainty_pct(component, name, T, 2.0, pressure=p, remembered=False)
     return limit - np.where(np.isnan(expanded), 0.0, expanded) - np.abs(100.0 * (predicted / reference - 1.0))
 
@@ -147,3 +148,30 @@ def test_every_candidate_that_is_inside_anywhere_has_one_region(service: Service
     for row in whole:
         reasons = set(by_key[row.component, row.candidate, row.property].outline.reasons)
         assert reasons <= {"plan_limit", "phase_boundary", "limit"}
+
+
+def test_components_side_by_side_have_the_regions_that_each_has_alone(monkeypatch: pytest.MonkeyPatch) -> None:
+    plan = parse_plan(
+        """
+        components = ["propane", "ammonia", "methane"]
+        models = ["PR", "RKPR"]
+        properties = ["density", "speed_of_sound"]
+        [states.single_phase]
+        temperature = { from = "220 K", to = "420 K", points = 5 }
+        pressure = { from = "2 bar", to = "60 bar", points = 5 }
+        [references]
+        use = ["coolprop"]
+        """,
+        "x",
+        "x",
+    )
+    together = run(plan).regions
+    monkeypatch.setattr("eosmuster.sweeping.qualifying._TOGETHER", 1)
+    alone = run(plan).regions
+    assert len(together) > 6
+    assert [numbers(r) for r in together] == [numbers(r) for r in alone]
+
+
+def numbers(region: Region) -> tuple[object, ...]:
+    rings = [(r.temperature.tolist(), r.pressure.tolist(), r.reasons) for r in (region.outline, *region.holes)]
+    return region.component, region.candidate, region.property, region.share, region.connected, rings

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable
 from typing import Any
 
@@ -10,6 +11,7 @@ import pytest
 
 import eosmuster as em
 from eosmuster import components
+from eosmuster.components import equation_citations
 from eosmuster.errors import InputError, NothingJudged
 from eosmuster.models.catalogue import CATALOGUE
 from eosmuster.plan.reading import parse_plan
@@ -273,14 +275,19 @@ def test_handbook_values_alone_can_judge(swept: Swept) -> None:
     sources = {b.reference_source for b in results.record.blocks}
     assert "handbook:iapws-r6-95" in sources
     assert "coolprop" not in sources
-    assert set(results.points["independence"]) == {"independent"}
+    # IAPWS R6-95 is the library's equation, from which the constants are
+    owed = results.points["reference_source"] == "handbook:iapws-r6-95"
+    assert set(results.points["independence"][owed]) == {"constants"}
+    assert set(results.points["independence"][~owed]) == {"independent"}
     # only a printed value has an uncertainty of its own: half its last digit
     known = results.points.loc[results.points["reference_uncertainty_pct"].notna(), "reference_source"]
     assert set(known) <= {"handbook:iapws-r6-95", "handbook:iapws-sr1-86", "handbook:crc-95", "handbook:vdi-2010"}
     assert "coolprop" not in results.record.citations
-    assert set(results.record.citations) == {
+    judged = {
         key for b in results.record.blocks for key in results.record.citations if b.reference_source.endswith(key)
     }
+    # the constants are those of the library's record all the same, by the equation that this names
+    assert set(results.record.citations) == judged | {"Wagner-JPCRD-2002"}
 
 
 # ---------------------------------------------------------------- a plan's own components and models
@@ -343,8 +350,23 @@ def test_the_record_says_what_was_done(own: Any) -> None:
     assert {t["property"] for t in record.decision["tolerances"]} == {"saturation_pressure", "liquid_density"}
     assert record.display == {"temperature": "degC", "pressure": "bar", "density": "kg/m3"}
     assert record.references == ("coolprop", "handbook")
-    assert {"coolprop", "vdi-2010"} <= set(record.citations)
+    assert {"coolprop", "vdi-2010", "Lemmon-JCED-2009"} <= set(record.citations)
     assert all(record.citations.values())
+
+
+def test_the_sources_of_constants_are_cited_in_full(swept: Swept) -> None:
+    text = 'components = ["propane", "argon"]\nmodels = ["PR"]\nproperties = ["saturation_pressure"]\n'
+    text += "[states]\nreduced_temperature = [0.8]\n[references]\nuse = ['coolprop']\n"
+    cited = dict(swept(text).record.citations)
+    assert list(cited) == ["coolprop", "Lemmon-JCED-2009", "Tegeler-JPCRD-1999"]
+    assert cited["Lemmon-JCED-2009"] == equation_citations()["Lemmon-JCED-2009"]
+    replaced = swept(text + "[constants]\nsource = 'crc-95'\n").record
+    assert list(replaced.citations) == ["crc-95", *cited]
+    for about in replaced.constants.values():
+        keys = {
+            re.split(r"[(:]", about[name]["source"])[-1].rstrip(")") for name in ("critical_pressure", "molar_mass")
+        }
+        assert keys <= set(replaced.citations)
 
 
 def test_progress_is_told_in_order(swept: Swept) -> None:

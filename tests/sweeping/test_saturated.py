@@ -90,7 +90,7 @@ def test_tables_bring_their_own_states_and_have_no_windows() -> None:
     # IAPWS R6-95, Table 8: saturation at 275, 450 and 625 K, of which two lie between the plan's states
     assert table.nodes.temperature.tolist() == [275.0, 450.0]
     assert table.evaluate is None
-    assert table.independent_of_library
+    assert not table.independent_of_library  # IAPWS-95 is the library's own equation of water
     assert table.citation in bibliography()
 
 
@@ -122,6 +122,21 @@ def test_all_components_of_the_library_have_a_series() -> None:
     assert left_out == []
     assert all(np.isfinite(s.values[s.nodes.state]).all() for s in found)
     assert {what for what, _ in plan.left_out} >= {"Air", "R410A"}
+
+
+def test_what_goes_by_temperature_is_named_where_a_plan_goes_by_pressure() -> None:
+    """Propane has a formula and a table of the liquid density, which nothing gives a pressure to."""
+    told: dict[str, list[tuple[str, str]]] = {}
+    for states in ("pressure = ['1 bar', '10 bar']", "temperature = [250.0, 300.0]"):
+        plan = parse_plan(PLAN.format(properties='"boiling_temperature", "liquid_density"', states=states), "p", "p")
+        told[states.split()[0]] = []
+        used = {s.source for s in collect(plan, told[states.split()[0]]) if s.property == "liquid_density"}
+    [(component, why)] = told["pressure"]
+    assert component == "n-Propane"
+    assert why.startswith("cited values that go by temperature, and not by pressure as the plan does, are not used: ")
+    assert all(source in why for source in used - {"coolprop"})
+    assert "boiling temperature" not in why  # printed at one atmosphere, and formulas are read backwards
+    assert told["temperature"] == []
 
 
 def test_no_series_at_all_is_refused() -> None:

@@ -11,6 +11,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from eosmuster.compare.gaps import Gaps, find_gaps
 from eosmuster.compare.roots import Flags, Ints
 from eosmuster.compare.traces import Stack
 from eosmuster.record import Floats
@@ -79,6 +80,7 @@ class Found:
     ----------
     crossings : one side's margin changes sign between two nodes
     suspects : it does not, yet has an extremum near zero between them
+    gaps : they may hide more than both
     edges : values stop: `side` is +1 where the value is at the lower end of the piece, -1 where at the upper;
         the margins hold 1 where there is a value and NaN where there is none
     events : changes whose temperature is known: steps, and both ends of the axis
@@ -86,6 +88,7 @@ class Found:
 
     crossings: Brackets
     suspects: Brackets
+    gaps: Gaps
     edges: Brackets
     events: Events
 
@@ -127,7 +130,8 @@ def find_brackets(stack: Stack) -> Found:
         crossings.append(_brackets(stack, g, changed, side))
         suspects.append(_brackets(stack, g, _near_extrema(stack, g, side, turning), side))
     stops = np.nonzero((finite[:, 1:] != finite[:, :-1]) & stack.joined)
-    return Found(Brackets.join(crossings), Brackets.join(suspects), _edges(stack, finite, stops), _events(stack))
+    edges, gaps = _edges(stack, finite, stops), find_gaps(stack)
+    return Found(Brackets.join(crossings), Brackets.join(suspects), gaps, edges, _events(stack))
 
 
 def _brackets(stack: Stack, g: Floats, at: tuple[Ints, ...], side: float) -> Brackets:

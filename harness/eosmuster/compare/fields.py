@@ -19,7 +19,7 @@ from eosmuster.record import Floats
 TOLERANCE = 1e-3
 """Edges of regions depart from the true line by at most this share of the rectangle's sides."""
 
-_BATCH = 20_000
+_BATCH = 4_000  # edges
 _SHARES = np.linspace(0.0, 1.0, 5)  # along an edge, where the surface is looked at for an excursion
 _RIVAL = 0.25  # regions of this share of the largest, by a count of nodes, may turn out to be larger
 _DOUBT = 0.5  # an excursion is looked at if the surface takes the margin below this share of what both ends have
@@ -112,17 +112,15 @@ class Field:
         -------
         (2, k, s), deviation and acceptance limit; NaN where the grid has too few values
         """
-        side = np.repeat(np.sign(self.mesh.side[ends].sum(axis=1)), len(shares))
+        side = np.sign(self.mesh.side[ends].sum(axis=1))
         start, stop = self.mesh.place[self.mesh.at[ends]].transpose(1, 0, 2)
-        places = start[:, None] + shares[:, None] * (stop - start)[:, None]
-        unit = self.rectangle.unit(places).reshape(-1, 2)
-        row, cell = np.repeat(row, len(shares)), np.repeat(cell, len(shares), axis=0)
-        result = np.full((2, len(row)), np.nan)
+        unit = self.rectangle.unit(start[:, None] + shares[:, None] * (stop - start)[:, None])
+        result = np.full((2, len(row), len(shares)), np.nan)
         for kind, surface in self.surfaces.items():
             chosen = np.flatnonzero(side == kind)
             for part in np.split(chosen, range(_BATCH, len(chosen), _BATCH)):
                 result[:, part] = surface.at(row[part], cell[part], unit[part])
-        return result.reshape(2, -1, len(shares))
+        return result
 
     def hidden(self, since: int) -> Ints:
         """Give the edges (k, 2) that may hide an excursion, out of those that end at node `since` or a later one."""

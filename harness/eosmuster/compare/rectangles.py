@@ -18,7 +18,7 @@ from eosmuster.record import REGION_EDGES, Floats
 
 EDGE = {name: code for code, name in enumerate(REGION_EDGES)}
 
-STEP_EDGES = ("undecided", "limit_step", "phase_boundary", "reference_limit")
+STEP_EDGES = ("undecided", "limit_step", "phase_boundary", "critical_point", "reference_limit")
 """What a step may be, the weaker first: where two steps coincide the stronger one names the edge."""
 
 Curve = Callable[[Floats], Floats]
@@ -42,8 +42,8 @@ class Rectangle:
         area, hence no region
     logarithmic : whether pressures are spaced by their logarithm: areas and tolerances are measured there
     temperature_steps, pressure_steps : where and what, one of `STEP_EDGES`: ``limit_step`` (the limit changes),
-        ``undecided`` (only the uncertainty does), ``phase_boundary`` or ``reference_limit`` (values stop at the
-        critical temperature, or at an end of the reference's range). Steps outside the grid are left out
+        ``undecided`` (only the uncertainty does), ``phase_boundary``, ``critical_point`` or ``reference_limit``
+        (values stop there, or at an end of the reference's range). Steps outside the grid are left out
     boundary : the curve at which the phase changes; it should end at a step of temperature, or at the rim. None
         where no phase changes, or where that is left to be found
     own_boundary : where candidates change theirs, and their deviations jump: only a hint that saves evaluations

@@ -5,7 +5,7 @@ The function searched is a margin: zero or more is inside; below zero or NaN (no
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Generator
 from dataclasses import dataclass
 
 import numpy as np
@@ -17,6 +17,7 @@ Ints = NDArray[np.intp]
 Flags = NDArray[np.bool_]
 Margin = Callable[[Ints, Floats], Floats]
 """Called with bracket numbers and a temperature for each; gives the margins there."""
+Seeking = Generator[tuple[Ints, Floats], Floats, tuple[Flags, Floats, Floats]]
 
 TOLERANCE_K = 1e-6
 
@@ -161,7 +162,7 @@ def polynomial_guess(t: Floats, g: Floats) -> Floats:
     return np.asarray(t1 + x)
 
 
-def seek(evaluate: Margin, t: Floats, g: Floats, guess: Floats) -> tuple[Flags, Floats, Floats]:
+def seek(t: Floats, g: Floats, guess: Floats) -> Seeking:
     """Look between two points whose margins have one sign for a point where the margin has the other.
 
     Successive parabolic interpolation towards the extremum (R. P. Brent, Algorithms for Minimization without
@@ -170,9 +171,12 @@ def seek(evaluate: Margin, t: Floats, g: Floats, guess: Floats) -> tuple[Flags, 
 
     Parameters
     ----------
-    evaluate : as for `refine`
     t, g : (k, 2), both ends of each interval (rising) and the margins there
     guess : (k,), where the extremum may be, within the interval
+
+    Yields
+    ------
+    numbers of intervals and a temperature for each, to be sent the margins there
 
     Returns
     -------
@@ -181,10 +185,10 @@ def seek(evaluate: Margin, t: Floats, g: Floats, guess: Floats) -> tuple[Flags, 
     Examples
     --------
     >>> t = np.array([[1.0, 2.0]])
-    >>> g = np.cos(6 * t) + 0.99
-    >>> found, where, margin = seek(lambda i, x: np.cos(6 * x) + 0.99, t, g, np.array([1.5]))
-    >>> bool(found[0]), bool(abs(where[0] - np.pi / 2) < 0.03)
-    (True, True)
+    >>> search = seek(t, np.cos(6 * t) + 0.99, np.array([1.5]))
+    >>> index, x = next(search)
+    >>> search.send(np.cos(6 * x) + 0.99)[1].round(2).tolist()
+    [1.51]
     """
     sign = np.where(g[:, 0] >= 0, 1.0, -1.0)
     # rows: left, middle, right; y is the margin turned so that it has to fall through zero
@@ -195,7 +199,7 @@ def seek(evaluate: Margin, t: Floats, g: Floats, guess: Floats) -> tuple[Flags, 
     for _ in range(_EVALUATIONS):
         if not open_.size:
             break
-        value = evaluate(open_, trial)
+        value = yield open_, trial
         hit = (value >= 0) != (sign[open_] > 0)
         found[open_], where[open_], margin[open_] = hit, trial, value
         left, turned = open_[~hit], (value * sign[open_])[~hit]

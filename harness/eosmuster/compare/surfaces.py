@@ -46,14 +46,15 @@ class Stencils:
         return cls(node, np.minimum(chosen, last[:, None]), chosen <= last[:, None])
 
     def weights(self, interval: Ints, at: Floats) -> Floats:
-        """Give Lagrange's weights (k, ORDER) of the chosen nodes at coordinates (k,) in intervals (k,)."""
+        """Give Lagrange's weights (k, s, ORDER) of the chosen nodes at coordinates (k, s) in intervals (k,)."""
         node, used = self.node[self.chosen[interval]], self.used[interval]
-        weight = np.where(used, 1.0, 0.0)
+        weight = np.repeat(np.where(used, 1.0, 0.0)[:, None], at.shape[1], axis=1)
         for other in range(ORDER):
             taken = used[:, other, None] & used & (np.arange(ORDER) != other)
             apart = np.where(taken, node - node[:, other, None], 1.0)
-            weight *= np.where(taken, (at[:, None] - node[:, other, None]) / apart, 1.0)
-        return np.where(used, weight, 0.0)
+            away = at[:, :, None] - node[:, None, other, None]
+            weight *= np.where(taken[:, None], away / apart[:, None], 1.0)
+        return weight
 
 
 @dataclass(frozen=True)
@@ -76,24 +77,24 @@ class Surface:
         ----------
         row : (k,), candidates
         cell : (k, 2), intervals of both axes
-        unit : (k, 2), coordinates
+        unit : (k, s, 2), coordinates in that cell
 
         Returns
         -------
-        (t, k); NaN where a node that would be needed has no value
+        (t, k, s); NaN where a node that would be needed has no value
 
         Examples
         --------
         >>> along = Stencils.of(np.arange(5.0), np.ones(4, bool))
         >>> x, y = np.meshgrid(np.arange(5.0), np.arange(5.0), indexing="ij")
         >>> surface = Surface((x**3 * y)[None, None], (along, along))
-        >>> surface.at(np.array([0]), np.array([[1, 2]]), np.array([[1.5, 2.5]])).round(9).tolist()
-        [[8.4375]]
+        >>> surface.at(np.array([0]), np.array([[1, 2]]), np.array([[[1.5, 2.5]]])).round(9).tolist()
+        [[[8.4375]]]
         """
         x, y = (s.chosen[cell[:, i]] for i, s in enumerate(self.along))
-        wx, wy = (s.weights(cell[:, i], unit[:, i]) for i, s in enumerate(self.along))
+        wx, wy = (s.weights(cell[:, i], unit[:, :, i]) for i, s in enumerate(self.along))
         nodes = self.tables[:, row[:, None, None], x[:, :, None], y[:, None, :]]
-        return np.asarray(np.einsum("tkij,ki,kj->tk", nodes, wx, wy))
+        return np.asarray(np.einsum("tkij,ksi,ksj->tks", nodes, wx, wy))
 
     def bends(self) -> Floats:
         """Give how far values may depart from straight lines in each cell, (m, N-1, M-1).

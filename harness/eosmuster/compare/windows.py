@@ -6,19 +6,17 @@ brackets of all blocks are refined together, so that each round is one batch of 
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 
 import numpy as np
 
 from eosmuster.compare.axis import END
 from eosmuster.compare.brackets import Brackets, Events, broken_conditions, find_brackets
-from eosmuster.compare.roots import TOLERANCE_K, Flags, Ints, Margin, Refined, polynomial_guess, refine, seek
+from eosmuster.compare.excursions import Evaluate, between_states
+from eosmuster.compare.gaps import Gaps
+from eosmuster.compare.roots import TOLERANCE_K, Flags, Ints, Margin, Refined, polynomial_guess, refine
 from eosmuster.compare.traces import Trace, stacks
 from eosmuster.record import WINDOW_ENDS, Floats, WindowRow
-
-Evaluate = Callable[[Ints, Ints, Floats], tuple[Floats, Floats]]
-"""Called with the number of the trace, the row of its candidate and a temperature for each point; gives the
-deviation (NaN where there is none) and the acceptance limit there, both in percent. Never called at a step."""
 
 
 def find_windows(traces: Sequence[Trace], evaluate: Evaluate) -> list[WindowRow]:
@@ -27,7 +25,7 @@ def find_windows(traces: Sequence[Trace], evaluate: Evaluate) -> list[WindowRow]
     Parameters
     ----------
     traces : one a block; only for references that have a value at every temperature of their range
-    evaluate : see `Evaluate`; called about ten times in all, each time for everything that is still open
+    evaluate : see `excursions.Evaluate`; called about ten times in all, each time for everything that is still open
 
     Returns
     -------
@@ -40,8 +38,14 @@ def find_windows(traces: Sequence[Trace], evaluate: Evaluate) -> list[WindowRow]
     - ``critical_point``, ``unsolved``, ``no_reference``: values stop there;
     - ``plan_limit`` or ``reference_limit``: the end of the axis.
 
-    An excursion between two states, out of the limit or into it, is found where the states beside predict its
-    extremum within 20 % of the limit; two in one gap between states are not.
+    Excursions between two states, out of the limit or into it, are found whatever their number
+
+    - where they take at least 1/256 of the gap, and the second derivative of acceptance limit less or plus
+      deviation is nowhere in the gap more than 4 times the largest that it is seen to have by three neighbours out
+      of the six states around the gap (fewer at a step, or where values stop);
+    - where they take at least a quarter of the gap, if a candidate has fewer than 12 gaps in all, or there are just
+      two states between two steps: how much a deviation bends is not known then;
+    - besides, where the states beside predict an extremum within 20 % of the limit (one in each gap).
 
     Examples
     --------
@@ -58,8 +62,13 @@ def find_windows(traces: Sequence[Trace], evaluate: Evaluate) -> list[WindowRow]
     if not found:
         return []
     crossings, edge_events = locate_edges(Brackets.join(f.edges for f in found), traces, evaluate)
-    excursions = find_excursions(Brackets.join(f.suspects for f in found), evaluate)
-    every = Brackets.join([*(f.crossings for f in found), crossings, excursions])
+    inner = between_states(
+        Brackets.join(f.suspects for f in found),
+        Gaps.join(f.gaps for f in found),
+        Brackets.join(f.crossings for f in found),
+        evaluate,
+    )
+    every = Brackets.join([crossings, inner])
     return assemble(traces, [*(f.events for f in found), edge_events, cross(every, traces, evaluate)])
 
 
@@ -105,32 +114,6 @@ def side_margin(brackets: Brackets, evaluate: Evaluate) -> Margin:
         return np.asarray(acceptance - brackets.side[index] * deviation)
 
     return function
-
-
-def find_excursions(suspects: Brackets, evaluate: Evaluate) -> Brackets:
-    """Look for the extremum of each suspect; where it lies beyond zero margin there are two crossings."""
-    t, g = suspects.t, suspects.g
-    found, at, value = seek(side_margin(suspects, evaluate), t[:, 1:3], g[:, 1:3], _extremum_guess(t, g))
-    hit = suspects.take(found)
-    at, value = at[found], value[found]
-    before, after = hit.take(np.arange(len(at))), hit.take(np.arange(len(at)))
-    for part, order in ((before, (0, 1, -1, 2)), (after, (1, -1, 2, 3))):
-        for array, new in ((part.t, at), (part.g, value)):
-            array[:] = np.column_stack([array, new])[:, order]
-    return Brackets.join([before, after])
-
-
-def _extremum_guess(t: Floats, g: Floats) -> Floats:
-    """Vertex of the parabola through both ends with the neighbours' mean bend, kept inside the piece."""
-    with np.errstate(all="ignore"):
-        slope = np.diff(g, axis=1) / np.diff(t, axis=1)
-        bend = np.diff(slope, axis=1) / (t[:, 2:] - t[:, :-2])
-        both = np.isfinite(bend)
-        mean = np.where(both, bend, 0.0).sum(axis=1) / both.sum(axis=1)
-        middle = 0.5 * (t[:, 1] + t[:, 2])
-        vertex = middle - 0.5 * slope[:, 1] / mean
-    span = t[:, 2] - t[:, 1]
-    return np.clip(np.where(np.isfinite(vertex), vertex, middle), t[:, 1] + 0.05 * span, t[:, 2] - 0.05 * span)
 
 
 def locate_edges(edges: Brackets, traces: Sequence[Trace], evaluate: Evaluate) -> tuple[Brackets, Events]:

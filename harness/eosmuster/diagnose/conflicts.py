@@ -7,56 +7,21 @@ how far each lies from it where both have values, so that the bridge's own error
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping, Sequence
+import math
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from itertools import combinations
-from types import MappingProxyType
 
 import numpy as np
-from numpy.typing import NDArray
 
-Floats = NDArray[np.float64]
-
-CONTESTED_ABOVE: Mapping[str, float] = MappingProxyType(
-    {
-        "saturation_pressure": 1.0,
-        "boiling_temperature": 0.3,
-        "liquid_density": 1.0,
-        "vapor_density": 2.0,
-        "enthalpy_of_vaporization": 2.0,
-        "entropy_of_vaporization": 2.0,
-        "liquid_heat_capacity": 3.0,
-        "vapor_heat_capacity": 3.0,
-    }
-)
-"""Median disagreement in % above which a fluid is contested; ours: about the tightest default limit of a property."""
-
-FEWEST = 3
-"""States in common from which two sources can be compared."""
+from eosmuster.diagnose.pairs import Pair, compare, ratio_to
+from eosmuster.diagnose.pairs import Source as Source  # noqa: PLC0414 (what conflicts are looked for in)
+from eosmuster.quantities import CONTESTED_ABOVE
 
 MOST_TABLES = 100
 """Tables of one property of one component that are held against each other, those with the most states first."""
 
 _MOST_NAMED = 12
-
-
-@dataclass(frozen=True)
-class Source:
-    """One reference for one component and property.
-
-    Attributes
-    ----------
-    name : as people see it
-    temperature, values : (n,), K and SI; its own states, or common ones for a continuous source; NaN for no value
-    uncertainty_pct : (n,), expanded; NaN where it is not known
-    evaluate : its value at any temperature (NaN out of range), or None for tabulated values
-    """
-
-    name: str
-    temperature: Floats
-    values: Floats
-    uncertainty_pct: Floats
-    evaluate: Callable[[Floats], Floats] | None = None
 
 
 @dataclass(frozen=True)
@@ -71,6 +36,9 @@ class Conflict:
     size_pct : median of the signed deviation of `alone` (or of the first source) from the others
     largest_pct : the largest absolute deviation between the two sides
     from_K, to_K : where both sides have values
+    from_Pa, to_Pa : likewise, of single-phase states; NaN along the saturation line
+    phase : of single-phase states that are compared phase by phase, else ""
+    explained : the sources of which it is known what is wrong with them
     """
 
     component: str
@@ -81,16 +49,32 @@ class Conflict:
     largest_pct: float
     from_K: float
     to_K: float
+    from_Pa: float = float("nan")
+    to_Pa: float = float("nan")
+    phase: str = ""
+    explained: tuple[str, ...] = ()
 
     @property
     def sentence(self) -> str:
         """Say it in words."""
         size = f"{_percent(self.size_pct, '+')} (median; {_percent(self.largest_pct)} at most)"
-        span = f"by {size}, {self.from_K:.1f}-{self.to_K:.1f} K"
+        span = f"by {size}, {', '.join(self._where())}"
         if not self.alone:
-            return f"{self.others[0]} and {listed(self.others[1:])} disagree {span}; no majority tells which is right"
+            tells = "no majority tells which is right"
+            if self.explained:
+                tells = f"it is known what is wrong with {listed(self.explained)}"
+            return f"{self.others[0]} and {listed(self.others[1:])} disagree {span}; {tells}"
         verb = "stands alone" if len(self.alone) == 1 else "stand apart"
         return f"{listed(self.alone)} {verb} against {listed(self.others)} {span}"
+
+    def _where(self) -> Iterator[str]:
+        low, high = (f"{at:.1f}" for at in (self.from_K, self.to_K))
+        yield f"at {low} K" if low == high else f"{low}-{high} K"
+        if not math.isnan(self.from_Pa):
+            low, high = (f"{at / 1e5:.4g}" for at in (self.from_Pa, self.to_Pa))
+            yield f"{low} bar" if low == high else f"{low}-{high} bar"
+        if self.phase:
+            yield self.phase
 
 
 def listed(names: Sequence[str]) -> str:
@@ -113,10 +97,17 @@ def _percent(value: float, sign: str = "") -> str:
 
 
 @dataclass(frozen=True)
-class _Pair:
-    deviation: Floats
-    temperature: Floats
-    disagree: bool
+class Verdict:
+    """What comes of comparing all sources of a component and property.
+
+    Attributes
+    ----------
+    conflict : None if all that can be compared agree
+    compared : whether any two could be compared
+    """
+
+    conflict: Conflict | None
+    compared: bool
 
 
 def find_conflict(
@@ -124,21 +115,9 @@ def find_conflict(
     name: str,
     sources: Sequence[Source],
     witnesses: Sequence[Source] = (),
+    above: float | None = None,
 ) -> Conflict | None:
-    """Compare every source with every other one.
-
-    Two disagree where the median of their absolute deviation exceeds `CONTESTED_ABOVE` and their combined expanded
-    uncertainty.
-
-    Parameters
-    ----------
-    name : the property
-    witnesses : sources too small to accuse anybody by themselves (a boiling point is one state); they are heard only
-        where no majority tells which source is right
-
-    Returns
-    -------
-    None if all that can be compared agree
+    """Give the conflict that `confront` finds.
 
     Examples
     --------
@@ -147,33 +126,83 @@ def find_conflict(
     >>> print(find_conflict("x", "liquid_density", [one("a", 1.0), one("b", 1.001), one("c", 1.04)]).sentence)
     c stands alone against a, b by +3.95 % (median; 4.00 % at most), 200.0-300.0 K
     """
-    threshold = CONTESTED_ABOVE[name]
-    found = _find(component, name, sources, threshold)
-    if found is None or found.alone or not witnesses:
-        return found
-    heard = _find(component, name, [*sources, *witnesses], threshold)
-    convicts = heard is not None and heard.alone and not {w.name for w in witnesses} & set(heard.alone)
-    return heard if convicts else found
+    return confront(component, name, sources, witnesses, above=above).conflict
 
 
-def _find(component: str, name: str, sources: Sequence[Source], threshold: float) -> Conflict | None:
-    sources = _largest(sources)
+def confront(
+    component: str,
+    name: str,
+    sources: Sequence[Source],
+    witnesses: Sequence[Source] = (),
+    excluded: Sequence[Source] = (),
+    above: float | None = None,
+) -> Verdict:
+    """Compare every source with every other one; those that share an equation have one vote, the first one's.
+
+    Two disagree where the median of their absolute deviation exceeds `above` and their combined expanded
+    uncertainty.
+
+    Parameters
+    ----------
+    name : the property
+    witnesses : sources too small to accuse anybody by themselves (a boiling point is one state), as are all tables
+        with fewer than `eosmuster.diagnose.pairs.FEWEST` values; they are heard only where no majority tells which
+        source is right
+    excluded : sources nothing is judged against, since they contradict the first source; they are heard only where
+        it stands alone against at least two that agree
+    above : %; by default what `CONTESTED_ABOVE` has for the property
+    """
+    threshold = CONTESTED_ABOVE[name] if above is None else above
+    voting = _one_vote_each([one for one in sources if not one.small])
+    small = [*(one for one in sources if one.small), *witnesses]
+    found = _find(component, name, voting, threshold)
+    if found.conflict is None or not found.conflict.alone:
+        if found.conflict is not None and small:
+            found = _with_witnesses(found, _find(component, name, voting, threshold, small), small)
+        if excluded and voting:
+            found = _with_excluded(found, _find(component, name, [*voting, *excluded], threshold), voting[0])
+    return found
+
+
+def _one_vote_each(sources: Sequence[Source]) -> list[Source]:
+    first = {one.equation: i for i, one in reversed(list(enumerate(sources)))}
+    return [one for i, one in enumerate(sources) if not one.equation or first[one.equation] == i]
+
+
+def _with_witnesses(found: Verdict, heard: Verdict, witnesses: Sequence[Source]) -> Verdict:
+    """Take what was found with witnesses where it convicts somebody, but none of them."""
+    alone = heard.conflict.alone if heard.conflict else ()
+    return heard if alone and not {w.name for w in witnesses} & set(alone) else found
+
+
+def _with_excluded(found: Verdict, heard: Verdict, accused: Source) -> Verdict:
+    """Take what was found with excluded sources where the one they are excluded by stands alone against several."""
+    one = heard.conflict
+    convicts = one is not None and one.alone == (accused.name,) and len(one.others) > 1
+    return heard if convicts and not (found.conflict and found.conflict.alone) else found
+
+
+def _find(
+    component: str, name: str, sources: Sequence[Source], threshold: float, witnesses: Sequence[Source] = ()
+) -> Verdict:
+    voting = _largest(sources)
+    sources, count = [*voting, *witnesses], len(voting)
     bridges = [one for one in sources if one.evaluate is not None]
-    ratios = [[_ratio(one, b) for b in bridges] if one.evaluate is None else [] for one in sources]
+    ratios = [[ratio_to(one, b) for b in bridges] if one.evaluate is None else [] for one in sources]
     pairs = {
         (i, j): pair
         for i, j in combinations(range(len(sources)), 2)
-        if (pair := _compare(sources[i], sources[j], threshold, ratios[i], ratios[j])) is not None
+        if (pair := compare(sources[i], sources[j], threshold, ratios[i], ratios[j], heard=j >= count)) is not None
     }
     if not any(pair.disagree for pair in pairs.values()):
-        return None
+        return Verdict(None, bool(pairs))
     apart, rest = _sides(len(sources), pairs)
     if 0 < len(apart) < len(rest):
-        return _conflict(component, name, sources, pairs, (apart, rest), alone=True)
+        return Verdict(_conflict(component, name, sources, pairs, (apart, rest), alone=True), True)
     worst = max(
         (key for key in pairs if pairs[key].disagree), key=lambda k: float(np.median(np.abs(pairs[k].deviation)))
     )
-    return _conflict(component, name, sources, pairs, ([worst[0]], [worst[1]]), alone=False)
+    return Verdict(_conflict(component, name, sources, pairs, ([worst[0]], [worst[1]]), alone=False), True)
 
 
 def _largest(sources: Sequence[Source]) -> list[Source]:
@@ -183,7 +212,7 @@ def _largest(sources: Sequence[Source]) -> list[Source]:
     return [s for i, s in enumerate(sources) if i not in sizes or i in kept]
 
 
-def _sides(count: int, pairs: Mapping[tuple[int, int], _Pair]) -> tuple[list[int], list[int]]:
+def _sides(count: int, pairs: Mapping[tuple[int, int], Pair]) -> tuple[list[int], list[int]]:
     """Part the sources into those that contradict more others than they agree with, and the rest.
 
     Nobody is convicted (the first list is empty) where the rest contradict each other as well.
@@ -202,20 +231,22 @@ def _conflict(
     component: str,
     name: str,
     sources: Sequence[Source],
-    pairs: Mapping[tuple[int, int], _Pair],
+    pairs: Mapping[tuple[int, int], Pair],
     sides: tuple[Sequence[int], Sequence[int]],
     *,
     alone: bool,
 ) -> Conflict:
     side, others = sides
-    deviations, temperatures = [], []
+    deviations, states = [], []
     for (i, j), pair in pairs.items():
         if (i in side and j in others) or (i in others and j in side):
             # a pair holds 100 (second/first - 1): turn it so that it is the side's own deviation
             turned = 100.0 * (1.0 / (1.0 + pair.deviation / 100.0) - 1.0)
             deviations.append(pair.deviation if j in side else turned)
-            temperatures.append(pair.temperature)
-    deviation, temperature = np.concatenate(deviations), np.concatenate(temperatures)
+            states.append(pair.states)
+    deviation = np.concatenate(deviations)
+    spans = [(float(at.min()), float(at.max())) for at in map(np.concatenate, zip(*states, strict=True))]
+    (from_K, to_K), (from_Pa, to_Pa) = (*spans, (math.nan, math.nan))[:2]
     named = tuple(sources[k].name for k in others)
     first = tuple(sources[k].name for k in side)
     return Conflict(
@@ -225,72 +256,8 @@ def _conflict(
         named if alone else first + named,
         float(np.median(deviation)),
         float(np.abs(deviation).max()),
-        float(temperature.min()),
-        float(temperature.max()),
+        from_K,
+        to_K,
+        from_Pa,
+        to_Pa,
     )
-
-
-_Ratio = tuple[Floats, Floats]
-"""Temperatures, and ratios of a table's values to a bridge's there."""
-
-
-def _compare(
-    one: Source, other: Source, threshold: float, ratios: Sequence[_Ratio], other_ratios: Sequence[_Ratio]
-) -> _Pair | None:
-    """Compare two sources on the states they have in common, or tables through a bridge; None if too few."""
-    at, first, second = _common(one, other)
-    known = np.isfinite(first) & np.isfinite(second) & (first != 0.0)
-    allowed = max(threshold, _combined(one, other))
-    if known.sum() >= min(FEWEST, max(at.size, 1)):
-        deviation = 100.0 * (second[known] / first[known] - 1.0)
-        return _Pair(deviation, at[known], bool(np.median(np.abs(deviation)) > allowed))
-    both = zip(ratios, other_ratios, strict=False)  # a formula has none
-    bridged = next((found for own, others in both if (found := _bridged(own, others)) is not None), None)
-    if bridged is None:
-        return None
-    at, deviation = bridged
-    return _Pair(deviation, at, bool(abs(np.median(deviation)) > allowed))
-
-
-def _ratio(one: Source, bridge: Source) -> _Ratio:
-    ratio = one.values / _value(bridge, one.temperature)
-    known = np.isfinite(ratio) & (ratio > 0.0)
-    return one.temperature[known], ratio[known]
-
-
-def _bridged(one: _Ratio, other: _Ratio) -> tuple[Floats, Floats] | None:
-    """Give temperatures and deviations (%) of the other's values from the first's median distance to a bridge.
-
-    None where either has fewer than `FEWEST` values between the temperatures that both reach.
-    """
-    (at, first), (places, second) = one, other
-    if min(at.size, places.size) < FEWEST:
-        return None
-    low, high = max(at.min(), places.min()), min(at.max(), places.max())
-    mine, its = (at >= low) & (at <= high), (places >= low) & (places <= high)
-    if min(int(mine.sum()), int(its.sum())) < FEWEST:
-        return None
-    return places[its], 100.0 * (second[its] / float(np.median(first[mine])) - 1.0)
-
-
-def _common(one: Source, other: Source) -> tuple[Floats, Floats, Floats]:
-    """Temperatures and both values there: a continuous source is evaluated where a table has its states."""
-    if one.evaluate is None and other.evaluate is None:
-        at, i, j = np.intersect1d(one.temperature, other.temperature, return_indices=True)
-        return at, one.values[i], other.values[j]
-    if one.evaluate is None:
-        at = one.temperature
-        return at, one.values, _value(other, at)
-    return other.temperature, _value(one, other.temperature), other.values
-
-
-def _value(source: Source, at: Floats) -> Floats:
-    if source.evaluate is None or np.array_equal(at, source.temperature):
-        return source.values
-    return source.evaluate(at)
-
-
-def _combined(one: Source, other: Source) -> float:
-    """Combine the expanded uncertainties, in %, of what is known of them."""
-    known = [u[np.isfinite(u)] for u in (one.uncertainty_pct, other.uncertainty_pct)]
-    return float(np.sqrt(sum(float(np.median(u)) ** 2 for u in known if u.size)))

@@ -2,7 +2,10 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import dataclass
+from types import MappingProxyType
 
 import numpy as np
 from numpy.typing import NDArray
@@ -21,33 +24,69 @@ ACENTRIC_CONTRADICTS, ACENTRIC_DOUBTFUL = 0.1, 0.005
 COMPRESSIBILITY = (0.20, 0.34)
 """Range of Z_c of known substances (common practice: 0.22 to 0.31, hydrogen halides and helium a little beyond)."""
 
-SERIES_FAMILY, SERIES_FROM, SERIES_OUTLIER = "n-alkane", 0.058, 0.02
-"""Homologous series checked, the molar mass (kg/mol) it starts at, since its first members leave the curve (common
-practice), and the share of Tc or pc by which a member may stand off the curve of its neighbours (ours)."""
+
+@dataclass(frozen=True)
+class Series:
+    """A homologous series: members of a class whose molar mass (kg/mol) is `ends` and a number of `unit`."""
+
+    name: str
+    family: str
+    ends: float
+    unit: float
+    begins: float = 0.0
+
+    def holds(self, component: Component) -> bool:
+        """Tell whether a component is of the series, from the molar mass `begins` on.
+
+        Examples
+        --------
+        >>> from eosmuster.components import find
+        >>> [SERIES[1].holds(find(name)) for name in ("R218", "RC318")]   # perfluoropropane, a ring
+        [True, False]
+        """
+        units = (_mass(component) - self.ends) / self.unit
+        of_series = abs(units - round(units)) < _WHOLE if math.isfinite(units) else False
+        return component.family == self.family and of_series and _mass(component) > self.begins
+
+
+SERIES = (
+    Series("n-alkanes", "n-alkane", 2.016e-3, 14.0266e-3, begins=0.058),
+    Series("perfluoro-n-alkanes", "perfluorocarbon", 37.9968e-3, 50.0075e-3),
+    Series("linear siloxanes", "siloxane", 88.223e-3, 74.154e-3),
+)
+"""Homologous series that have members enough: H2 and CH2, F2 and CF2, Si(CH3)4 and OSi(CH3)2. The first
+n-alkanes leave the curve of the others (common practice)."""
+
+_WHOLE = 0.02
+"""So near to a whole number of units a molar mass has to be: masses are printed in several ways."""
+
+SERIES_OUTLIER = 0.02
+"""Share of Tc or pc by which a member may stand off the curve of its neighbours; ours."""
+
+_SHOWN = {"critical_temperature": (1.0, "K"), "critical_pressure": (1e-5, "bar")}
+"""Constants of tables: what makes the shown number of an SI value, and its unit."""
+
+STORED = "stored constant"
+"""What findings call a constant of the library's record, or of the user's own."""
 
 BOILING_POINT_K = 1.0
 """Difference of two normal boiling points from which they contradict each other; ours."""
 
 
-def acentric(component: Component, stored: float, psat_at_07: float) -> Iterator[Finding]:
-    """Compare an acentric factor with its own definition (Pitzer et al., J. Am. Chem. Soc. 77 (1955) 3433)."""
+def acentric(component: Component, stored: float, psat_at_07: float, subject: str = STORED) -> Iterator[Finding]:
+    """Compare an acentric factor with its own definition (Pitzer et al., J. Am. Chem. Soc. 77 (1955) 3433).
+
+    `subject` names the source of one that does not come from the component's record.
+    """
     own = acentric_from_saturation(psat_at_07, component.critical_pressure)
     difference = abs(stored - own)
     if not difference > ACENTRIC_DOUBTFUL:
         return
     severity = "contradiction" if difference > ACENTRIC_CONTRADICTS else "doubt"
     at = 0.7 * component.critical_temperature
-    yield Finding(
-        "acentric factor",
-        severity,
-        component.name,
-        "stored constant",
-        stored,
-        own,
-        at,
-        at,
-        f"stored {stored:.4f}, but psat(0.7 Tc)/pc of the reference's own equation gives {own:.4f}",
-    )
+    given = "stored" if subject == STORED else f"{subject} gives"
+    sentence = f"{given} {stored:.4f}, but psat(0.7 Tc)/pc of the reference's own equation gives {own:.4f}"
+    yield Finding("acentric factor", severity, component.name, subject, stored, own, at, at, sentence)
 
 
 def compressibility(component: Component) -> Iterator[Finding]:
@@ -71,8 +110,16 @@ def compressibility(component: Component) -> Iterator[Finding]:
 
 
 def series(components: Sequence[Component]) -> Iterator[Finding]:
-    """Check each member of a homologous series against a cubic through its four neighbours in molar mass."""
-    members = sorted((c for c in components if c.family == SERIES_FAMILY and _mass(c) > SERIES_FROM), key=_mass)
+    """Check each member of a homologous series against its four neighbours in molar mass.
+
+    Through these goes a parabola of the constant's logarithm over that of the molar mass, by least squares.
+    """
+    for one in SERIES:
+        yield from _outliers(one, sorted(filter(one.holds, components), key=_mass))
+
+
+def _outliers(one: Series, members: Sequence[Component]) -> Iterator[Finding]:
+    """Find members of one series, by rising molar mass, that their neighbours do not lead to."""
     for name, label in (("critical_temperature", "Tc"), ("critical_pressure", "pc")):
         for i, component in enumerate(members):
             near = sorted(
@@ -86,8 +133,10 @@ def series(components: Sequence[Component]) -> Iterator[Finding]:
             expected = float(np.exp(np.polyval(np.polyfit(x, y, 2), np.log(_mass(component)))))
             value = getattr(component, name)
             if abs(value / expected - 1.0) > SERIES_OUTLIER:
+                factor, unit = _SHOWN[name]
                 sentence = (
-                    f"{label} = {value:.6g}, but its neighbours among the {SERIES_FAMILY}s lead to {expected:.6g}"
+                    f"{label} = {value * factor:.6g} {unit}, but its neighbours among the {one.name} lead to "
+                    f"{expected * factor:.6g} {unit}"
                 )
                 yield Finding(
                     "homologous series", "doubt", component.name, label, value, expected, NAN, NAN, sentence
@@ -121,37 +170,54 @@ def duplicates(rows: Mapping[str, tuple[float, ...]], subject: str) -> Iterator[
 
 
 def critical_table(
-    component: Component, values: Mapping[str, Sequence[tuple[str, float, float]]], tolerance: Mapping[str, float]
+    component: Component,
+    values: Mapping[str, Sequence[tuple[str, float, float]]],
+    tolerance: Mapping[str, float],
+    own_source: Mapping[str, str] = MappingProxyType({}),
 ) -> Iterator[Finding]:
     """Hold critical constants of several sources against each other and against the component's own.
 
     Parameters
     ----------
-    values : constant -> (source, value, stated error or NaN), SI
-    tolerance : constant -> relative difference from which a source is reported, beyond its stated error
+    values : constant -> (source, value, stated error or NaN), SI; none of them the component's own
+    tolerance : constant -> relative difference from which a value is reported, for a source beyond its stated error
+    own_source : constant -> where the component's own comes from, `STORED` by default
+
+    Yields
+    ------
+    sources that stand alone; the component's own value where that does, and most sources agree among themselves
     """
     for constant, rows in values.items():
         own = getattr(component, constant)
         if own is None or not rows:
             continue
-        everyone = np.array([own, *(value for _, value, _ in rows)])
-        consensus = float(np.median(everyone))
-        for source, value, error in rows:
-            allowed = tolerance[constant] * abs(consensus) + (0.0 if np.isnan(error) else error)
-            if abs(value - consensus) > allowed and abs(own - consensus) <= tolerance[constant] * abs(consensus):
-                off = f"{100 * (value / consensus - 1):+.2f} %"
-                sentence = (
-                    f"{source} gives {value:.6g}, {off} from the median {consensus:.6g} of {everyone.size} sources: "
-                    "it stands alone"
-                )
-                yield Finding(
-                    constant.replace("_", " "),
-                    "contradiction",
-                    component.name,
-                    source,
-                    value,
-                    consensus,
-                    NAN,
-                    NAN,
-                    sentence,
-                )
+        allowed, cited = tolerance[constant], [value for _, value, _ in rows]
+        consensus, of = float(np.median(cited)), f"{len(rows)} other sources"
+        agreeing = sum(_near(row, consensus, allowed) for row in rows)
+        apart = abs(own - consensus) > allowed * abs(consensus)
+        if apart and agreeing > max(1.0, len(rows) / 2):
+            yield _alone(component, constant, own_source.get(constant, STORED), own, consensus, of)
+        else:
+            consensus, of = float(np.median([own, *cited])), f"{len(rows) + 1} sources"
+            if abs(own - consensus) > allowed * abs(consensus):
+                continue  # no majority tells which is right
+        away = [row for row in rows if not _near(row, consensus, allowed)]
+        yield from (_alone(component, constant, source, value, consensus, of) for source, value, _ in away)
+
+
+def _near(row: tuple[str, float, float], consensus: float, allowed: float) -> bool:
+    """Tell whether a source's value is the consensus, but for a relative difference and its stated error."""
+    _, value, error = row
+    return abs(value - consensus) <= allowed * abs(consensus) + (0.0 if np.isnan(error) else error)
+
+
+def _alone(component: Component, constant: str, source: str, value: float, median: float, of: str) -> Finding:
+    """Say that a constant of one source stands alone against the median `of` many."""
+    factor, unit = _SHOWN[constant]
+    given = f"{source} gives" if source != STORED else f"{source}:"
+    sentence = (
+        f"{given} {value * factor:.6g} {unit}, {100 * (value / median - 1):+.2f} % from the median "
+        f"{median * factor:.6g} {unit} of {of}: it stands alone"
+    )
+    check = constant.replace("_", " ")
+    return Finding(check, "contradiction", component.name, source, value, median, NAN, NAN, sentence)

@@ -1,4 +1,4 @@
-"""Traces that a wrong unit leaves: a constant factor, a constant difference, a logarithm. Words for each, or ""."""
+"""Traces that a wrong unit or basis of the values leaves: a constant factor or difference, or a logarithm."""
 
 from __future__ import annotations
 
@@ -8,23 +8,10 @@ from types import MappingProxyType
 import numpy as np
 from numpy.typing import NDArray
 
-from eosmuster.quantities import STANDARD_ATMOSPHERE
+from eosmuster.diagnose.measured_explaining import APART, NOT_ON_ITS_OWN, ON_A_CURVE, Explanation
+from eosmuster.quantities import STANDARD_ATMOSPHERE, UNITS
 
 Floats = NDArray[np.float64]
-
-FACTORS: Mapping[str, Mapping[str, float]] = MappingProxyType(
-    {
-        "pressure": {
-            "atm and bar": 1.01325,
-            "at (kgf/cm2) and bar": 0.980665,
-            "psi and kPa": 6.894757293168361,
-            "mmHg and kPa": 760.0 / 101.325,
-        },
-        "energy": {"cal and J": 4.184},
-        "density": {},
-    }
-)
-"""Units that are mixed up -> the larger over the smaller, by dimension; powers of ten are tried for all."""
 
 DIMENSIONS: Mapping[str, str] = MappingProxyType(
     {
@@ -36,116 +23,171 @@ DIMENSIONS: Mapping[str, str] = MappingProxyType(
     }
 )
 
-FACTOR_TOLERANCE, FACTOR_SPREAD = 0.002, 0.003
-"""How near the median ratio has to be to a factor, and how flat over the states (relative). Ours: 0.2 % tells 1.01325
-and 1/0.980665 from 1, and measured sets scatter by about as much."""
+PRESSURE_UNITS = ("kPa", "bar", "MPa", "Pa", "psi", "atm", "at", "mmHg", "hPa")
+"""Units that pressures are mixed up in, the commonest first."""
+
+MOLAR_UNITS: Mapping[str, Mapping[str, float]] = MappingProxyType(
+    {
+        "density": {"mol/m3": 1.0, "mol/L": 1e3},
+        "energy": {"kJ/mol": 1e3, "J/mol": 1.0, "cal/mol": 4.184, "kcal/mol": 4184.0},
+    }
+)
+MASS_UNITS: Mapping[str, Mapping[str, float]] = MappingProxyType(
+    {
+        "density": {"kg/m3": 1.0, "g/cm3": 1e3, "lb/ft3": 0.45359237 / 0.3048**3},
+        "energy": {"kJ/kg": 1e3, "J/kg": 1.0, "cal/g": 4184.0, "Btu/lb": 2326.0},
+    }
+)
+"""Units by mole and by mass -> size in SI. The calorie is the thermochemical one, the Btu that of 2326 J/kg."""
+
+NEAR, FACTOR_TOLERANCE, FACTOR_SPREAD, FAR_TOLERANCE = 0.7, 0.002, 0.003, 0.005
+"""How near the median ratio has to be to a factor, and how flat over the states (relative). 0.2 % tells 1.01325 and
+1/0.980665 from 1, and measured sets scatter by about as much; factors further from 1 than 2 (`NEAR`, of its
+logarithm) may scatter more, since nothing but a unit leads there. Ours."""
 
 LOGARITHM_TOLERANCE = 0.05
 """How near exp(value) has to be to the pressure: a printed logarithm has three decimals and an uncertainty. Ours."""
 
-PRESSURE_UNITS: Mapping[str, float] = MappingProxyType(
-    {"Pa": 1.0, "kPa": 1e3, "bar": 1e5, "MPa": 1e6, "mmHg": 133.322}
-)
+ATMOSPHERES: Mapping[str, float] = MappingProxyType({"101325 Pa": STANDARD_ATMOSPHERE, "1 bar": 1e5})
+"""What gauge pressures are short of."""
 
-OFFSET_SHARE = 0.01
-"""How constant a difference has to be, relative to itself. Ours."""
+OFFSET_SHARE, OFFSET_OF_VALUE, OFFSET_VARIES = 0.01, 0.003, 1.2
+"""How constant a difference has to be, relative to itself or to the value; and how much its share of the value has to
+vary, since it could be a factor otherwise. Ours."""
 
 
-def known_factor(name: str, median: float, spread: float, molar_mass: float | None) -> str:
-    """Name the factor that a set differs by, if it is a known one.
+def factors(name: str, log_ratio: Floats, molar_mass: float | None) -> Iterator[Explanation]:
+    """Suppose every unit of a property in place of every other one.
 
     Parameters
     ----------
     name : the property
-    median, spread : of ln(value/reference)
-    molar_mass : kg/mol, for densities
+    log_ratio : (n,), ln(value/reference)
+    molar_mass : kg/mol, for densities and energies; None if it is not known
 
     Examples
     --------
-    >>> known_factor("saturation_pressure", 0.0132, 0.0005, None)
-    'all values are 1.013 times the reference, as 1.01325 is between atm and bar: a unit was mistaken'
-    >>> known_factor("saturation_pressure", 0.03, 0.0005, None)
-    ''
+    >>> from eosmuster.diagnose.measured_explaining import best
+    >>> log_ratio = np.log([1013.0, 1012.9, 1013.1, 1013.0]) - np.log(1e3)
+    >>> one, points = best(factors("saturation_pressure", log_ratio, None), log_ratio)
+    >>> one.sentence(points)
+    'all values are 1.013 times the reference, as with bar stored as atm (1.01325): a unit was mistaken'
     """
-    if spread > FACTOR_SPREAD or abs(median) < 2.0 * FACTOR_TOLERANCE:
-        return ""
-    for words, factor in _factors(DIMENSIONS.get(name, ""), molar_mass):
-        if abs(median - np.log(factor)) < FACTOR_TOLERANCE:
-            ratio = f"all values are {np.exp(median):.4g} times the reference"
-            return f"{ratio}, as {factor:.6g} is between {words}: a unit was mistaken"
-    return ""
+    for words, factor in known_factors(DIMENSIONS.get(name, ""), molar_mass):
+        size = abs(float(np.log(factor)))
+        near = size < NEAR
+        least = size / NOT_ON_ITS_OWN
+        yield Explanation(
+            "unit",
+            f"{{all}} are {_ratio(log_ratio, factor)} times the reference, as with {words} ({factor:.6g}): "
+            "a unit was mistaken",
+            log_ratio - np.log(factor),
+            min(ON_A_CURVE, least),
+            FACTOR_TOLERANCE if near else FAR_TOLERANCE,
+            FACTOR_SPREAD if near else FAR_TOLERANCE,
+            min(APART, least),
+        )
 
 
-def _factors(dimension: str, molar_mass: float | None) -> Iterator[tuple[str, float]]:
-    if not dimension:
-        return
-    for words, factor in FACTORS[dimension].items():
-        yield words, factor
-        yield words, 1.0 / factor
-    for power in range(1, 7):
-        yield "units a power of ten apart", 10.0**power
-        yield "units a power of ten apart", 10.0**-power
-    if dimension in ("density", "energy") and molar_mass is not None:
+def _ratio(log_ratio: Floats, factor: float) -> str:
+    residual = log_ratio - np.log(factor)
+    fitting = residual[np.abs(residual) < ON_A_CURVE]
+    return f"{factor * np.exp(np.median(fitting)):.4g}" if fitting.size else ""
+
+
+def known_factors(dimension: str, molar_mass: float | None) -> Iterator[tuple[str, float]]:
+    """Give what a value is multiplied by where one unit is stored as another, and which units these can be.
+
+    Examples
+    --------
+    >>> dict((f"{factor:.6g}", words) for words, factor in known_factors("density", None))["0.001"]
+    'mol/L stored as mol/m3'
+    """
+    sizes = _sizes(dimension, molar_mass)
+    named: dict[float, list[tuple[str, str, float]]] = {}
+    for stored, label in sizes.items():
+        for meant, size in sizes.items():
+            if abs(np.log(label / size)) > FACTOR_TOLERANCE:
+                named.setdefault(round(float(np.log(label / size)), 6), []).append((meant, stored, label / size))
+    for (meant, stored, factor), *more in named.values():
+        others = "".join(f", or {m} as {s}" for m, s, _ in more[:1])
+        yield f"{meant} stored as {stored}{others}", factor
+    for power in range(-6, 7) if dimension else ():
+        if round(power * float(np.log(10.0)), 6) not in named and power:
+            yield "units a power of ten apart", 10.0**power
+    if dimension in MASS_UNITS and molar_mass is not None:
         for scale in (1.0, 1e3, 1e-3):
-            for exponent in (1, -1, 2, -2):
-                squared = ", divided for multiplied" if abs(exponent) == 2 else ""
-                yield f"mass and mole (the molar mass{squared})", scale * molar_mass**exponent
+            for exponent in (2, -2):
+                yield "the molar mass divided for multiplied", scale * molar_mass**exponent
 
 
-def known_logarithm(name: str, values: Floats, reference: Floats) -> str:
-    """Tell whether pressures are logarithms of the reference, in any of the usual units.
+def _sizes(dimension: str, molar_mass: float | None) -> dict[str, float]:
+    """Give the size of each unit, those by mass made molar; the commonest first."""
+    if dimension == "pressure":
+        return {unit: UNITS["pressure"][unit][0] for unit in PRESSURE_UNITS}
+    molar, mass = MOLAR_UNITS.get(dimension, {}), MASS_UNITS.get(dimension, {})
+    if molar_mass is None:
+        return dict(molar)
+    # a density of 1 kg/m3 is 1/M mol/m3, an energy of 1 J/kg is M J/mol
+    per = 1.0 / molar_mass if dimension == "density" else molar_mass
+    return {unit: size * per for unit, size in mass.items()} | dict(molar)
+
+
+def logarithms(name: str, values: Floats, reference: Floats) -> Iterator[Explanation]:
+    """Suppose that pressures are logarithms of the reference, in any of the usual units.
 
     Parameters
     ----------
-    values, reference : (n,), Pa, above 0
+    values, reference : (n,), Pa, above 0; NaN where there is none
 
     Examples
     --------
-    >>> kilopascals = np.array([10.0, 20.0, 40.0])
-    >>> known_logarithm("saturation_pressure", 1e3 * np.log(kilopascals), 1e3 * kilopascals)
+    >>> from eosmuster.diagnose.measured_explaining import best
+    >>> pressure = np.array([10e3, 20e3, 40e3])
+    >>> stored = 1e3 * np.log(pressure / 1e3)
+    >>> one, points = best(logarithms("saturation_pressure", stored, pressure), np.log(stored / pressure))
+    >>> one.sentence(points)
     'the values are ln(p/kPa), stored as a pressure in kPa'
     """
     if name != "saturation_pressure":
-        return ""
+        return
+    units = {unit: UNITS["pressure"][unit][0] for unit in PRESSURE_UNITS if unit != "hPa"}
     target = np.log(reference)
-    for stored, unit in PRESSURE_UNITS.items():
+    for stored, size in units.items():
         for base, per_step in (("ln", 1.0), ("log10", float(np.log(10.0)))):
-            logarithm = per_step * values / unit
-            for inner, inner_unit in PRESSURE_UNITS.items():
-                distance = np.abs(logarithm + np.log(inner_unit) - target)
-                if float(np.max(distance)) < LOGARITHM_TOLERANCE:
-                    return f"the values are {base}(p/{inner}), stored as a pressure in {stored}"
-    return ""
+            for inner, inner_size in units.items():
+                residual = per_step * values / size + np.log(inner_size) - target
+                words = f"{{the}} are {base}(p/{inner}), stored as a pressure in {stored}"
+                far = LOGARITHM_TOLERANCE
+                yield Explanation("logarithm", words, residual, far, far, far)
 
 
-def known_offset(name: str, values: Floats, reference: Floats) -> str:
-    """Tell whether a set differs from the reference by a constant that has a meaning.
+def offsets(name: str, values: Floats, reference: Floats) -> Iterator[Explanation]:
+    """Suppose that pressures were taken against the atmosphere, or that it was added to what held it already.
 
     Parameters
     ----------
-    values, reference : (n,), Pa or K
+    values, reference : (n,), Pa; NaN where there is none
 
     Examples
     --------
-    >>> known_offset("boiling_temperature", np.array([26.8, 76.9]), np.array([300.0, 350.0]))
-    'the values are 273.15 K below the reference: degC stored as K'
+    >>> from eosmuster.diagnose.measured_explaining import best
+    >>> absolute = np.array([2e5, 3e5, 4e5])
+    >>> gauge = absolute - 101325.0
+    >>> one, points = best(offsets("saturation_pressure", gauge, absolute), np.log(gauge / absolute))
+    >>> one.sentence(points)
+    'the values are 101325 Pa below the reference: gauge pressure stored as absolute'
     """
-    difference = values - reference
-    known = {
-        "saturation_pressure": (
-            STANDARD_ATMOSPHERE,
-            "Pa",
-            "gauge pressure stored as absolute",
-            "absolute taken for gauge",
-        ),
-        "boiling_temperature": (273.15, "K", "degC stored as K", "273.15 added twice"),
-    }
-    if name not in known:
-        return ""
-    size, unit, below, above = known[name]
-    for sign, side, words in ((-1.0, "below", below), (1.0, "above", above)):
-        # differences small against the value cannot be told from an error of the value itself
-        constant = np.abs(difference - sign * size) < OFFSET_SHARE * np.maximum(size, 0.0)
-        if constant.all() and np.ptp(np.log(reference)) > 0.0 and np.max(np.abs(difference) / reference) > 0.02:
-            return f"the values are {size:g} {unit} {side} the reference: {words}"
-    return ""
+    if name != "saturation_pressure":
+        return
+    for atmosphere, size in ATMOSPHERES.items():
+        for sign, side, words in ((-1.0, "below", "gauge pressure stored as absolute"), (1.0, "above", _TWICE)):
+            residual = (values - reference - sign * size) / reference
+            tolerance = np.fmax(OFFSET_SHARE * size / reference, OFFSET_OF_VALUE)
+            fitting = reference[np.abs(residual) < tolerance]
+            if fitting.size and fitting.max() > OFFSET_VARIES * fitting.min():
+                sentence = f"{{the}} are {atmosphere} {side} the reference: {words}"
+                yield Explanation("offset", sentence, residual, tolerance)
+
+
+_TWICE = "absolute pressure taken for gauge, and the atmosphere added"

@@ -14,7 +14,8 @@ from types import MappingProxyType
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from eosmuster.diagnose.conflicts import CONTESTED_ABOVE, Source
+from eosmuster.diagnose.pairs import Source
+from eosmuster.quantities import CONTESTED_ABOVE
 
 Floats = NDArray[np.float64]
 

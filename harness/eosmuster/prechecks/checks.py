@@ -10,17 +10,22 @@ from numpy.typing import NDArray
 from eosmuster.components import Component
 from eosmuster.diagnose import alphas, constants
 from eosmuster.diagnose.findings import SEVERITIES, Finding
+from eosmuster.models.alpha_jets import Jet
 from eosmuster.models.critical import critical_point
 from eosmuster.models.model import BoundModel, Parameters, bind, parameter_file
 from eosmuster.plan.schema import Plan
 from eosmuster.plan.selection import model_records
 from eosmuster.prechecks.consistency import TOLERANCE, Identity, battery
+from eosmuster.prechecks.fits import fit_findings
 from eosmuster.prechecks.measured import measured_findings, measured_sources
-from eosmuster.prechecks.references import reference_findings
+from eosmuster.prechecks.references import reference_findings, settled
 from eosmuster.progress import Progress, silent
 from eosmuster.quantities import GAS_CONSTANT
+from eosmuster.report.text import some
 from eosmuster.sources import handbook, library, library_gate
+from eosmuster.sweeping.constants import choose
 from eosmuster.sweeping.measured import read
+from eosmuster.sweeping.planes import bind_all
 
 Floats = NDArray[np.float64]
 
@@ -36,22 +41,30 @@ def precheck(plan: Plan, progress: Progress = silent) -> list[Finding]:
     ------
     InputError : a pattern of the plan's measured files that names none
     """
-    reading = read(plan, progress)
-    factor = plan.decision.coverage_factor
-    measured = measured_sources(reading, factor)
-    found = list(constant_findings(plan.components))
+    reading, chosen = read(plan, progress), choose(plan)
+    measured = measured_sources(reading, plan.decision.coverage_factor)
+    found = list(constant_findings(chosen.components, plan.components))
     for i, component in enumerate(plan.components):
         progress("references", i, len(plan.components))
-        found += reference_findings(component, measured.get(component.name, ()), factor)
-    found += measured_findings(reading, progress)
-    records, liquids, identities = model_records(plan), liquid_states(plan), list[Identity]()
-    for i, record in enumerate(records):
-        progress("models", i, len(records))
-        bound = bind(record, plan.components)
-        found += [*alpha_findings(bound, plan.components), *reach_findings(bound, plan, liquids)]
-        identities += battery(bound, plan.components)
+        found += reference_findings(component, measured.get(component.name, ()), plan.decision, plan.contested_above)
+    found += measured_findings(reading, progress, plan.contested_above)
+    liquids, identities = liquid_states(plan), list[Identity]()
+    models = bound_models(plan, chosen.components)
+    for i, bound in enumerate(models):
+        progress("models", i, len(models))
+        found += [*alpha_findings(bound, chosen.components), *reach_findings(bound, plan, liquids)]
+        found += fit_findings(bound, chosen.components)
+        identities += battery(bound, chosen.components)
     found += consistency_findings(identities)
     return sorted(found, key=lambda f: SEVERITIES.index(f.severity))
+
+
+def bound_models(plan: Plan, components: Sequence[Component]) -> tuple[BoundModel, ...]:
+    """Bind a plan's models as a sweep does, with its rule above the critical temperature where it has one."""
+    records = model_records(plan)
+    if plan.single_phase is None:
+        return tuple(bind(record, components) for record in records)
+    return bind_all(records, components, plan.single_phase)
 
 
 def consistency_findings(found: Sequence[Identity]) -> Iterator[Finding]:
@@ -59,7 +72,8 @@ def consistency_findings(found: Sequence[Identity]) -> Iterator[Finding]:
     for one in found:
         if not one.error <= TOLERANCE:
             at = f"{one.component} at {one.temperature:.6g} K and {one.pressure:.6g} Pa"
-            sentence = f"{one.model} breaks '{one.identity}' by {one.error:.1e}, most for {at}"
+            others = f"; so it does for {some(one.broken - 1, 'more fluid')}" if one.broken > 1 else ""
+            sentence = f"{one.model} breaks '{one.identity}' by {one.error:.1e}, most for {at}{others}"
             yield Finding(
                 CONSISTENCY,
                 "contradiction",
@@ -82,13 +96,20 @@ def consistency_findings(found: Sequence[Identity]) -> Iterator[Finding]:
         yield Finding(CONSISTENCY, "note", "", "all models", worst.error, 0.0, _NAN, _NAN, sentence)
 
 
-def constant_findings(components: Sequence[Component]) -> Iterator[Finding]:
-    """Check the constants of components, and parameter rows that were copied."""
-    for component in components:
-        yield from _acentric(component)
+def constant_findings(
+    components: Sequence[Component], of_library: Sequence[Component] | None = None
+) -> Iterator[Finding]:
+    """Check the constants of components, and parameter rows that were copied.
+
+    Parameters
+    ----------
+    of_library : the same components with the library's own constants, where `components` have a cited table's
+    """
+    for component, usual in zip(components, of_library or components, strict=True):
+        yield from _acentric(component, usual)
         yield from constants.compressibility(component)
         yield from _boiling_point(component)
-        yield from _critical_tables(component)
+        yield from _critical_tables(component, usual)
     yield from constants.series(components)
     for file, columns in {"twu91_bell2018.csv": ("L", "M", "N"), "prsv_kappa1.csv": ("kappa1",)}.items():
         rows = parameter_file(file)
@@ -96,9 +117,10 @@ def constant_findings(components: Sequence[Component]) -> Iterator[Finding]:
         yield from constants.duplicates(mine, file)
 
 
-def _acentric(component: Component) -> Iterator[Finding]:
+def _acentric(component: Component, of_library: Component) -> Iterator[Finding]:
+    subject = _source(component, of_library, "acentric_factor")
     for note in component.notes:
-        if note.startswith("replaced"):
+        if note.startswith("omega replaced") and subject == constants.STORED:
             own = component.acentric_factor
             yield Finding(
                 "acentric factor", "contradiction", component.name, "stored constant", _NAN, own, _NAN, _NAN, note
@@ -108,7 +130,13 @@ def _acentric(component: Component) -> Iterator[Finding]:
     at = 0.7 * component.critical_temperature
     psat = library.saturation(component, [at], ["saturation_pressure"]).values["saturation_pressure"][0]
     if np.isfinite(psat):
-        yield from constants.acentric(component, component.acentric_factor, float(psat))
+        yield from constants.acentric(component, component.acentric_factor, float(psat), subject)
+
+
+def _source(component: Component, of_library: Component, constant: str) -> str:
+    """Name the cited table that a constant comes from in place of the component's record."""
+    source = component.sources.get(constant, "")
+    return constants.STORED if source == of_library.sources.get(constant, "") else source
 
 
 def _boiling_point(component: Component) -> Iterator[Finding]:
@@ -122,54 +150,60 @@ def _boiling_point(component: Component) -> Iterator[Finding]:
         for value, own in zip(table.values.tolist(), answers.tolist(), strict=True):
             if abs(value - own) > constants.BOILING_POINT_K:
                 sentence = f"{table.source} prints {value:.2f} K, the reference library boils at {own:.2f} K"
-                yield Finding(
+                found = Finding(
                     "boiling point", "doubt", component.name, table.source, value, own, value, value, sentence
                 )
+                yield settled(found, [table.source], {table.source} if table.excluded else set())
 
 
-def _critical_tables(component: Component) -> Iterator[Finding]:
+def _critical_tables(component: Component, of_library: Component) -> Iterator[Finding]:
     from eosmuster.sources.critical import critical_constants
 
     rows = critical_constants(component.cas, include_excluded=True) if component.cas else ()
+    names = ("critical_temperature", "critical_pressure")
+    used = {name: _source(component, of_library, name) for name in names}
     values = {
         name: [
-            (row.source, float(value), (row.errors or {}).get(name, _NAN))
-            for row in rows
-            if (value := getattr(row, name)) is not None
+            *(((constants.STORED, getattr(of_library, name), _NAN),) if used[name] != constants.STORED else ()),
+            *(
+                (row.source, float(value), (row.errors or {}).get(name, _NAN))
+                for row in rows
+                if (value := getattr(row, name)) is not None and row.source != used[name]
+            ),
         ]
-        for name in ("critical_temperature", "critical_pressure")
+        for name in names
     }
-    yield from constants.critical_table(component, values, {"critical_temperature": 0.01, "critical_pressure": 0.05})
+    unused = {row.source for row in rows if row.excluded} - {row.source for row in rows if not row.excluded}
+    tolerance = {"critical_temperature": 0.01, "critical_pressure": 0.05}
+    for found in constants.critical_table(component, values, tolerance, used):
+        yield settled(found, [found.subject], unused)
 
 
 def alpha_findings(bound: BoundModel, components: Sequence[Component]) -> Iterator[Finding]:
     """Say which model breaks which rule of a consistent alpha function for which component, and from where on."""
-    record, p = bound.record, bound.parameters
+    p = bound.parameters
     for row, component in enumerate(components):
         if bound.unavailable[row]:
             continue
-        one = p.take(row)
+        one, tc = p.take(row), float(p.critical_temperature[row])
 
         def alpha(tr: Floats, one: Parameters = one) -> Floats:
             return 1.0 + one.alpha_jet(1.0 - tr)[0]
 
-        tc = float(p.critical_temperature[row])
-        for breach in alphas.breaches(alpha):
-            low, high = breach.from_reduced * tc, breach.to_reduced * tc
-            below = breach.from_reduced < 1.0
-            what = alphas.BROKEN[breach.rule]
-            sentence = f"{what} from {low:.1f} K (Tr {breach.from_reduced:.2f}) to {high:.1f} K"
-            yield Finding(
-                "alpha function",
-                "doubt" if below else "note",
-                component.name,
-                record.name,
-                breach.from_reduced,
-                _NAN,
-                low,
-                high,
-                sentence,
-            )
+        for breach in alphas.breaches(alpha, joints=_joints(one)):
+            start, low, high = breach.from_reduced, breach.from_reduced * tc, breach.to_reduced * tc
+            end = f" to {high:.1f} K" if high > low else ""
+            sentence = f"{breach.what} {'from' if end else 'at'} {low:.1f} K (Tr {start:.2f}){end}"
+            severity, name = "doubt" if start < 1.0 else "note", bound.record.name
+            yield Finding("alpha function", severity, component.name, name, start, _NAN, low, high, sentence)
+
+
+def _joints(one: Parameters) -> dict[float, tuple[Jet, Jet]]:
+    """Give both sides of the critical temperature, where another formula takes over there."""
+    if one.supercritical is None:
+        return {}
+    at = np.asarray(0.0)
+    return {1.0: (one.alpha.jet(at, *one.alpha_parameters), one.supercritical.jet(at))}
 
 
 def liquid_states(plan: Plan) -> list[tuple[Floats, Floats]]:

@@ -13,7 +13,8 @@ from numpy.typing import NDArray
 
 from eosmuster.components import Component
 from eosmuster.models.model import BoundModel
-from eosmuster.prechecks.identities import IDENTITIES, Coexisting, OfStates, States
+from eosmuster.prechecks.identities import IDENTITIES, OfStates
+from eosmuster.prechecks.states import Coexisting, States
 from eosmuster.saturation import solver as saturation
 from eosmuster.singlephase import solver
 
@@ -41,6 +42,7 @@ class Identity:
     error : relative; infinite where a value that should exist is missing
     temperature, pressure : of the state, K and Pa
     states : number of states that were looked at
+    broken : number of components for which the error is larger than `TOLERANCE`
     """
 
     identity: str
@@ -50,6 +52,7 @@ class Identity:
     temperature: float
     pressure: float
     states: int
+    broken: int
 
 
 def battery(bound: BoundModel, components: Sequence[Component]) -> Iterator[Identity]:
@@ -83,6 +86,7 @@ def battery(bound: BoundModel, components: Sequence[Component]) -> Iterator[Iden
             float(at.temperature[worst]),
             float(at.pressure[worst]),
             error.size,
+            np.unique(row[~(error <= TOLERANCE)]).size,
         )
 
 

@@ -14,87 +14,13 @@ from types import MappingProxyType
 import numpy as np
 from numpy.typing import NDArray
 
-from eosmuster.models.critical import critical_point
-from eosmuster.models.model import Parameters
+from eosmuster.prechecks.quadrature import departure_by_quadrature, enthalpy_by_quadrature, entropy_by_quadrature
+from eosmuster.prechecks.states import SHIFTS, Coexisting, States, beside_of, log_slope
 from eosmuster.quantities import GAS_CONSTANT
 from eosmuster.saturation import solver as saturation
-from eosmuster.singlephase import solver
 from eosmuster.singlephase.caloric import isochoric_heat_capacity, speed_of_sound
-from eosmuster.singlephase.solver import SinglePhase
 
 Floats = NDArray[np.float64]
-Ints = NDArray[np.intp]
-
-_STEP = 1e-3  # relative
-_SHIFTS = np.array([-3.0, -2.0, -1.0, 1.0, 2.0, 3.0])
-_WEIGHTS = np.array([-1.0, 9.0, -45.0, 45.0, -9.0, 1.0]) / 60.0
-_NODES = 64  # of the quadrature: its integrand has a pole at 1/b, 3 % beyond the densest liquid
-
-
-@dataclass(frozen=True)
-class States:
-    """Single-phase states of one model, flat.
-
-    Attributes
-    ----------
-    parameters : one row a state
-    row : number of the component
-    phase : index into `eosmuster.singlephase.solver.PHASES`
-    at : the states themselves
-    """
-
-    parameters: Parameters
-    row: Ints
-    phase: NDArray[np.int8]
-    at: SinglePhase
-
-    def near(self, temperature: Floats, pressure: Floats) -> SinglePhase:
-        """Give states beside these, shape (6, n), by temperature and pressure."""
-        rows = self.parameters.take(np.tile(np.arange(self.row.size), len(_SHIFTS)))
-        phase = np.tile(self.phase, len(_SHIFTS))
-        return _shaped(solver.at_pressure(rows, temperature.ravel(), pressure.ravel(), phase), temperature.shape)
-
-    def at_volumes(self, temperature: Floats, density: Floats) -> SinglePhase:
-        """Give states beside these, shape (6, n), by temperature and density."""
-        rows = self.parameters.take(np.tile(np.arange(self.row.size), len(_SHIFTS)))
-        return _shaped(solver.at_density(rows, temperature.ravel(), density.ravel()), temperature.shape)
-
-
-@dataclass(frozen=True)
-class Coexisting:
-    """Saturated states of one model, flat: both phases."""
-
-    parameters: Parameters
-    row: Ints
-    found: saturation.Saturation
-    liquid: SinglePhase
-    vapor: SinglePhase
-
-    def near(self) -> tuple[SinglePhase, SinglePhase, Floats]:
-        """Give both phases along the saturation line beside these states, shape (6, n), and the vapor pressures."""
-        rows = self.parameters.take(np.tile(np.arange(self.row.size), len(_SHIFTS)))
-        T = _beside(self.found.temperature)
-        found = saturation.at_temperature(rows, T.ravel())
-        both = solver.saturated(rows, T.ravel(), found.pressure, found.liquid_density, found.vapor_density)
-        liquid, vapor = (_shaped(one, T.shape) for one in both)
-        return liquid, vapor, found.pressure.reshape(T.shape)
-
-
-# ---------------------------------------------------------------- differences
-
-
-def _beside(values: Floats) -> Floats:
-    return np.asarray(values * (1.0 + _STEP * _SHIFTS[:, None]))
-
-
-def _slope(values: Floats) -> Floats:
-    """Give the derivative with respect to the logarithm of what was shifted: x df/dx, of the sixth order."""
-    return np.asarray(np.einsum("i,ij->j", _WEIGHTS, values) / _STEP)
-
-
-def _shaped(states: SinglePhase, shape: tuple[int, ...]) -> SinglePhase:
-    return SinglePhase(**{name: getattr(states, name).reshape(shape) for name in SinglePhase.__dataclass_fields__})
-
 
 # ---------------------------------------------------------------- identities of coexisting phases
 
@@ -107,7 +33,7 @@ def _equal_fugacity(both: Coexisting) -> Floats:
 def _clapeyron(both: Coexisting) -> Floats:
     """dp/dT of the saturation line, by differences, is the entropy over the volume of vaporization."""
     _, _, pressure = both.near()
-    slope = _slope(np.log(pressure)) * both.found.pressure / both.found.temperature
+    slope = log_slope(np.log(pressure)) * both.found.pressure / both.found.temperature
     entropy = both.vapor.residual_entropy - both.liquid.residual_entropy
     return np.asarray(slope * (1.0 / both.vapor.density - 1.0 / both.liquid.density) / entropy - 1.0)
 
@@ -121,9 +47,9 @@ def _heat_of_vaporization(both: Coexisting) -> Floats:
 def _along_saturation(both: Coexisting) -> Floats:
     """T ds = dh - v dp along both branches of the saturation line, without the ideal gas's own part."""
     liquid, vapor, pressure = both.near()
-    rise, errors = _slope(np.log(pressure)), []
+    rise, errors = log_slope(np.log(pressure)), []
     for states, beside in ((both.liquid, liquid), (both.vapor, vapor)):
-        heat, entropy = _slope(beside.residual_enthalpy), _slope(beside.residual_entropy)
+        heat, entropy = log_slope(beside.residual_enthalpy), log_slope(beside.residual_entropy)
         work = GAS_CONSTANT * states.temperature * states.compressibility_excess * rise
         size = np.abs(heat) + np.abs(states.temperature * entropy) + np.abs(work)
         errors.append((states.temperature * entropy - heat + work) / size)
@@ -142,19 +68,19 @@ def _round_trip(both: Coexisting) -> Floats:
 def _maxwell_volume(states: States) -> Floats:
     """(ds/dv)_T = (dp/dT)_v, in the form (ds/d ln rho)_T = -v (dp/dT)_v."""
     at = states.at
-    beside = states.at_volumes(np.broadcast_to(at.temperature, (len(_SHIFTS), at.density.size)), _beside(at.density))
-    entropy = _slope(beside.residual_entropy - GAS_CONSTANT * np.log(beside.pressure))
+    beside = states.at_volumes(np.broadcast_to(at.temperature, (len(SHIFTS), at.density.size)), beside_of(at.density))
+    entropy = log_slope(beside.residual_entropy - GAS_CONSTANT * np.log(beside.pressure))
     return np.asarray(entropy * at.density / at.pressure_by_temperature + 1.0)
 
 
 def _maxwell_pressure(states: States) -> Floats:
     """(ds/dp)_T = -(dv/dT)_p, less the ideal gas's R/p on both sides."""
     at = states.at
-    shape = (len(_SHIFTS), at.density.size)
-    by_pressure = states.near(np.broadcast_to(at.temperature, shape), _beside(at.pressure))
-    by_temperature = states.near(_beside(at.temperature), np.broadcast_to(at.pressure, shape))
-    entropy = _slope(by_pressure.residual_entropy) / at.pressure
-    expansion = _slope(1.0 / by_temperature.density) / at.temperature
+    shape = (len(SHIFTS), at.density.size)
+    by_pressure = states.near(np.broadcast_to(at.temperature, shape), beside_of(at.pressure))
+    by_temperature = states.near(beside_of(at.temperature), np.broadcast_to(at.pressure, shape))
+    entropy = log_slope(by_pressure.residual_entropy) / at.pressure
+    expansion = log_slope(1.0 / by_temperature.density) / at.temperature
     size = np.abs(expansion) + GAS_CONSTANT / at.pressure
     return np.asarray((entropy + expansion - GAS_CONSTANT / at.pressure) / size)
 
@@ -162,32 +88,32 @@ def _maxwell_pressure(states: States) -> Floats:
 def _stiffness(states: States) -> Floats:
     """(dp/drho)_T is the slope of the isotherm."""
     at = states.at
-    beside = states.at_volumes(np.broadcast_to(at.temperature, (len(_SHIFTS), at.density.size)), _beside(at.density))
-    return _slope(beside.pressure) / (at.density * at.pressure_by_density) - 1.0
+    beside = states.at_volumes(np.broadcast_to(at.temperature, (len(SHIFTS), at.density.size)), beside_of(at.density))
+    return log_slope(beside.pressure) / (at.density * at.pressure_by_density) - 1.0
 
 
 def _isobaric_heat(states: States) -> Floats:
     """(dh/dT)_p is the isobaric heat capacity."""
     at = states.at
-    beside = states.near(_beside(at.temperature), np.broadcast_to(at.pressure, (len(_SHIFTS), at.density.size)))
-    slope = _slope(beside.residual_enthalpy) / at.temperature
+    beside = states.near(beside_of(at.temperature), np.broadcast_to(at.pressure, (len(SHIFTS), at.density.size)))
+    slope = log_slope(beside.residual_enthalpy) / at.temperature
     return (slope - at.residual_isobaric_heat_capacity) / (GAS_CONSTANT + np.abs(slope))
 
 
 def _isochoric_heat(states: States) -> Floats:
     """(du/dT)_v is the isochoric heat capacity."""
     at = states.at
-    beside = states.at_volumes(_beside(at.temperature), np.broadcast_to(at.density, (len(_SHIFTS), at.density.size)))
-    slope = _slope(beside.residual_internal_energy) / at.temperature
+    beside = states.at_volumes(beside_of(at.temperature), np.broadcast_to(at.density, (len(SHIFTS), at.density.size)))
+    slope = log_slope(beside.residual_internal_energy) / at.temperature
     return (slope - at.residual_isochoric_heat_capacity) / (GAS_CONSTANT + np.abs(slope))
 
 
 def _gibbs_helmholtz(states: States) -> Floats:
     """(d ln(phi)/d ln T)_p = -h_res/(R T)."""
     at = states.at
-    beside = states.near(_beside(at.temperature), np.broadcast_to(at.pressure, (len(_SHIFTS), at.density.size)))
+    beside = states.near(beside_of(at.temperature), np.broadcast_to(at.pressure, (len(SHIFTS), at.density.size)))
     heat = at.residual_enthalpy / (GAS_CONSTANT * at.temperature)
-    return np.asarray((_slope(beside.log_fugacity_coefficient) + heat) / (1.0 + np.abs(heat)))
+    return np.asarray((log_slope(beside.log_fugacity_coefficient) + heat) / (1.0 + np.abs(heat)))
 
 
 def _gibbs_energy(states: States) -> Floats:
@@ -208,11 +134,11 @@ def _sound(states: States) -> Floats:
     at = states.at
     ideal = np.full(at.density.shape, 20.0 * GAS_CONSTANT)
     speed = speed_of_sound(at, ideal, 1.0)
-    shape = (len(_SHIFTS), at.density.size)
+    shape = (len(SHIFTS), at.density.size)
     cv = isochoric_heat_capacity(at, ideal)
     rise = at.temperature * at.pressure_by_temperature / (at.density * cv)
-    isothermal = _slope(states.at_volumes(np.broadcast_to(at.temperature, shape), _beside(at.density)).pressure)
-    isochoric = _slope(states.at_volumes(_beside(at.temperature), np.broadcast_to(at.density, shape)).pressure)
+    isothermal = log_slope(states.at_volumes(np.broadcast_to(at.temperature, shape), beside_of(at.density)).pressure)
+    isochoric = log_slope(states.at_volumes(beside_of(at.temperature), np.broadcast_to(at.density, shape)).pressure)
     slope = (isothermal + isochoric / at.temperature * rise) / at.density
     return np.asarray(speed**2 / slope - 1.0)
 
@@ -220,37 +146,9 @@ def _sound(states: States) -> Floats:
 def _joule_thomson(states: States) -> Floats:
     """(dh/dp)_T by differences is v - T (dv/dT)_p, which the Joule-Thomson coefficient is made of."""
     at = states.at
-    beside = states.near(np.broadcast_to(at.temperature, (len(_SHIFTS), at.density.size)), _beside(at.pressure))
-    slope = _slope(beside.residual_enthalpy) / at.pressure
+    beside = states.near(np.broadcast_to(at.temperature, (len(SHIFTS), at.density.size)), beside_of(at.pressure))
+    slope = log_slope(beside.residual_enthalpy) / at.pressure
     return (slope - at.enthalpy_by_pressure) / (np.abs(slope) + 1.0 / at.density)
-
-
-def _departure_by_quadrature(states: States) -> Floats:
-    """ln(phi) = Z - 1 - ln Z + integral of (Z - 1)/rho from 0 to rho, Z by the isotherm's own formula."""
-    at, p = states.at, states.parameters
-    node, weight = np.polynomial.legendre.leggauss(_NODES)
-    rho = at.density * (0.5 + 0.5 * node[:, None])
-    z = isotherm(p, at.temperature, rho) / (rho * GAS_CONSTANT * at.temperature)
-    integral = np.einsum("i,ij->j", weight, (z - 1.0) / rho) * 0.5 * at.density
-    excess = at.compressibility_excess
-    found = excess - np.log1p(excess) + integral
-    return np.asarray((found - at.log_fugacity_coefficient) / (1.0 + np.abs(at.log_fugacity_coefficient)))
-
-
-def isotherm(parameters: Parameters, temperature: Floats, density: Floats) -> Floats:
-    """Pressure by the equation as it is published, R T/(V - b) - a/(V**2 + s b V + m b**2), V = 1/rho + c; Pa.
-
-    Written out on its own: nothing of the solvers is used but the model's numbers.
-    """
-    s, m = parameters.s[parameters.form], parameters.m[parameters.form]
-    critical = critical_point(s, m)
-    tc, pc = parameters.critical_temperature, parameters.critical_pressure
-    alpha = 1.0 + parameters.alpha_jet((tc - temperature) / tc)[0]
-    a = critical.omega_a * (GAS_CONSTANT * tc) ** 2 / pc * alpha
-    b = critical.omega_b * GAS_CONSTANT * tc / pc
-    shift = 0.0 if parameters.translation is None else parameters.translation * GAS_CONSTANT * tc / pc
-    volume = 1.0 / density + shift
-    return np.asarray(GAS_CONSTANT * temperature / (volume - b) - a / (volume * volume + s * b * volume + m * b * b))
 
 
 @dataclass(frozen=True)
@@ -283,7 +181,9 @@ IDENTITIES: Mapping[str, OfStates | OfCoexistence] = MappingProxyType(
         "g = h - T s, h = u + p v": OfStates(_gibbs_energy),
         "speed of sound": OfStates(_sound),
         "Joule-Thomson": OfStates(_joule_thomson),
-        "departure by quadrature": OfStates(_departure_by_quadrature),
+        "departure by quadrature": OfStates(departure_by_quadrature),
+        "enthalpy by quadrature": OfStates(enthalpy_by_quadrature),
+        "entropy by quadrature": OfStates(entropy_by_quadrature),
     }
 )
 """Name -> how far an identity is from being fulfilled, relative, at each state."""

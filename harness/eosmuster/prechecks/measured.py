@@ -8,14 +8,15 @@ from collections.abc import Iterable, Iterator, Mapping, Sequence
 import numpy as np
 from numpy.typing import NDArray
 
-from eosmuster.diagnose.conflicts import CONTESTED_ABOVE, Source
+from eosmuster.diagnose.conflicts import Source
 from eosmuster.diagnose.consensus import Vote, consensus, vote
 from eosmuster.diagnose.findings import Finding
 from eosmuster.prechecks.references import WATCHED
 from eosmuster.progress import Progress
-from eosmuster.quantities import PROPERTIES
+from eosmuster.quantities import CONTESTED_ABOVE, PROPERTIES
 from eosmuster.report.text import some
 from eosmuster.sources import library, library_gate, library_states
+from eosmuster.sources.measured.propagating import combined
 from eosmuster.sources.measured.table import Diagnostic, MeasuredSet, Reading
 from eosmuster.sweeping.measured import PREFIX, Held, held
 
@@ -23,13 +24,12 @@ Floats = NDArray[np.float64]
 
 FILE_CHECK, SET_CHECK, CONSENSUS_CHECK = "measured file", "measured set", "measured sets together"
 
-CONTRADICTIONS = ("other substance", "exchanged", "logarithm", "unit", "offset", "other phase")
-"""Causes that say what is wrong; the others say only that something may be."""
-
 _NAN = float("nan")
 
 
-def measured_findings(reading: Reading, progress: Progress) -> Iterator[Finding]:
+def measured_findings(
+    reading: Reading, progress: Progress, contested_above: Mapping[str, float] = CONTESTED_ABOVE
+) -> Iterator[Finding]:
     """Give what was wrong with files, then with sets, then what several sets of one property say together.
 
     Sets of which it is known what is wrong have no say in the latter.
@@ -37,8 +37,8 @@ def measured_findings(reading: Reading, progress: Progress) -> Iterator[Finding]
     yield from map(_file_finding, reading.diagnostics)
     found = list(held(reading, progress))
     yield from map(_set_finding, found)
-    convicted = {id(h.one) for h in found if h.cause in CONTRADICTIONS}
-    yield from _consensus_findings([one for one in reading.sets if id(one) not in convicted])
+    convicted = {id(h.one) for h in found if h.known}
+    yield from _consensus_findings([one for one in reading.sets if id(one) not in convicted], contested_above)
 
 
 def _file_finding(found: Diagnostic) -> Finding:
@@ -48,14 +48,14 @@ def _file_finding(found: Diagnostic) -> Finding:
 
 
 def _set_finding(found: Held) -> Finding:
-    severity = "contradiction" if found.cause in CONTRADICTIONS else "doubt"
+    severity = "contradiction" if found.known else "doubt"
     one = found.one
     at = one.temperature[np.isfinite(one.temperature)]
     ends = (float(at.min()), float(at.max())) if at.size else (_NAN, _NAN)
     return Finding(SET_CHECK, severity, one.component.name, one.source.name, _NAN, _NAN, *ends, found.sentence)
 
 
-def _consensus_findings(sets: Iterable[MeasuredSet]) -> Iterator[Finding]:
+def _consensus_findings(sets: Iterable[MeasuredSet], contested_above: Mapping[str, float]) -> Iterator[Finding]:
     """Weigh the sources of each component, property and phase against each other, where there are several."""
     groups: dict[tuple[str, str, str], dict[str, list[MeasuredSet]]] = defaultdict(lambda: defaultdict(list))
     for one in sets:
@@ -65,7 +65,7 @@ def _consensus_findings(sets: Iterable[MeasuredSet]) -> Iterator[Finding]:
         if len(votes) < 2:
             continue
         about = f"{phase} {name}" if name == "density" else name
-        all_of = consensus(component, about, library_gate.LIBRARY, votes, CONTESTED_ABOVE.get(name, 1.0))
+        all_of = consensus(component, about, library_gate.LIBRARY, votes, contested_above.get(name, 1.0))
         ends = (min(v.from_K for v in votes), max(v.to_K for v in votes))
         sentence = f"{about.replace('_', ' ')}: {all_of.sentence}"
         severity, apart = "doubt" if all_of.apart else "note", ", ".join(all_of.apart)
@@ -122,7 +122,7 @@ def _source(source: str, sets: Sequence[MeasuredSet], coverage_factor: float) ->
     kept = np.concatenate([~one.repeats for one in sets])
     temperature, values = (np.concatenate(c)[kept] for c in zip(*states, strict=True))
     # the uncertainty of a boiling point is one of temperature, and is not made one of pressure here
-    own = [np.full(len(s), _NAN) if s.property == "boiling_temperature" else s.standard_uncertainty for s in sets]
+    own = [np.full(len(s), _NAN) if s.property == "boiling_temperature" else combined(s).standard for s in sets]
     expanded = 100.0 * coverage_factor * np.concatenate(own)[kept] / np.abs(values)
     order = np.argsort(temperature, kind="stable")
     return Source(PREFIX + source, temperature[order], values[order], expanded[order])

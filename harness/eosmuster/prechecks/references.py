@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -11,11 +12,13 @@ from eosmuster.components import Component
 from eosmuster.diagnose.conflicts import Conflict, Source, find_conflict
 from eosmuster.diagnose.findings import Finding
 from eosmuster.diagnose.monotonic import RISES, turned
-from eosmuster.quantities import STANDARD_ATMOSPHERE
-from eosmuster.sources import handbook, library, library_gate
+from eosmuster.plan.schema import Decision
+from eosmuster.quantities import CONTESTED_ABOVE, STANDARD_ATMOSPHERE
+from eosmuster.sources import cited_uncertainty, handbook, library, library_gate
 from eosmuster.sources.cited import Table
 from eosmuster.sources.critical import critical_constants
 from eosmuster.sources.uncertainty import uncertainty_pct
+from eosmuster.sweeping.series import uncertainty_levels
 
 Floats = NDArray[np.float64]
 
@@ -29,16 +32,22 @@ REPEATED = "no evidence of its own"
 
 _NAN = float("nan")
 
+_DEFAULT = Decision()
+
 
 def reference_findings(
-    component: Component, measured: Sequence[tuple[str, Source]] = (), coverage_factor: float = 2.0
+    component: Component,
+    measured: Sequence[tuple[str, Source]] = (),
+    decision: Decision = _DEFAULT,
+    contested_above: Mapping[str, float] = CONTESTED_ABOVE,
 ) -> Iterator[Finding]:
     """Hold every reference of a component against every other one of the same property, and along temperature.
 
     Parameters
     ----------
     measured : property and source of what a plan's files hold of the component
-    coverage_factor : of the library's uncertainty
+    decision : which uncertainties count, and with which coverage factor, as in a sweep
+    contested_above : property -> median disagreement in %, as a plan has it
 
     Yields
     ------
@@ -47,22 +56,25 @@ def reference_findings(
     accused: set[tuple[str, str]] = set()
     for name in WATCHED:
         sources = [
-            *sources_of(component, name, coverage_factor),
+            *sources_of(component, name, decision),
             *(source for about, source in measured if about == name),
         ]
-        conflict = conflict_of(component, name, sources)
+        conflict = conflict_of(component, name, sources, contested_above)
         if conflict is not None:
             accused |= {(name, source) for source in conflict.alone}
-            yield _from_conflict(conflict)
+            yield settled(_from_conflict(conflict), conflict.alone, unused_sources(component, name))
         for source in _whole_range(component, name, sources):
-            yield from _turn_findings(component, name, source)
+            for turn in _turn_findings(component, name, source):
+                yield settled(turn, [source.name], unused_sources(component, name))
     yield from excluded_findings(component, accused)
 
 
-def conflict_of(component: Component, name: str, sources: Sequence[Source]) -> Conflict | None:
+def conflict_of(
+    component: Component, name: str, sources: Sequence[Source], contested_above: Mapping[str, float] = CONTESTED_ABOVE
+) -> Conflict | None:
     """Find who contradicts whom; normal boiling points are heard where no majority tells who is right."""
     witnesses = list(_boiling_points(component)) if name == "saturation_pressure" else []
-    return find_conflict(component.name, name, sources, witnesses=witnesses)
+    return find_conflict(component.name, name, sources, witnesses, contested_above[name])
 
 
 def excluded_findings(component: Component, accused: set[tuple[str, str]]) -> Iterator[Finding]:
@@ -107,6 +119,22 @@ def used_sources(component: Component, name: str) -> list[str]:
         found += [c.source for c in handbook.correlations(component.cas, asked)]
         found += [t.source for t in handbook.tables(component.cas, name)]
     return list(dict.fromkeys(found))
+
+
+def unused_sources(component: Component, name: str) -> set[str]:
+    """Name the handbook's sources of a property that are left out by default as a whole."""
+    formulas = handbook.correlations(component.cas, name, include_excluded=True)
+    tables = handbook.tables(component.cas, name, include_excluded=True)
+    every = [*((c.source, c.excluded) for c in formulas), *((t.source, t.excluded) for t in tables)]
+    return {source for source, _ in every} - {source for source, excluded in every if not excluded}
+
+
+def settled(finding: Finding, accused: Sequence[str], unused: set[str]) -> Finding:
+    """Make a note of what speaks only against sources that are left out already: nothing is judged against them."""
+    if not accused or not unused.issuperset(accused):
+        return finding
+    are = "it is" if len(accused) == 1 else "they are"
+    return replace(finding, severity="note", sentence=f"{finding.sentence}; {are} not used")
 
 
 def _from_conflict(conflict: Conflict) -> Finding:
@@ -157,29 +185,38 @@ def _whole_range(component: Component, name: str, sources: Sequence[Source]) -> 
 
 
 def sources_of(
-    component: Component, name: str, coverage_factor: float = 2.0, *, include_excluded: bool = True
+    component: Component, name: str, decision: Decision = _DEFAULT, *, include_excluded: bool = True
 ) -> Iterator[Source]:
     """Give the reference library and every handbook source of a property, but for those that repeat another."""
+    factor, levels = decision.coverage_factor, uncertainty_levels(decision)
     tc = component.critical_temperature
     at = np.linspace(max(0.45 * tc, component.triple_temperature or 0.0), 0.98 * tc, STATES)
-    unknown = np.full(at.shape, _NAN)
     if library_gate.limits(component) is not None:
         evaluate = _library_evaluator(component, name)
-        u = uncertainty_pct(component, name, at, coverage_factor)
-        yield Source(library_gate.LIBRARY, at, evaluate(at), u, evaluate)
+        u = uncertainty_pct(component, name, at, factor, **levels)
+        yield Source(library_gate.LIBRARY, at, evaluate(at), u, evaluate, equation=library_gate.LIBRARY)
     for c in handbook.correlations(component.cas, name, include_excluded=include_excluded) if component.cas else ():
         if REPEATED not in c.note:
-            yield Source(c.source, at, c(at), unknown, c)
+            u, _ = cited_uncertainty.uncertainty_pct(c, at, factor, assumed=levels["assumed"])
+            yield Source(c.source, at, c(at), u, c)
     tables: dict[str, list[Table]] = {}
     for t in handbook.tables(component.cas, name, include_excluded=include_excluded) if component.cas else ():
         tables.setdefault(t.source, []).append(t)  # rows left out by default stand in a table of their own
     for source, parts in tables.items():
         temperature = np.concatenate([t.temperature for t in parts])
         values = np.concatenate([t.values for t in parts])
+        u = np.concatenate([_of_table(t, decision) for t in parts])
         inside = (temperature < at[-1]) & (temperature >= at[0])
         if inside.any():
             order = np.flatnonzero(inside)[np.argsort(temperature[inside], kind="stable")]
-            yield Source(source, temperature[order], values[order], np.full(order.shape, _NAN))
+            shared = handbook.shares_library_equation(component.cas, source)
+            equation = library_gate.LIBRARY if shared else ""
+            yield Source(source, temperature[order], values[order], u[order], equation=equation)
+
+
+def _of_table(table: Table, decision: Decision) -> Floats:
+    assumed = uncertainty_levels(decision)["assumed"]
+    return cited_uncertainty.uncertainty_pct(table, table.temperature, decision.coverage_factor, assumed=assumed)[0]
 
 
 def _library_evaluator(component: Component, name: str) -> Callable[[Floats], Floats]:

@@ -7,22 +7,19 @@ from dataclasses import dataclass
 from itertools import product
 from typing import NamedTuple
 
-import numpy as np
-
 from eosmuster.compare.verdicts import tally
 from eosmuster.plan.schema import FIRST_REFERENCE, Gate, Plan
 from eosmuster.record import POINT_VERDICTS, Record, SummaryRow
 from eosmuster.report.failing import FailingRows
+from eosmuster.report.rows import badness, first_reference, is_of, verdict_counts
+from eosmuster.report.sizes import Blocks, blocks_by_key
 from eosmuster.report.text import list_within, some
-from eosmuster.report.views import first_reference
 
 JUDGED = ("inside", "outside", "undecided", "unfit_reference")
 """Verdicts of points that have both a prediction and a reference."""
 
 MOST_NAMED = 10
 """Rows that are named where a gate is not met."""
-
-_WORST_FIRST = ("outside", "partly", "undecided", "inside", "unavailable")
 
 
 class Key(NamedTuple):
@@ -52,7 +49,7 @@ class Counted:
 
 @dataclass(frozen=True)
 class Failures:
-    """What a gate found; as a condition: whether it is not met.
+    """What a gate found; as a condition: whether it is not met, since a verdict occurs or nothing was judged.
 
     Attributes
     ----------
@@ -71,21 +68,16 @@ class Failures:
     judged: int
 
     def __bool__(self) -> bool:
-        return bool(self.counts)
+        return bool(self.counts or self.silent)
 
     @property
     def counted(self) -> str:
-        """The counts in words, e.g. ``4 outside, 1 unsolved``."""
-        return ", ".join(f"{count} {verdict}" for verdict, count in self.counts.items())
-
-
-def verdict_counts(record: Record) -> dict[str, int]:
-    """Count points by verdict, and candidates that are unavailable for a component by property."""
-    total = np.zeros(len(POINT_VERDICTS), np.intp)
-    for block in record.blocks:
-        total += np.bincount(block.verdict.ravel(), minlength=len(POINT_VERDICTS))
-    counts = dict(zip(POINT_VERDICTS, total.tolist(), strict=True))
-    return counts | {"unavailable": sum(row.verdict == "unavailable" for row in record.summary)}
+        """The counts in words, e.g. ``4 outside, 1 unsolved``, or that nothing was judged of what is asked."""
+        said = [f"{count} {verdict}" for verdict, count in self.counts.items()]
+        unheard = (
+            [] if "no_reference" in self.counts or not self.silent else [f"{len(self.silent)} not judged at all"]
+        )
+        return ", ".join([*said, *unheard])
 
 
 def nothing_judged(record: Record) -> bool:
@@ -131,15 +123,11 @@ def _by_reference(rows: Sequence[Counted], gate: Gate, references: Sequence[str]
     """Keep the rows of the references that the gate asks; an `unavailable` row has none and is always kept."""
     if not gate.references:
         return rows
-    chosen = {r.row.reference_source for r in rows if any(_is_of(r.row, name) for name in gate.references)}
+    chosen = {r.row.reference_source for r in rows if any(is_of(r.row, name) for name in gate.references)}
     if FIRST_REFERENCE in gate.references:
         with_one = [r.row for r in rows if r.row.verdict != "unavailable"]
         chosen |= {row.reference_source for row in first_reference(with_one, references)}
     return (r for r in rows if r.row.verdict == "unavailable" or r.row.reference_source in chosen)
-
-
-def _is_of(row: SummaryRow, reference: str) -> bool:
-    return row.reference_source == reference or row.reference_source.startswith(f"{reference}:")
 
 
 def gate_failures(record: Record, plan: Plan) -> Failures:
@@ -156,31 +144,28 @@ def gate_failures(record: Record, plan: Plan) -> Failures:
     return Failures(
         fail_on=fail_on,
         counts={verdict: count for verdict, count in counts.items() if count},
-        rows=tuple(one.row for one in worst_first(one for one in every if one.failing(fail_on))),
+        rows=tuple(
+            one.row
+            for one in worst_first((one for one in every if one.failing(fail_on)), blocks_by_key(record.blocks))
+        ),
         silent=silent,
         judged=sum(one.judged for one in every),
     )
 
 
-def worst_first(rows: Iterable[Counted]) -> list[Counted]:
-    """Sort rows: outside, partly, undecided; of equals the smaller share inside first, then the larger deviation."""
-
-    def badness(one: Counted) -> tuple[int, float, float]:
-        row = one.row
-        size = 0.0 if np.isnan(row.max_pct) else abs(row.max_pct)
-        return _WORST_FIRST.index(row.verdict), row.inside / max(row.points, 1), -size
-
-    return sorted(rows, key=badness)
+def worst_first(rows: Iterable[Counted], blocks: Blocks) -> list[Counted]:
+    """Sort rows as every report does: by `eosmuster.report.rows.badness`."""
+    return sorted(rows, key=lambda one: badness(one.row, blocks))
 
 
 def worst_lines(record: Record, failures: Failures) -> list[str]:
-    """Name the worst failing rows of a gate, `MOST_NAMED` at most, one a line; a last line counts the others."""
+    """Name the worst failing rows of a gate, `MOST_NAMED` at most, one a line, and what nothing was judged of."""
     failing = FailingRows(record, failures.fail_on)
     lines = [failing.line(row) for row in failures.rows[:MOST_NAMED]]
     more = len(failures.rows) - len(lines)
-    if "no_reference" in failures.counts and failures.silent:
-        lines.append(silent_line(failures))
-    return [*lines, *([f"{some(more, 'more row')}; all are in summary.csv"] if more else [])]
+    if more:
+        lines.append(f"{some(more, 'more row')}; all are in summary.csv")
+    return [*lines, *([silent_line(failures)] if failures.silent else [])]
 
 
 def silent_line(failures: Failures) -> str:

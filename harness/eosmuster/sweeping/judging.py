@@ -11,11 +11,15 @@ from numpy.typing import NDArray
 from eosmuster.compare import deviations, verdicts
 from eosmuster.components import Component
 from eosmuster.models.model import BoundModel
-from eosmuster.plan.schema import Plan
+from eosmuster.plan.schema import Decision, Plan
 from eosmuster.plan.tolerances import limit_pct
 from eosmuster.quantities import PROPERTIES
 from eosmuster.record import POINT_VERDICTS, Block, SummaryRow
-from eosmuster.sweeping.series import Series
+from eosmuster.report.text import some
+from eosmuster.sources.library_gate import BEYOND_CRITICAL, REASONS
+from eosmuster.sources.measured.propagating import PARTS
+from eosmuster.sweeping.constants import from_library
+from eosmuster.sweeping.series import FACTOR_UNSTATED, Series
 
 Floats = NDArray[np.float64]
 
@@ -30,12 +34,20 @@ NOTES = (
     "the volume translation takes off more than the volume",
     "the candidate has no root of the stated phase there",
     "the stated phase is not the stable one of the reference there",
+    REASONS[BEYOND_CRITICAL],
+    *PARTS[1:],
+    "the reference's uncertainty is stated without a coverage factor, taken as k = 2",
+    "the ideal gas's heat capacity is not known at the candidate's own temperature",
 )
 """Notes of points, by the number that `Block.note` holds."""
 
-NO_VALUE, NO_REFERENCE, NOT_STABLE = 5, 6, 9
-SATURATION_NOTES = np.array([0, 2, 3, 4, 5, 5, 7], np.int16)
-"""Status of the saturation solver -> note, in the order of `eosmuster.saturation.solver.STATUSES`."""
+NO_VALUE, NO_REFERENCE, NOT_STABLE, NO_SUCH_PHASE = 5, 6, 9, 10
+_NOTE_OF_PARTS = np.array([0, *range(NO_SUCH_PHASE + 1, NO_SUCH_PHASE + 1 + FACTOR_UNSTATED)], np.int16)
+NO_IDEAL_GAS = len(NOTES) - 1
+"""Where a candidate is solved, and what is missing is the reference's part of its value: it fails at nothing."""
+
+SATURATION_NOTES = np.array([0, 2, 3, 4, 5, 5, 7, NO_IDEAL_GAS], np.int16)
+"""Status of `eosmuster.sweeping.predictions.Predictions` -> note: those of the saturation solver, and one more."""
 
 _NUMBERS = tuple(name for name, kind in SummaryRow.__annotations__.items() if kind == "float")
 _SIMPLE = 1
@@ -50,12 +62,14 @@ class Judged:
     ----------
     rows : numbers of the plan's models that are candidates of this block
     predicted : (m, N) at all nodes
+    unsolved : (m, N): where a candidate owes a value
     """
 
     series: Series
     block: Block
     rows: tuple[int, ...]
     predicted: Floats
+    unsolved: NDArray[np.bool_]
 
 
 def independence(bound: BoundModel, component: Component, series: Series) -> str:
@@ -64,7 +78,7 @@ def independence(bound: BoundModel, component: Component, series: Series) -> str
         return "independent"
     if fitted_to(bound.record.fitted, series.property, series.phase):
         return "fitted"
-    return "constants" if component.library_name and not bound.record.constants else "independent"
+    return "constants" if from_library(component) and not bound.record.constants else "independent"
 
 
 def fitted_to(fitted: Sequence[str], name: str, phase: str) -> bool:
@@ -92,59 +106,82 @@ def judge(
 
     `owner` is the component with the constants that the candidates were given, `why` the note of what is not solved.
     """
-    component, nodes, state = series.component, series.nodes, series.nodes.state
     rows = tuple(i for i, b in enumerate(bound) if not b.unavailable[series.row])
-    mine = predicted[list(rows)]
-    at_states, reference = mine[:, state], series.values[state]
-    temperature = nodes.temperature[state]
-    reduced = temperature / component.critical_temperature
-    limit = limit_pct(plan.tolerances, component, series.property, temperature, reduced, reference)
-    uncertainty = series.uncertainty(temperature)
-    deviation = deviations.deviation_pct(at_states, reference)
-    judgement = verdicts.judge(
-        deviation,
-        limit,
-        uncertainty,
-        verdicts.unsolved_mask(at_states, reference),
-        rule=plan.decision.rule,
-        coverage_factor=plan.decision.coverage_factor,
-        unfit_ratio=plan.decision.unfit_ratio,
-    )
-    about = PROPERTIES[series.property]
+    state, mine, at, why = series.nodes.state, predicted[list(rows)], _at_states(plan, series), why[list(rows)]
+    at_states, owed = mine[:, state], verdicts.unsolved_mask(mine, series.values) & (why != NO_IDEAL_GAS)
+    deviation = deviations.deviation_pct(at_states, at.reference)
+    judgement = _judgement(plan.decision, at, deviation, owed[:, state])
     block = Block(
-        component=component.name,
-        cas=component.cas,
+        component=series.component.name,
+        cas=series.component.cas,
         property=series.property,
-        unit=about.unit,
-        phase=about.phase or series.phase,
+        unit=PROPERTIES[series.property].unit,
+        phase=PROPERTIES[series.property].phase or series.phase,
         reference_source=series.source,
         candidates=tuple(bound[i].record.name for i in rows),
         independence=tuple(independence(bound[i], owner, series) for i in rows),
-        temperature=temperature,
-        pressure=nodes.pressure[state],
-        reduced_temperature=reduced,
-        reference=reference,
-        reference_uncertainty_pct=uncertainty,
-        limit_pct=limit,
+        temperature=at.temperature,
+        pressure=series.nodes.pressure[state],
+        reduced_temperature=at.reduced,
+        reference=at.reference,
+        reference_uncertainty_pct=at.uncertainty,
+        limit_pct=at.limit,
         predicted=at_states,
         deviation_pct=deviation,
         probability_inside=judgement.probability_inside,
         verdict=judgement.verdict,
-        note=_notes(judgement, why[list(rows)][:, state], series.missing),
+        note=_notes(judgement, why[:, state], series),
         notes=NOTES,
         contested=contested,
     )
-    return Judged(series, block, rows, mine)
+    return Judged(series, block, rows, mine, owed)
 
 
-def _notes(
-    judgement: verdicts.Judgement, why: NDArray[np.int16], missing: NDArray[np.int16] | None
-) -> NDArray[np.int16]:
-    """Give the number in `NOTES` of each point: why it is unsolved or has no reference, or which rule judges it."""
-    note = np.where(judgement.simple_rule, _SIMPLE, 0).astype(np.int16)
+@dataclass(frozen=True)
+class _AtStates:
+    """A series at the states of the plan, (n,): temperature also by Tc, value, its uncertainty and the limit in %."""
+
+    temperature: Floats
+    reduced: Floats
+    reference: Floats
+    uncertainty: Floats
+    limit: Floats
+
+
+def _at_states(plan: Plan, series: Series) -> _AtStates:
+    component, state = series.component, series.nodes.state
+    temperature, reference = series.nodes.temperature[state], series.values[state]
+    reduced = temperature / component.critical_temperature
+    limit = limit_pct(plan.tolerances, component, series.property, reduced, reference)
+    return _AtStates(temperature, reduced, reference, series.uncertainty(temperature), limit)
+
+
+def _judgement(
+    decision: Decision, at: _AtStates, deviation: Floats, unsolved: NDArray[np.bool_]
+) -> verdicts.Judgement:
+    return verdicts.judge(
+        deviation,
+        at.limit,
+        at.uncertainty,
+        unsolved,
+        rule=decision.rule,
+        coverage_factor=decision.coverage_factor,
+        unfit_ratio=decision.unfit_ratio,
+    )
+
+
+def _notes(judgement: verdicts.Judgement, why: NDArray[np.int16], series: Series) -> NDArray[np.int16]:
+    """Give the number in `NOTES` of each point: why it is unsolved or has no reference, or what it is judged by.
+
+    That is the simple rule, or an uncertainty that does not come from the reference's value alone.
+    """
+    of_uncertainty = 0 if series.parts is None else _NOTE_OF_PARTS[series.parts]
+    note = np.where(judgement.simple_rule, _SIMPLE, of_uncertainty).astype(np.int16)
     unsolved = judgement.verdict == _UNSOLVED
     note[unsolved] = np.where(why[unsolved] == 0, NO_VALUE, why[unsolved])
-    no_value = np.broadcast_to(NO_REFERENCE if missing is None else missing, note.shape)
+    no_value = np.broadcast_to(NO_REFERENCE if series.missing is None else series.missing, note.shape)
+    known = np.isfinite(series.values[series.nodes.state])
+    no_value = np.where((why == NO_IDEAL_GAS) & known, NO_IDEAL_GAS, no_value)
     return np.where(judgement.verdict == _NO_REFERENCE_VERDICT, no_value, note).astype(np.int16)
 
 
@@ -216,13 +253,21 @@ def _pressure_of_largest(block: Block) -> Floats:
 
 
 def _summary_note(block: Block, row: int, unsolved: int, unfit: int) -> str:
-    """Name the most frequent reason where points are unsolved, and points that the reference cannot decide."""
+    """Name the most frequent reason where points are unsolved, and what else there is to know of uncertainties.
+
+    Points that the reference cannot decide, those whose uncertainty does not come from its value alone, and those
+    for which it does not know the ideal gas.
+    """
     said = []
     if unsolved:
         notes = block.note[row][block.verdict[row] == _UNSOLVED]
         said.append(block.notes[int(np.bincount(notes).argmax())])
     if unfit:
         said.append(f"{unfit} undecided because the reference is too uncertain")
+    counts = np.bincount(block.note[row], minlength=len(block.notes))
+    # of how many the library states no coverage factor is said once, with the decision rule
+    told = (*_NOTE_OF_PARTS[1:FACTOR_UNSTATED], NO_IDEAL_GAS)
+    said += [f"{some(int(counts[i]), 'point')}: {block.notes[i]}" for i in told if counts[i]]
     return "; ".join(said)
 
 

@@ -11,19 +11,24 @@ import numpy as np
 from numpy.typing import NDArray
 
 from eosmuster.components import Component
-from eosmuster.diagnose.measured import Predictions, Suspicion, exchanged, suspicions
-from eosmuster.plan.schema import Plan
+from eosmuster.diagnose.measured import FOUND, exchanged, exchanged_columns, suspicions
+from eosmuster.diagnose.measured_set import Predictions
+from eosmuster.plan.schema import MEASURED, Plan
 from eosmuster.progress import Progress
 from eosmuster.quantities import PROPERTIES
+from eosmuster.record import CAUSE_FOUND
 from eosmuster.sources import library
+from eosmuster.sources.measured.propagating import combined
 from eosmuster.sources.measured.table import MeasuredSet, Reading
+from eosmuster.sweeping.measured_states import not_in_plan, used, without_values
 from eosmuster.sweeping.planes import Plane
 from eosmuster.sweeping.scattered import scattered
 from eosmuster.sweeping.series import Nodes, Series
 
 Floats = NDArray[np.float64]
+Flags = NDArray[np.bool_]
 
-PREFIX = "measured:"
+PREFIX = f"{MEASURED}:"
 """Measured sources are called by this and their DOI, or their file where that names none."""
 
 
@@ -35,9 +40,12 @@ class Measured:
     ----------
     series : of saturated states, one a component, property and source
     planes : of single-phase densities, one a component that is swept and source
-    conflicts : (component, property, sentence) of sets that contradict the reference library, with the cause
-    left_out : (file, why) of what could not be read, (component, why) of single-phase points that are not judged
-    files : (name, SHA-256) of every file read
+    conflicts : (component, property, sentence) of sets that contradict the reference library, with the cause; those
+        of which it is known what is wrong come first
+    left_out : (file, why) of what could not be read or gives nothing, (component, why) of points that are not judged
+    notes : (file, what) was found out or marked in reading, with nothing left out
+    convicted : (component, property, source) of sets of which it is known what is wrong
+    files : (name, SHA-256) of every file read, whatever it gave, descriptors beside them included
     citations : source of a series -> full reference, as far as the file has it, and the files it was read from
     """
 
@@ -47,6 +55,8 @@ class Measured:
     files: tuple[tuple[str, str], ...] = ()
     citations: Mapping[str, str] = field(default_factory=dict)
     planes: tuple[Plane, ...] = ()
+    notes: tuple[tuple[str, str], ...] = ()
+    convicted: frozenset[tuple[str, str, str]] = frozenset()
 
 
 @dataclass(frozen=True, eq=False)
@@ -64,6 +74,11 @@ class Held:
     cause: str
     sentence: str
 
+    @property
+    def known(self) -> bool:
+        """Whether the cause says what is wrong, and not only that something may be."""
+        return self.cause in FOUND
+
 
 def measure(plan: Plan, progress: Progress) -> Measured:
     """Read a plan's files, relative to the plan's own folder, and hold them against the library.
@@ -74,18 +89,28 @@ def measure(plan: Plan, progress: Progress) -> Measured:
     """
     if not plan.reference_files:
         return Measured()
+    from eosmuster.sources.measured.files import evidence
+
     folder, reading = folder_of(plan), read(plan, progress)
-    names = sorted({one.source.file for one in reading.sets})
-    series, left_out = tuple(_series(plan, reading)), list(_diagnostics(reading))
+    names = evidence(plan.reference_files, folder)
+    left_out = [
+        *_diagnostics(reading, left_out=True),
+        *without_values(names, reading),
+        *not_in_plan(plan, reading.sets),
+    ]
+    series = tuple(_series(plan, reading, left_out))
     planes = tuple(scattered(plan, reading.sets, PREFIX, left_out))
-    used = {one.source for one in (*series, *(one for plane in planes for one in plane.series))}
+    sources = {one.source for one in (*series, *(one for plane in planes for one in plane.series))}
+    found = sorted(held(reading, progress), key=lambda h: not h.known)
     return Measured(
         series,
-        tuple((h.one.component.name, h.one.property, h.sentence) for h in held(reading, progress)),
+        tuple((h.one.component.name, h.one.property, f"{CAUSE_FOUND * h.known}{h.sentence}") for h in found),
         tuple(left_out),
         tuple((name, _hash(folder / name)) for name in names),
-        {key: text for key, text in citations(reading.sets).items() if key in used},
+        {key: text for key, text in citations(reading.sets).items() if key in sources},
         planes,
+        tuple(_diagnostics(reading, left_out=False)),
+        frozenset((h.one.component.name, h.one.property, PREFIX + h.one.source.name) for h in found if h.known),
     )
 
 
@@ -134,47 +159,51 @@ def _hash(path: Path) -> str:
         return hashlib.file_digest(file, "sha256").hexdigest()
 
 
-def _diagnostics(reading: Reading) -> Iterator[tuple[str, str]]:
-    for d in reading.diagnostics:
+def _diagnostics(reading: Reading, *, left_out: bool) -> Iterator[tuple[str, str]]:
+    for d in (one for one in reading.diagnostics if one.left_out == left_out):
         where = f"{d.file}, block {d.block}" if d.block else d.file
         lost = f" ({d.lost} value{'s' if d.lost > 1 else ''} lost)" if d.lost else ""
         yield where, d.sentence + lost
 
 
-def _series(plan: Plan, reading: Reading) -> Iterator[Series]:
-    """Give one series a component, property and source, of saturated states inside the plan's range."""
-    groups: dict[tuple[int, str, str], list[MeasuredSet]] = {}
+def _series(plan: Plan, reading: Reading, left_out: list[tuple[str, str]]) -> Iterator[Series]:
+    """Give one series a component, property and source, of saturated states inside the plan's range.
+
+    What a set has besides is said in `left_out`, of the components that are swept.
+    """
+    groups: dict[tuple[int, str, str], list[tuple[MeasuredSet, Flags]]] = {}
     rows = {c.name: row for row, c in enumerate(plan.components)}
     for one in reading.sets:
         if one.state == "saturated" and one.property in plan.properties and one.component.name in rows:
-            key = (rows[one.component.name], one.property, one.source.name)
-            groups.setdefault(key, []).append(one)
-    for (row, name, source), sets in groups.items():
-        found = _joined(plan, row, name, source, sets)
-        if found is not None:
-            yield found
+            row = rows[one.component.name]
+            judged, why = used(plan, plan.components[row], one)
+            groups.setdefault((row, one.property, one.source.name), []).append((one, judged))
+            if why and row in plan.rows:
+                left_out.append((one.component.name, why))
+    for (row, name, source), members in groups.items():
+        if any(judged.any() for _, judged in members):
+            yield _joined(plan, row, name, source, members)
 
 
-def _joined(plan: Plan, row: int, name: str, source: str, sets: Sequence[MeasuredSet]) -> Series | None:
-    component = plan.components[row]
-    kept = [~one.repeats for one in sets]
+def _joined(plan: Plan, row: int, name: str, source: str, members: Sequence[tuple[MeasuredSet, Flags]]) -> Series:
+    component, sets = plan.components[row], [one for one, _ in members]
+    kept, uncertainties = [judged for _, judged in members], [combined(one) for one in sets]
     values = np.concatenate([one.values[k] for one, k in zip(sets, kept, strict=True)])
     pressure = np.concatenate([one.pressure[k] for one, k in zip(sets, kept, strict=True)])
-    standard = np.concatenate([one.standard_uncertainty[k] for one, k in zip(sets, kept, strict=True)])
+    standard = np.concatenate([u.standard[k] for u, k in zip(uncertainties, kept, strict=True)])
+    parts = np.concatenate([u.parts[k] for u, k in zip(uncertainties, kept, strict=True)])
     at_pressure = name == "boiling_temperature"
     given = np.concatenate([one.temperature[k] for one, k in zip(sets, kept, strict=True)])
     temperature = values if at_pressure else given
-    grid = plan.grid.states_for(component)
-    along = pressure if plan.grid.coordinate == "pressure" else temperature
-    inside = (along >= grid[0]) & (along <= grid[-1]) & (temperature < component.critical_temperature)
-    order = np.flatnonzero(inside)[np.argsort(temperature[inside], kind="stable")]
-    if not order.size:
-        return None
+    order = np.argsort(temperature, kind="stable")
     expanded = 100.0 * plan.decision.coverage_factor * standard[order] / np.abs(values[order])
     placed = pressure[order] if at_pressure else np.full(order.shape, np.nan)
     nodes = Nodes(temperature[order], placed, np.arange(order.size), at_pressure)
     # the uncertainty is the point's own, not a function of temperature: always asked for at all states in order
-    return Series(component, row, name, PREFIX + source, "", nodes, values[order], lambda _: expanded, None)
+    source = PREFIX + source
+    return Series(
+        component, row, name, source, "", nodes, values[order], lambda _: expanded, None, parts=parts[order]
+    )
 
 
 def held(reading: Reading, progress: Progress) -> Iterator[Held]:
@@ -184,44 +213,69 @@ def held(reading: Reading, progress: Progress) -> Iterator[Held]:
         by_file.setdefault(one.source.file, []).append(one)
     for done, (file, sets) in enumerate(by_file.items()):
         progress("measured sets", done, len(by_file))
-        components = {one.component.name: one.component for one in sets}
-        found = [(one, s) for one in sets for s in _suspected(one, components.values())]
-        yield from (Held(one, s.cause, f"{file}, block {one.block}: {s.sentence}") for one, s in found)
-        yield from (Held(one, "exchanged", f"{file}: {sentence}") for one, sentence in exchanged(found))
+        yield from _held_in(file, sets)
 
 
-def _suspected(one: MeasuredSet, companions: Iterable[Component]) -> tuple[Suspicion, ...]:
-    others = [c for c in companions if c.name != one.component.name]
-    at, component = one.temperature, one.component
-    if one.property == "density":
-        return _suspected_density(one, others)
-    if one.property not in PROPERTIES:
-        return ()
-    if one.property == "boiling_temperature":
-        own = library.at_pressure(component, one.pressure, [one.property]).values[one.property]
-        return suspicions(one, Predictions(own), [c.name for c in others])
-    asked = list(dict.fromkeys([one.property, "saturation_pressure", "liquid_density", "vapor_density"]))
-    values = library.saturation(component, at, asked).values
-    elsewhere = {c: library.saturation(c, at, [one.property]).values[one.property] for c in others}
-    predicted = Predictions(
-        values[one.property],
-        elsewhere,
-        values["saturation_pressure"],
-        values["liquid_density"],
-        values["vapor_density"],
+def _held_in(file: str, sets: Sequence[MeasuredSet]) -> Iterator[Held]:
+    """Name what is wrong with the sets of one file; columns that are exchanged are suspected of nothing else."""
+    components = list({one.component.name: one.component for one in sets}.values())
+    known = [(one, predicted) for one in sets if (predicted := _predictions(one, components)) is not None]
+    found = exchanged_columns(known)
+    swapped = {id(one) for one, _ in found}
+    names = [c.name for c in components]
+    for one, predicted in known:
+        if id(one) not in swapped:
+            others = [name for name in names if name != one.component.name]
+            found += [(one, s) for s in suspicions(one, predicted, others)]
+    yield from (Held(one, s.cause, f"{file}, block {one.block}: {s.sentence}") for one, s in found)
+    yield from (Held(one, "exchanged", f"{file}: {sentence}") for one, sentence in exchanged(found))
+
+
+def _predictions(one: MeasuredSet, components: Sequence[Component]) -> Predictions | None:
+    """Ask the library about a set and the other components of its file; None if it knows no such property."""
+    others = [c for c in components if c.name != one.component.name]
+    component, name = one.component, one.property
+    if name == "density":
+        return _density_predictions(one, others)
+    if name not in PROPERTIES:
+        return None
+    if name == "boiling_temperature":
+        own = library.at_pressure(component, one.pressure, [name]).values[name]
+        pressure = library.saturation(component, one.values, ["saturation_pressure"]).values["saturation_pressure"]
+        return Predictions(own, saturation_pressure=pressure)
+
+    def saturated(component: Component, temperature: Floats, *names: str) -> list[Floats]:
+        values = library.saturation(component, temperature, list(dict.fromkeys(names))).values
+        return [values[each] for each in names]
+
+    opposite = {"liquid_density": "vapor_density", "vapor_density": "liquid_density"}.get(name, name)
+    own, other_phase, pressure = saturated(component, one.temperature, name, opposite, "saturation_pressure")
+    return Predictions(
+        own,
+        {c: saturated(c, one.temperature, name)[0] for c in others},
+        pressure,
+        other_phase if opposite != name else None,
+        lambda temperature: saturated(component, temperature, name)[0],
     )
-    return suspicions(one, predicted, [c.name for c in others])
 
 
-def _suspected_density(one: MeasuredSet, others: Sequence[Component]) -> tuple[Suspicion, ...]:
+def _density_predictions(one: MeasuredSet, others: Sequence[Component]) -> Predictions:
     """Hold single-phase densities against the stated phase's root."""
 
-    def reference(component: Component) -> Floats:
-        return library.density(component, one.temperature, one.pressure, one.phase)
+    def reference(component: Component, temperature: Floats = one.temperature, phase: str = one.phase) -> Floats:
+        return library.density(component, temperature, one.pressure, phase)
 
     asked = ["saturation_pressure", "liquid_density", "vapor_density"]
     saturated = library.saturation(one.component, one.temperature, asked).values
-    predicted = Predictions(
-        reference(one.component), {c: reference(c) for c in others}, *(saturated[name] for name in asked)
+    opposite = {"liquid": "vapor", "vapor": "liquid"}.get(one.phase)
+    other_phase = None
+    if opposite is not None:
+        root = reference(one.component, phase=opposite)
+        other_phase = np.where(root > 0.0, root, saturated[f"{opposite}_density"])
+    return Predictions(
+        reference(one.component),
+        {c: reference(c) for c in others},
+        saturated["saturation_pressure"],
+        other_phase,
+        lambda temperature: reference(one.component, temperature),
     )
-    return suspicions(one, predicted, [c.name for c in others])

@@ -12,13 +12,14 @@ from numpy.typing import NDArray
 from eosmuster.components import Component
 from eosmuster.models.model import BoundModel, bind
 from eosmuster.models.records import ModelRecord
-from eosmuster.plan.schema import Plan, SinglePhaseGrid
+from eosmuster.plan.grids import SinglePhaseGrid
+from eosmuster.plan.schema import Plan
 from eosmuster.quantities import PROPERTIES, SINGLE_PHASE
 from eosmuster.singlephase import caloric, solver
 from eosmuster.singlephase.solver import SinglePhase
 from eosmuster.sources import library_gate, library_states
 from eosmuster.sources.uncertainty import uncertainty_pct
-from eosmuster.sweeping.judging import NO_REFERENCE, NOT_STABLE, Judged, judge
+from eosmuster.sweeping.judging import NO_REFERENCE, NO_SUCH_PHASE, NOT_STABLE, Judged, judge
 from eosmuster.sweeping.series import Nodes, Series, uncertainty_levels
 
 Floats = NDArray[np.float64]
@@ -110,7 +111,8 @@ def flat(grid: SinglePhaseGrid) -> tuple[Floats, Floats]:
 def _plane(plan: Plan, grid: SinglePhaseGrid, row: int, component: Component, names: Sequence[str]) -> Plane:
     T, p = flat(grid)
     answers = library_states.single_phase(component, T, p, grid.phase, names)
-    missing = np.where(answers.reason == library_gate.NOT_STABLE, NOT_STABLE, NO_REFERENCE).astype(np.int16)
+    reasons = [answers.reason == library_gate.NOT_STABLE, answers.reason == library_gate.BEYOND_CRITICAL]
+    missing = np.select(reasons, [NOT_STABLE, NO_SUCH_PHASE], NO_REFERENCE).astype(np.int16)
     nodes = Nodes(T, p, np.arange(T.size))
     series = tuple(
         Series(
@@ -155,19 +157,33 @@ def bind_all(
 
 
 def judge_planes(
-    plan: Plan, planes: Sequence[Plane], records: Sequence[ModelRecord], components: Sequence[Component]
+    plan: Plan,
+    planes: Sequence[Plane],
+    records: Sequence[ModelRecord],
+    components: Sequence[Component],
+    contested: Mapping[tuple[int, str], str] = MappingProxyType({}),
 ) -> JudgedPlanes:
-    """Judge all models on all planes; `components` have the constants that the candidates are given."""
+    """Judge all models on all planes.
+
+    Parameters
+    ----------
+    components : have the constants that the candidates are given
+    contested : (component's row, property) -> whether its references disagree, `eosmuster.record.Block.contested`
+    """
     if plan.single_phase is None or not planes:
         return JudgedPlanes((), (), ())
     bound = bind_all(records, components, plan.single_phase)
     kinds = [tuple(plane for plane in planes if plane.rectangle is kind) for kind in (True, False)]
-    whole, scattered = (tuple(_judged(plan, of_kind, bound, components)) for of_kind in kinds)
+    whole, scattered = (tuple(_judged(plan, of_kind, bound, components, contested)) for of_kind in kinds)
     return JudgedPlanes(kinds[0], whole, bound, scattered)
 
 
 def _judged(
-    plan: Plan, planes: Sequence[Plane], bound: Sequence[BoundModel], components: Sequence[Component]
+    plan: Plan,
+    planes: Sequence[Plane],
+    bound: Sequence[BoundModel],
+    components: Sequence[Component],
+    contested: Mapping[tuple[int, str], str],
 ) -> Iterator[Judged]:
     """Judge planes that have the same properties, series by series."""
     if plan.single_phase is None or not planes:
@@ -177,8 +193,8 @@ def _judged(
     for plane in planes:
         stretch = slice(start, start := start + plane.temperature.size)
         for one in plane.series:
-            values = predicted[one.property][:, stretch]
-            yield judge(plan, one, components[plane.row], bound, values, why[:, stretch])
+            values, said = predicted[one.property][:, stretch], contested.get((plane.row, one.property), "")
+            yield judge(plan, one, components[plane.row], bound, values, why[:, stretch], said)
 
 
 def _predict_all(

@@ -52,11 +52,18 @@ class Predictions:
         self._by_pressure = _solve_all(self.bound, pressures, wanted, ideal, by_pressure=True)
 
     def of(self, number: int, name: str) -> tuple[Floats, NDArray[np.int8]]:
-        """Predictions and solver statuses of the series with that number: shapes (models, N)."""
+        """Predictions and statuses of the series with that number: shapes (models, N).
+
+        A status is the solver's, or `NO_IDEAL_GAS` where only the ideal gas's part of a heat capacity is missing.
+        """
         request = self.requests[number]
         values, status = self._by_pressure if request.by_pressure else self._by_temperature
         stretch = slice(request.start, request.stop)
-        return values[name][:, stretch], status[:, stretch]
+        found, said = values[name][:, stretch], status[:, stretch]
+        if name in _WITH_IDEAL_GAS:
+            lacking = (said == solver.SOLVED) & np.isnan(values[_IDEAL][:, stretch])
+            said = np.where(lacking, NO_IDEAL_GAS, said).astype(np.int8)
+        return found, said
 
 
 class IdealGas:
@@ -103,7 +110,15 @@ def predict(
     return {name: found[name] for name in names}, result.status
 
 
-_CALORIC = {"entropy_of_vaporization", "liquid_heat_capacity", "vapor_heat_capacity"}
+NO_IDEAL_GAS = len(solver.STATUSES)
+"""Beside the solver's statuses: the reference does not know the ideal gas at the candidate's own temperature.
+
+At a given pressure a candidate boils at a temperature of its own, which may lie outside the reference's range.
+"""
+
+_WITH_IDEAL_GAS = {"liquid_heat_capacity", "vapor_heat_capacity"}
+_CALORIC = {"entropy_of_vaporization", *_WITH_IDEAL_GAS}
+_IDEAL = "ideal_heat_capacity"  # kept beside the properties
 
 
 def _caloric(parameters: Parameters, found: solver.Saturation, row: Ints, ideal: IdealGas) -> dict[str, Floats]:
@@ -117,6 +132,7 @@ def _caloric(parameters: Parameters, found: solver.Saturation, row: Ints, ideal:
         "entropy_of_vaporization": of_vapor.residual_entropy - of_liquid.residual_entropy,
         "liquid_heat_capacity": isobaric_heat_capacity(of_liquid, heat),
         "vapor_heat_capacity": isobaric_heat_capacity(of_vapor, heat),
+        _IDEAL: heat,
     }
 
 
@@ -124,6 +140,7 @@ def _solve_all(
     bound: Sequence[BoundModel], states: States, wanted: set[str], ideal: IdealGas, *, by_pressure: bool
 ) -> tuple[dict[str, Floats], NDArray[np.int8]]:
     names = wanted - ({"saturation_pressure"} if by_pressure else {"boiling_temperature"})
+    names |= {_IDEAL} if names & _WITH_IDEAL_GAS else set()
     values = {name: np.empty((len(bound), states.value.size)) for name in names}
     status = np.empty((len(bound), states.value.size), np.int8)
     for i, model in enumerate(bound):

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
@@ -53,7 +54,7 @@ def _said_by_range(window: WindowRow, ends: Sequence[float]) -> WindowRow:
 
 def _acceptance(plan: Plan, series: Series, temperature: Floats, reference: Floats, uncertainty: Floats) -> Floats:
     reduced = temperature / series.component.critical_temperature
-    limit = limit_pct(plan.tolerances, series.component, series.property, temperature, reduced, reference)
+    limit = limit_pct(plan.tolerances, series.component, series.property, reduced, reference)
     return verdicts.acceptance_pct(limit, uncertainty, plan.decision.rule)
 
 
@@ -81,7 +82,7 @@ def _trace(plan: Plan, judged: Judged, bound: Sequence[BoundModel]) -> Trace:
         axis,
         deviation_pct(predicted, reference),
         _acceptance(plan, series, axis.lookup, reference, _uncertainty(judged, axis.lookup)),
-        verdicts.unsolved_mask(predicted, reference),
+        judged.unsolved[:, at] & ~outside,
         np.array([bound[i].parameters.critical_temperature[series.row] for i in judged.rows]),
         low_end=_axis_end(states[0], block.temperature[0], nodes[0]),
         high_end=_axis_end(states[-1], block.temperature[-1], nodes[-1]),
@@ -115,9 +116,7 @@ class _Evaluator:
 
     def _predicted(self, block: Ints, row: Ints, temperature: Floats, given: Floats) -> Floats:
         """Predict by model, kind of state and property: few large batches."""
-        rows = [j.rows for j in self.judged]
-        model = np.array([rows[b][r] for b, r in zip(block.tolist(), row.tolist(), strict=True)], np.intp)
-        names = sorted({j.block.property for j in self.judged})
+        model, names = self._models[block, row], sorted({j.block.property for j in self.judged})
         name = np.array([names.index(j.block.property) for j in self.judged], np.intp)[block]
         by_pressure = np.array([j.series.nodes.by_pressure for j in self.judged])[block]
         component = np.array([j.series.row for j in self.judged], np.intp)[block]
@@ -130,6 +129,14 @@ class _Evaluator:
             found, _ = predict(self.bound[number], states, {names[wanted]}, ideal, by_pressure=bool(pressed))
             result[index] = found[names[wanted]]
         return result
+
+    @cached_property
+    def _models(self) -> Ints:
+        """Number of the model of each block's rows, (blocks, most rows); -1 where a block has no such row."""
+        table = np.full((len(self.judged), max((len(j.rows) for j in self.judged), default=0)), -1, np.intp)
+        for number, judged in enumerate(self.judged):
+            table[number, : len(judged.rows)] = judged.rows
+        return table
 
 
 def _groups(key: Ints) -> list[tuple[int, Ints]]:

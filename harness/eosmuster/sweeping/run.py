@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Mapping, Sequence
 from dataclasses import asdict, dataclass, replace
+from functools import partial
 
 from eosmuster.compare.deviations import deviation_pct, statistics
 from eosmuster.models.model import BoundModel
@@ -13,9 +14,10 @@ from eosmuster.plan.schema import Plan
 from eosmuster.plan.selection import model_records
 from eosmuster.progress import Progress, silent
 from eosmuster.quantities import SATURATION
-from eosmuster.record import Record, SummaryRow
+from eosmuster.record import Record, Region, SummaryRow, WindowRow
 from eosmuster.sweeping import describing
 from eosmuster.sweeping.constants import Chosen, choose
+from eosmuster.sweeping.excluded import excluded_sources
 from eosmuster.sweeping.judging import SATURATION_NOTES, Judged, judge, summarise, unavailable_row
 from eosmuster.sweeping.measured import Measured, folder_of, measure
 from eosmuster.sweeping.ordering import by_component
@@ -25,7 +27,8 @@ from eosmuster.sweeping.qualifying import regions
 from eosmuster.sweeping.refining import windows
 from eosmuster.sweeping.saturated import collect
 from eosmuster.sweeping.series import Series, refuse_empty
-from eosmuster.sweeping.watching import Watched, watch
+from eosmuster.sweeping.watching import Watched, explained, together, watch
+from eosmuster.sweeping.watching_planes import watch_planes
 
 
 def run(plan: Plan, progress: Progress = silent) -> Record:
@@ -37,36 +40,32 @@ def run(plan: Plan, progress: Progress = silent) -> Record:
     """
     chosen, records = choose(plan), model_records(plan)
     found = _gather(plan, progress)
-    progress("models", 0, 1)
-    predictions = Predictions(records, chosen.components, found.series)
-    watched = watch(found.series)
-    saturated = _judged(plan, found.series, chosen, predictions, watched, progress)
-    progress("windows", 0, 1)
-    found_windows = windows(plan, saturated, predictions.bound)
-    progress("windows", 1, 1)
-    in_planes = judge_planes(plan, found.planes, records, chosen.components)
-    judged = [*saturated, *in_planes.judged, *in_planes.scattered]
-    summary = _compared(_summary(plan, judged, predictions.bound), chosen, plan, found.series, records)
+    saturated = watch(found.series, plan.contested_above, partial(excluded_sources, plan))
+    watched = together(saturated, watch_planes(plan, found.planes))
+    judged = _judge_all(plan, chosen, records, found, watched, progress)
     record = Record(
         plan_name=plan.name,
         plan_title=plan.title,
         plan_text=plan.text,
-        blocks=tuple(j.block for j in judged),
-        summary=tuple(summary),
-        windows=tuple(found_windows),
-        left_out=(*plan.left_out, *chosen.left, *found.left_out),
+        blocks=tuple(j.block for j in judged.series),
+        summary=judged.summary,
+        windows=judged.windows,
+        left_out=(*plan.left_out, *describing.not_asked_for(plan), *chosen.left, *found.left_out),
         decision=describing.decision(plan),
         constants={c.name: describing.constants(c) for c in chosen.components},
         models={r.name: describing.model(r) for r in records},
-        citations={**describing.citations([j.series for j in judged]), **found.measured.citations},
+        citations=describing.citations([j.series for j in judged.series], chosen.components)
+        | dict(found.measured.citations),
         display=asdict(plan.display),
         references=(*plan.references_use, *(("measured",) if plan.reference_files else ())),
         conflicts=(
-            *((c.component, c.quantity, c.sentence) for c in watched.conflicts),
             *found.measured.conflicts,
+            *((c.component, c.quantity, c.sentence) for c in explained(watched.conflicts, found.measured.convicted)),
         ),
+        notes=found.measured.notes,
         files=found.measured.files,
-        regions=regions(plan, in_planes, chosen.components, progress),
+        regions=judged.regions,
+        regions_asked=describing.regions_asked(plan),
         part=plan.part,
         plan_folder=str(folder_of(plan)) if plan.reference_files else "",
     )
@@ -86,11 +85,10 @@ class _Gathered:
 def _gather(plan: Plan, progress: Progress) -> _Gathered:
     saturated = replace(plan, properties=tuple(name for name in plan.properties if name in SATURATION))
     left_out: list[tuple[str, str]] = []
-    series, planes = [], []
-    for one in collect(saturated, left_out):
+    series, planes, measured = [], [], measure(plan, progress)
+    for one in collect(saturated, left_out, measured.series):
         series.append(one)
         progress("references", one.row + 1, len(plan.components))
-    measured = measure(plan, progress)
     series += [one for one in measured.series if one.row in plan.rows]
     for plane in collect_planes(plan, measured.planes, left_out):
         planes.append(plane)
@@ -98,6 +96,37 @@ def _gather(plan: Plan, progress: Progress) -> _Gathered:
     if plan.part is None:  # a part may have nothing to do, which the others make up for
         refuse_empty([*series, *(one for plane in planes for one in plane.series)])
     return _Gathered(series, planes, measured, [*left_out, *measured.left_out])
+
+
+@dataclass(frozen=True)
+class _JudgedAll:
+    """What came of judging: series by series with the saturated ones first, rows, windows and regions."""
+
+    series: Sequence[Judged]
+    summary: tuple[SummaryRow, ...]
+    windows: tuple[WindowRow, ...]
+    regions: tuple[Region, ...]
+
+
+def _judge_all(
+    plan: Plan,
+    chosen: Chosen,
+    records: Sequence[ModelRecord],
+    found: _Gathered,
+    watched: Watched,
+    progress: Progress,
+) -> _JudgedAll:
+    progress("models", 0, 1)
+    predictions = Predictions(records, chosen.components, found.series)
+    saturated = _judged(plan, found.series, chosen, predictions, watched, progress)
+    progress("windows", 0, 1)
+    found_windows = windows(plan, saturated, predictions.bound)
+    progress("windows", 1, 1)
+    in_planes = judge_planes(plan, found.planes, records, chosen.components, watched.contested)
+    series = [*saturated, *in_planes.judged, *in_planes.scattered]
+    summary = _compared(_summary(plan, series, predictions.bound), chosen, plan, found.series, records)
+    found_regions = regions(plan, in_planes, chosen.components, progress)
+    return _JudgedAll(series, tuple(summary), tuple(found_windows), found_regions)
 
 
 def _judged(

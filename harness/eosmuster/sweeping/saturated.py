@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable, Iterator
+from collections.abc import Callable, Iterable, Iterator, Sequence
 
 import numpy as np
 from numpy.typing import NDArray
@@ -10,11 +10,11 @@ from numpy.typing import NDArray
 from eosmuster.components import Component
 from eosmuster.plan.schema import Decision, Plan
 from eosmuster.plan.tolerances import limit_steps
-from eosmuster.quantities import SATURATION
+from eosmuster.quantities import PROPERTIES, SATURATION
 from eosmuster.sources import cited_uncertainty, handbook, library, library_gate
 from eosmuster.sources.cited import Correlation, Table
-from eosmuster.sources.uncertainty import uncertainty_borders, uncertainty_pct
-from eosmuster.sweeping.series import Nodes, Series, Step, uncertainty_levels
+from eosmuster.sources.uncertainty import coverage_factor_unstated, uncertainty_borders, uncertainty_pct
+from eosmuster.sweeping.series import FACTOR_UNSTATED, Nodes, Series, Step, uncertainty_levels, within
 
 Floats = NDArray[np.float64]
 
@@ -24,38 +24,63 @@ _ONE_TEMPERATURE = 2e-9
 BY_TEMPERATURE = tuple(name for name in SATURATION if name != "boiling_temperature")
 """Properties asked for at a temperature; the boiling temperature is always asked for at a pressure."""
 
+_OF_VAPOR_PRESSURE = ("saturation_pressure", "boiling_temperature")
+"""What a correlation of the vapor pressure answers, whichever coordinate is given."""
 
-def collect(plan: Plan, left_out: list[tuple[str, str]]) -> Iterator[Series]:
-    """Yield every series of a plan, component by component; what a source cannot give is said in `left_out`."""
+
+def collect(plan: Plan, left_out: list[tuple[str, str]], measured: Sequence[Series] = ()) -> Iterator[Series]:
+    """Yield every series of a plan, component by component; what no source can give is said in `left_out`.
+
+    Parameters
+    ----------
+    measured : what the plan's files give besides; not yielded again
+    """
     for row in plan.rows if plan.properties else ():
-        component = plan.components[row]
-        if "coolprop" in plan.references_use:
-            yield from _library_series(plan, row, component, left_out)
+        component, cited = plan.components[row], list[Series]()
         if "handbook" in plan.references_use and component.cas:
-            yield from _correlation_series(plan, row, component)
-            yield from _table_series(plan, row, component)
+            cited = [*_correlation_series(plan, row, component), *_table_series(plan, row, component)]
+            left_out += _without_pressure(plan, component)
+        if "coolprop" in plan.references_use and (limits := library_gate.limits(component)) is not None:
+            yield from _library_series(plan, row, component, limits, left_out)
+        elif "coolprop" in plan.references_use:
+            covered = {one.property for one in (*cited, *measured) if one.row == row}
+            left_out += _without_library(component, plan.properties, covered)
+        yield from cited
 
 
-def _library_series(plan: Plan, row: int, component: Component, left_out: list[tuple[str, str]]) -> Iterator[Series]:
-    limits = library_gate.limits(component)
-    if limits is None:
-        left_out.append((component.name, "the reference library has no equation for it"))
+def _without_library(component: Component, names: Sequence[str], covered: set[str]) -> Iterator[tuple[str, str]]:
+    """Say what of a component has no reference, since the library has no equation for it and others do not help."""
+    rest = [PROPERTIES[name].label for name in names if name not in covered]
+    if rest:
+        about = f"no reference for its {', '.join(rest)}: " if covered else ""
+        yield component.name, f"{about}the reference library has no equation for it"
+
+
+def _without_pressure(plan: Plan, component: Component) -> Iterator[tuple[str, str]]:
+    """Say which cited values a plan by pressure cannot use, since they go by temperature alone."""
+    if plan.grid.coordinate != "pressure":
         return
+    unused = []
+    for name in plan.properties:
+        formulas = () if name in _OF_VAPOR_PRESSURE else handbook.correlations(component.cas, name)
+        by_temperature = [t.source for t in handbook.tables(component.cas, name) if np.isnan(t.pressure).all()]
+        sources = dict.fromkeys([*(c.source for c in formulas), *by_temperature])
+        unused += [f"{PROPERTIES[name].label} ({', '.join(sources)})"] if sources else []
+    if unused:
+        why = "cited values that go by temperature, and not by pressure as the plan does, are not used"
+        yield component.name, f"{why}: {', '.join(unused)}"
+
+
+def _library_series(
+    plan: Plan, row: int, component: Component, limits: library_gate.Limits, left_out: list[tuple[str, str]]
+) -> Iterator[Series]:
     grid, given = _library_states(plan, component, left_out)
     if not given.size:
         return
-    by_pressure = plan.grid.coordinate == "pressure"
-    ends = (limits.from_K, limits.to_K)
-    steps = {
-        p: _steps(
-            [*_tolerance_steps(plan, component, p), *_uncertainty_steps(component, p, plan.decision)], ends, grid
-        )
-        for p in plan.properties
-    }
-    nodes = _nodes(grid, (t for p in plan.properties for t, _ in steps[p]), ends)
-    wanted = sorted({"saturation_pressure", *plan.properties} - {"boiling_temperature"})
-    values = dict(library.saturation(component, nodes.temperature, wanted).values)
-    values["boiling_temperature"] = np.where(np.isfinite(values["saturation_pressure"]), nodes.temperature, np.nan)
+    by_pressure, ends = plan.grid.coordinate == "pressure", (limits.from_K, limits.to_K)
+    steps = {name: _library_steps(plan, component, name, ends, grid) for name in plan.properties}
+    nodes = _nodes(grid, (t for name in plan.properties for t, _ in steps[name]), ends)
+    values = _library_values(component, plan.properties, nodes)
     pressure = values["saturation_pressure"].copy()
     if by_pressure:
         pressure[nodes.state] = given
@@ -75,6 +100,7 @@ def _library_series(plan: Plan, row: int, component: Component, left_out: list[t
             _library_evaluator(component, name, at_pressure),
             steps[name],
             independent_of_library=False,
+            parts=_factors(component, name, nodes, plan.decision),
         )
 
 
@@ -94,9 +120,29 @@ def _library_states(plan: Plan, component: Component, left_out: list[tuple[str, 
     return grid, given[known]
 
 
+def _library_steps(
+    plan: Plan, component: Component, name: str, ends: tuple[float, float], grid: Floats
+) -> tuple[Step, ...]:
+    borders = uncertainty_borders(component, name, **uncertainty_levels(plan.decision))
+    return _steps([*_tolerance_steps(plan, component, name), *((t, "undecided") for t in borders)], ends, grid)
+
+
+def _library_values(component: Component, names: Sequence[str], nodes: Nodes) -> dict[str, Floats]:
+    """Ask the library for properties at nodes, the vapor pressure always among them."""
+    wanted = sorted({"saturation_pressure", *names} - {"boiling_temperature"})
+    values = dict(library.saturation(component, nodes.temperature, wanted).values)
+    boils = np.isfinite(values["saturation_pressure"])
+    return values | {"boiling_temperature": np.where(boils, nodes.temperature, np.nan)}
+
+
 def _library_uncertainty(component: Component, name: str, decision: Decision) -> Callable[[Floats], Floats]:
     factor, levels = decision.coverage_factor, uncertainty_levels(decision)
     return lambda t: uncertainty_pct(component, name, t, factor, **levels)
+
+
+def _factors(component: Component, name: str, nodes: Nodes, decision: Decision) -> NDArray[np.int8]:
+    remembered, at = decision.uncertainty != "read", nodes.temperature[nodes.state]
+    return FACTOR_UNSTATED * coverage_factor_unstated(component, name, at, remembered=remembered).astype(np.int8)
 
 
 def _cited_uncertainty(reference: Correlation | Table, name: str, decision: Decision) -> Callable[[Floats], Floats]:
@@ -122,7 +168,7 @@ def _correlation_series(plan: Plan, row: int, component: Component) -> Iterator[
     """Series of the handbook correlations, only where the plan's states lie in their range."""
     by_pressure = plan.grid.coordinate == "pressure"
     for name in plan.properties:
-        needs_vapor_pressure = name in {"saturation_pressure", "boiling_temperature"}
+        needs_vapor_pressure = name in _OF_VAPOR_PRESSURE
         if by_pressure and not needs_vapor_pressure:
             continue  # at a given pressure its temperature would have to come from another source
         asked = "saturation_pressure" if needs_vapor_pressure else name
@@ -196,7 +242,7 @@ def _table_series(plan: Plan, row: int, component: Component) -> Iterator[Series
     for name in plan.properties:
         for table in handbook.tables(component.cas, name):
             along = table.pressure if plan.grid.coordinate == "pressure" else table.temperature
-            inside = (along >= grid[0]) & (along <= grid[-1]) & (table.temperature < component.critical_temperature)
+            inside = within(along, grid) & (table.temperature < component.critical_temperature)
             inside &= table.temperature >= (component.triple_temperature or 0.0) * (1.0 - _ONE_TEMPERATURE)
             if not inside.any():
                 continue
@@ -205,17 +251,22 @@ def _table_series(plan: Plan, row: int, component: Component) -> Iterator[Series
             nodes = Nodes(table.temperature[inside], pressure, np.arange(int(inside.sum())), at_pressure)
             uncertainty = _cited_uncertainty(table, name, plan.decision)
             yield Series(
-                component, row, name, table.source, table.citation, nodes, table.values[inside], uncertainty, None
+                component,
+                row,
+                name,
+                table.source,
+                table.citation,
+                nodes,
+                table.values[inside],
+                uncertainty,
+                None,
+                independent_of_library=not handbook.shares_library_equation(component.cas, table.source),
             )
 
 
 def _tolerance_steps(plan: Plan, component: Component, name: str) -> list[Step]:
     at = limit_steps(plan.tolerances, component, name)
     return [(tr * component.critical_temperature, "limit_step") for tr in at]
-
-
-def _uncertainty_steps(component: Component, name: str, decision: Decision) -> list[Step]:
-    return [(t, "undecided") for t in uncertainty_borders(component, name, **uncertainty_levels(decision))]
 
 
 def _steps(steps: Iterable[Step], ends: tuple[float, float], grid: Floats) -> tuple[Step, ...]:

@@ -5,22 +5,26 @@ They lie where somebody measured, not on the plan's grid: judged like it, but no
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator, Mapping, Sequence
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from types import MappingProxyType
+from typing import TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
 
 from eosmuster.components import Component
-from eosmuster.plan.schema import Plan, SinglePhaseGrid
+from eosmuster.plan.grids import SinglePhaseGrid
+from eosmuster.plan.schema import Plan
 from eosmuster.quantities import GAS_CONSTANT
 from eosmuster.sources import library_states
+from eosmuster.sources.measured.propagating import combined
 from eosmuster.sources.measured.table import MeasuredSet
 from eosmuster.sweeping.planes import Plane, of_these_states
-from eosmuster.sweeping.series import Nodes, Series
+from eosmuster.sweeping.series import Nodes, Series, within
 
 Floats = NDArray[np.float64]
 Flags = NDArray[np.bool_]
+Values = TypeVar("Values", NDArray[np.float64], NDArray[np.int8])
 
 FROM_DENSITY: Mapping[str, Callable[[Floats, Floats, Floats], Floats]] = MappingProxyType(
     {
@@ -29,9 +33,6 @@ FROM_DENSITY: Mapping[str, Callable[[Floats, Floats, Floats], Floats]] = Mapping
     }
 )
 """What a measured density is a reference for -> its value, from T, p and the density."""
-
-_ROUNDING = 1e-9
-"""Relative: nearer to an end of the rectangle than this is on it, whichever unit each of the two was written in."""
 
 _STATED = ("liquid", "vapor")
 
@@ -48,7 +49,8 @@ def scattered(
 
     Notes
     -----
-    The uncertainty is the value's own, as it is for saturated points; those of T and p are not added to it.
+    The uncertainty is the value's own, combined with those of T and p where they are stated, as it is for saturated
+    points.
     """
     grid, names = plan.single_phase, [name for name in FROM_DENSITY if name in plan.properties]
     if grid is None or not names:
@@ -74,12 +76,16 @@ def _plane(
     source: str,
     members: Sequence[tuple[MeasuredSet, Flags]],
 ) -> Plane:
-    def joined(name: str) -> Floats:
-        return np.concatenate([getattr(one, name)[used] for one, used in members])
+    uncertainties = [combined(one) for one, _ in members]
+    masks = [used for _, used in members]
 
-    T, p = joined("temperature"), joined("pressure")
+    def joined(each: Iterable[Values]) -> Values:
+        return np.concatenate([values[used] for values, used in zip(each, masks, strict=True)])
+
+    T, p = joined(one.temperature for one, _ in members), joined(one.pressure for one, _ in members)
     order = np.lexsort((T, p))
-    T, p, density, standard = T[order], p[order], joined("values")[order], joined("standard_uncertainty")[order]
+    T, p, density = T[order], p[order], joined(one.values for one, _ in members)[order]
+    standard, parts = joined(u.standard for u in uncertainties)[order], joined(u.parts for u in uncertainties)[order]
     # of pV = ZRT at a given state, density and compressibility factor have the same relative uncertainty
     expanded = 100.0 * plan.decision.coverage_factor * standard / np.abs(density)
     nodes = Nodes(T, p, np.arange(T.size))
@@ -95,6 +101,7 @@ def _plane(
             of_these_states(expanded),
             None,
             phase=grid.phase,
+            parts=parts,
         )
         for name in names
     )
@@ -104,12 +111,14 @@ def _plane(
 def _used(grid: SinglePhaseGrid, component: Component, one: MeasuredSet) -> tuple[Flags, str]:
     """Tell which points of a set are judged, and in words why the others are not; repeated ones are no points."""
     own = ~one.repeats
-    inside = own & _within(one.temperature, grid.temperature) & _within(one.pressure, grid.pressure)
+    inside = own & within(one.temperature, grid.temperature) & within(one.pressure, grid.pressure)
     if grid.phase == "stable":
         used, unknown = inside, np.zeros(inside.shape, np.bool_)
     else:
         phase = phases(component, one)
-        used, unknown = inside & (phase == grid.phase), inside & (phase == "")
+        hot_gas = (phase == "supercritical") & (one.pressure < component.critical_pressure)
+        asked = (phase == grid.phase) | (hot_gas & (grid.phase == "vapor"))
+        used, unknown = inside & asked, inside & (phase == "")
     counts = {
         "outside the plan's temperatures and pressures": own & ~inside,
         f"not {grid.phase}": inside & ~used & ~unknown,
@@ -119,20 +128,19 @@ def _used(grid: SinglePhaseGrid, component: Component, one: MeasuredSet) -> tupl
     return used, f"{int((own & ~used).sum())} of {int(own.sum())} densities are not judged: {said}" if said else ""
 
 
-def _within(values: Floats, ends: Sequence[float]) -> Flags:
-    return (values >= ends[0] * (1.0 - _ROUNDING)) & (values <= ends[-1] * (1.0 + _ROUNDING))
-
-
 def phases(component: Component, one: MeasuredSet) -> NDArray[np.str_]:
     """Give the phase of every point, in the words of a plan; "" where it is not known.
 
     At and above the critical temperature a fluid is supercritical, whatever a file calls it. Below it a point has
     the phase that its file states, else the stable one by the library's vapour pressure.
     """
-    if one.phase in _STATED:
-        below = np.full(one.temperature.shape, one.phase)
-    else:
-        boundary = library_states.phase_boundary(component, one.temperature)
-        told = (one.pressure >= boundary, one.pressure < boundary)  # neither where there is no boundary
-        below = np.select(told, _STATED, "")
-    return np.where(one.temperature >= component.critical_temperature, "supercritical", below)
+    if one.phase not in _STATED:
+        return stable_phases(component, one.temperature, one.pressure)
+    return np.where(one.temperature >= component.critical_temperature, "supercritical", one.phase)
+
+
+def stable_phases(component: Component, T: Floats, p: Floats) -> NDArray[np.str_]:
+    """Give the stable phase of states (n,), in K and Pa, in the words of a plan; "" where it is not known."""
+    boundary = library_states.phase_boundary(component, T)
+    below = np.select((p >= boundary, p < boundary), _STATED, "")  # neither where there is no boundary
+    return np.where(component.critical_temperature <= T, "supercritical", below)

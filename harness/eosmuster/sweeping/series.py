@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -11,9 +11,16 @@ from numpy.typing import NDArray
 from eosmuster.components import Component
 from eosmuster.errors import NothingJudged
 from eosmuster.plan.schema import Decision
+from eosmuster.sources.measured.propagating import PARTS
 
 Floats = NDArray[np.float64]
 Step = tuple[float, str]
+
+FACTOR_UNSTATED = len(PARTS)
+"""Says of an uncertainty that its source names no coverage factor, so that it is taken as k = 2."""
+
+ROUNDING = 1e-9
+"""Relative: nearer to an end of a plan's range than this is on it, whichever unit each of the two was written in."""
 
 
 @dataclass(frozen=True)
@@ -49,8 +56,12 @@ class Series:
     evaluate : temperature -> (value, pressure to give or NaN) for a source with a value everywhere in its range;
         None for tabulated values, which have no windows
     steps : temperatures at which limit, uncertainty or reference change by a jump, and what each is
+    independent_of_library : False for the reference library, and for values computed from its equation
     phase : the plan's phase of single-phase states, else ""
     missing : (n,), the note of each state without a value; None for the usual one
+    parts : (n,), what the uncertainty of each state's value consists of, an index into
+        `eosmuster.sources.measured.propagating.PARTS`, or `FACTOR_UNSTATED`; None where it is that of the value alone
+        everywhere
     """
 
     component: Component
@@ -66,6 +77,16 @@ class Series:
     independent_of_library: bool = True
     phase: str = ""
     missing: NDArray[np.int16] | None = None
+    parts: NDArray[np.int8] | None = None
+
+
+def within(values: Floats, ends: Sequence[float] | Floats) -> NDArray[np.bool_]:
+    """Tell which values, (n,), lie between the first and the last of a plan's, both included; NaN does not.
+
+    >>> within(np.array([233.15, 233.16]), [200.0, -40.0 + 273.15]).tolist()  # which is 233.14999999999998
+    [True, False]
+    """
+    return (values >= ends[0] * (1.0 - ROUNDING)) & (values <= ends[-1] * (1.0 + ROUNDING))
 
 
 def uncertainty_levels(decision: Decision) -> dict[str, bool]:
