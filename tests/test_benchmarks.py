@@ -65,6 +65,7 @@ FIGURES = {
         r"sweep with points\.csv, \d+ points: .* x the work of the smallest .*\[target: 10\.5 x\]",
         r"sweep without points\.csv, \d+ points: .* bytes a point",
     ],
+    "dossier.py": [r"dossier of the broad plan: .* s, .* MB \(\d+ points; .*\) \[target: 5 s and 5 MB\]"],
     "points_writer.py": [
         r"points\.csv, \d+ rows: .* ns a row \(.* MB of memory",
         r"points\.csv, \d+ rows of \d+ bytes: .* x as fast \(.* of pandas' to_csv\)",

@@ -26,6 +26,7 @@ SCRIPTS = (
     "catalogue.py",
     "growth.py",
     "points_writer.py",
+    "dossier.py",
     "thermoml_reader.py",
 )
 

@@ -131,7 +131,7 @@ def test_a_region_of_temperature_and_pressure(block: Block, record_of: MakeRecor
     record = replace(record_of([plane]), windows=(), regions=(region,))
     paragraph = told(record, "outside")[1]
     assert "  worst point  at 10 degC (T/Tc 0.75), 1 bar" in paragraph.splitlines()
-    assert "  inside       0 to 7 (25 % of the plan's rectangle), degC; at 1 of 4 states" in paragraph.splitlines()
+    assert "  inside       25 % of the plane, 0 to 7 degC, 1 to 20 bar; at 1 of 4 states" in paragraph.splitlines()
 
 
 def test_temperatures_deviate_in_kelvin(block: Block, record_of: MakeRecord) -> None:

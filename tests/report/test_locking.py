@@ -133,6 +133,38 @@ class TestMarks:
         assert f"if it has ended already, delete {file}" in str(caught.value)
         assert file.read_text() == text
 
+    @pytest.mark.parametrize(
+        "newer", [signed(os.getppid()), signed(os.getpid()), ""], ids=["another", "own", "begun"]
+    )
+    def test_a_slow_one_does_not_take_away_what_has_replaced_a_dead_mark(self, tmp_path, monkeypatch, newer):
+        """Both have seen the same dead mark; the other one was faster and holds the folder by now."""
+        file = self.mark(tmp_path, signed(NO_PROCESS))
+        looked = locking._is_dead
+
+        def slowly(seen, mark):
+            dead = looked(seen, mark)
+            if seen == file and dead:
+                file.unlink()
+                file.write_text(newer)
+                locking._held.add(file)
+            return dead
+
+        monkeypatch.setattr(locking, "_is_dead", slowly)
+        try:
+            with pytest.raises(InputError), locked(tmp_path / "results", wait=0.0):
+                raise AssertionError("two hold it")
+        finally:
+            locking._held.discard(file)
+        assert file.read_text() == newer
+        assert list(tmp_path.iterdir()) == [file]
+
+    def test_a_mark_that_is_another_s_by_now_is_left(self, tmp_path):
+        file = hidden(tmp_path / "results", locking.MARK)
+        with locked(tmp_path / "results"):
+            file.rename(tmp_path / "deleted by hand")
+            file.write_text(signed(os.getppid()))
+        assert file.read_text() == signed(os.getppid())
+
 
 def test_a_file_system_without_locks_gets_a_mark(tmp_path, monkeypatch):
     if locking.fcntl is None:

@@ -110,3 +110,9 @@ class TestRevision:
 
     def test_an_unknown_distribution_has_no_version(self):
         assert module._version("no such distribution") == "unknown"
+
+
+def test_notes_on_measured_files_are_no_losses(record):
+    content = manifest(replace(record, notes=(("lab.csv", "read as text"),)), {})
+    assert content["notes"] == [{"what": "lab.csv", "note": "read as text"}]
+    assert "notes" not in manifest(record, {})

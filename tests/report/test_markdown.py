@@ -3,6 +3,7 @@ from dataclasses import replace
 
 import pytest
 
+from eosmuster.record import CAUSE_FOUND
 from eosmuster.report.markdown import LIMIT, summary_markdown
 
 BARE_PIPE = re.compile(r"(?<!\\)\|")
@@ -89,8 +90,8 @@ def test_temperatures_deviate_in_kelvin_and_densities_read_in_the_display_unit(b
     density = block("alphane", name="liquid_density", unit="mol/m3", states=3, seed=4)
     record = record_of([boiling, density])
     text = summary_markdown(replace(record, display={"density": "kg/m3"}))
-    assert re.search(r"\| boiling_temperature \| alphane .* \| [+-][\d.]+ K \| [\d.]+ K \|", text)
-    assert re.search(r"\| liquid_density \| alphane .* \| kg/m3 \| [+-][\d.]+ % \|", text)
+    assert re.search(r"\| boiling temperature \| alphane .* \| [+-][\d.]+ K \| [\d.]+ K \|", text)
+    assert re.search(r"\| saturated liquid density \| alphane .* \| kg/m3 \| [+-][\d.]+ % \|", text)
     assert "| mol/m3 |" in summary_markdown(replace(record, display={"density": "kg/m3"}, constants={}))
 
 
@@ -154,7 +155,20 @@ def test_tolerances_are_told_with_their_reasons(record):
     band = {"above_reduced_temperature": 0.7, "below_reduced_temperature": 0.9}
     plain = {"property": "boiling_temperature", "limit": "0.5 K", "below_reduced_temperature": None}
     text = summary_markdown(replace(record, decision={"rule": "simple", "tolerances": [tolerance | band, plain]}))
-    row = r"| liquid_density | 6 % | associating, T/Tc from 0.7, T/Tc below 0.9 | invented \| reason |"
+    row = r"| saturated liquid density | 6 % | associating, T/Tc from 0.7, T/Tc below 0.9 | invented \| reason |"
     assert row in text
-    assert "| boiling_temperature | 0.5 K | everywhere |  |" in text
+    assert "| boiling temperature | 0.5 K | everywhere |  |" in text
     assert_tables_are_whole(text)
+
+
+def test_remedies_are_not_cut_and_notes_have_their_own_heading(record):
+    why = "column 'p' " + "why " * 100 + "declare a unit"
+    conflicts = (("alphane", "x", "a and b disagree"), ("alphane", "x", f"{CAUSE_FOUND}gauge pressure"))
+    changed = replace(record, left_out=(("lab.csv", why),), notes=(("lab.csv", "read as text"),), conflicts=conflicts)
+    text = summary_markdown(changed)
+    assert f"| lab.csv | {why} |" in text
+    left_out, notes = text.partition("## Left out")[2].split("## Notes on measured files")
+    assert "read as text" not in left_out
+    assert "| lab.csv | read as text |" in notes
+    assert notes.index(CAUSE_FOUND) < notes.index("a and b disagree")
+    assert "## Notes on measured files" not in summary_markdown(record)

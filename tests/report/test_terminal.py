@@ -43,13 +43,13 @@ def test_says_where_the_best_candidate_is_inside_of_the_fluids_it_does_not_hold(
     lines = lines_of(replace(record, windows=windows, summary=record.summary[:-1]))
     assert "  fluids held, of 3: PR 1" in lines
     assert "  where PR is inside, degC: gammol nowhere, betane -62.65 to 67.1" in lines
-    assert "  no candidate holds 2 fluids: gammol, betane" in lines
+    assert "  held by no candidate, 2 fluids: gammol, betane" in lines
 
 
 def test_nothing_held_is_said_with_what_comes_nearest(block, record_of):
     verdict = np.array([[1, 1, 1, 1], [0, 1, 1, 1]], dtype=np.int8)
     record = record_of([replace(block(states=4), verdict=verdict)])
-    assert "  no candidate holds it for 1 fluid; nearest: SRK, 25 % of its points inside" in lines_of(record)
+    assert "  no candidate holds it; nearest: SRK, 25 % of its points inside" in lines_of(record)
 
 
 @pytest.mark.parametrize("width", [40, 72, 100])
@@ -99,10 +99,33 @@ def test_saturation_table_fits_and_footnotes_what_is_missing():
     for width in (80, 100):
         lines = saturation_table(rows, headers, width).split("\n")
         assert max(map(cells_of, lines)) <= width
-        assert lines[2].split()[:2] == ["PR", "9.98173"]
-        assert [line.split()[-1] for line in lines[4:7]] == ["[1]", "[1]", "[2]"]
+        rule = next(i for i, line in enumerate(lines) if line.startswith("---"))
+        assert lines[rule + 1].split()[:2] == ["PR", "9.98173"]
+        assert [line.split()[-1] for line in lines[rule + 3 : rule + 6]] == ["[1]", "[1]", "[2]"]
         assert lines[-1] == "[2] another note"
     assert "[" not in saturation_table(rows[:1], headers)
+
+
+@pytest.mark.parametrize("width", [40, 50, 60, 70, 80])
+def test_no_unit_is_cut_on_a_narrow_terminal(width):
+    rows = [SaturationRow("dippr101-perry-2008", *[0.868395] * 5), SaturationRow("PR", *[24.0171] * 5, "a note")]
+    headers = ["", "p_sat, bar", "liquid, kg/m3", "vapor, kg/m3", "h_vap, kJ/mol", "fugacity, bar"]
+    text = saturation_table(rows, headers, width)
+    above, _, below = text.partition("---")
+    assert max(map(cells_of, text.split("\n"))) <= width
+    assert "…" not in above
+    left_out = " ".join(below.partition("left out, for want of room: ")[2].split()).split(", ")
+    for header in headers[1:]:
+        name, unit = header.split(", ")
+        assert (name in above) != (name in left_out)
+        assert name not in above or unit in above
+
+
+def test_a_list_of_fluids_that_has_no_room_is_left_out(block, record_of):
+    record = record_of([block("alphane", ("a candidate with a long name",), 9)])
+    assert any("fluids held" in line for line in lines_of(record, 100))
+    for width in range(40, 100):
+        assert not [line for line in lines_of(record, width) if line.endswith(("fluids h…", "fluids…", "fluids"))]
 
 
 def test_importing_the_reports_loads_nothing_heavy():

@@ -13,12 +13,12 @@ def test_no_line_of_a_table_is_wider_than_asked(nasty_names, width):
 
 def test_more_columns_than_fit_are_cut_off_not_wrapped():
     table = plain_table([f"column {i}" for i in range(60)], [[i * 1000.5 for i in range(60)]], 80)
-    assert [cells_of(line) <= 80 for line in table.split("\n")] == [True] * 3
+    assert [cells_of(line) <= 80 for line in table.split("\n")] == [True] * 4
 
 
 def test_names_give_way_before_numbers():
     table = plain_table(["model", "p, bar"], [["a name that is far too long for this", 12.34567]], 24)
-    assert table.split("\n")[2] == "a name that is…    12.35"
+    assert table.split("\n")[3] == "a name that is f…  12.35"
 
 
 def test_columns_of_numbers_are_right_aligned_with_gaps():
@@ -78,3 +78,14 @@ def test_shortened_keeps_as_much_as_fits(text, width):
     whole = max(n for n in range(len(text) + 1) if cells_of(text[:n]) <= max(width - 1, 0))
     expected = text if cells_of(text) <= width else (text[:whole].rstrip() + "…")[:width]
     assert shortened(text, width) == expected
+
+
+def test_headers_are_broken_over_lines_before_anything_is_cut():
+    table = plain_table(["", "liquid, kg/m3", "h_vap, kJ/mol"], [["SRK", 539.621, 24.1888]], 20)
+    assert [line.rstrip() for line in table.split("\n")] == [
+        "     liquid,  h_vap,",
+        "       kg/m3  kJ/mol",
+        "---  -------  ------",
+        "SRK    539.6   24.19",
+    ]
+    assert plain_table(["", "h_vap, kJ/mol"], [["SRK", 24.2]], 30).split("\n")[0] == "     h_vap, kJ/mol"

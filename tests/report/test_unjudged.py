@@ -6,8 +6,9 @@ from dataclasses import replace
 
 import numpy as np
 
-from eosmuster.record import POINT_VERDICTS
+from eosmuster.record import CAUSE_FOUND, POINT_VERDICTS
 from eosmuster.report import words
+from eosmuster.report.answer import answer
 from eosmuster.report.failing import FailingRows
 from eosmuster.report.markdown import summary_markdown
 from eosmuster.report.terminal import terminal_summary
@@ -40,7 +41,7 @@ def test_a_fluid_without_reference_is_said_to_be_unjudged(block, record_of):
     [view] = overviews(record)
     assert view.unjudged == ("silentane",)
     assert view.unheld == ()
-    assert words.answer(record, view)[1:] == [
+    assert answer(record, view)[1:] == [
         "holds for 1 fluid judged: PR, SRK",
         "nothing judged, no reference: 1 fluid: silentane",
     ]
@@ -56,8 +57,30 @@ def test_a_fluid_without_reference_is_said_to_be_unjudged(block, record_of):
 def test_where_nothing_was_judged_no_share_is_given(block, record_of):
     record = record_of_blocks(record_of, unjudged(block(states=3)))
     [view] = overviews(record)
-    assert words.answer(record, view)[1:] == ["nothing was judged: no reference has a value at any state"]
+    assert answer(record, view)[1:] == ["nothing was judged: no reference has a value at any state"]
     assert "0 %" not in terminal_summary(record, None)
+
+
+def test_the_next_reference_answers_where_the_first_has_no_value(block, record_of):
+    """A plan's first reference may know a fluid, and yet have no value at any of the states."""
+    one = block(states=3)
+    first, other = unjudged(one, "alphane"), replace(held(one), reference_source="handbook:x")
+    record = replace(record_of_blocks(record_of, first, other), references=("coolprop", "handbook"))
+    [view] = overviews(record)
+    assert view.unjudged == ()
+    assert answer(record, view)[1:] == ["holds for 1 fluid: PR, SRK"]
+    assert view.standings[0].held_by_all == 1  # a reference without a value is no other opinion
+    assert words.legend(record) == "held: every judged point inside, against handbook"
+    both = replace(
+        record_of_blocks(record_of, held(one), replace(held(one), component="betane")), references=("a", "b")
+    )
+    sources = ("a", "a", "b:x", "b:x")
+    rows = [replace(row, reference_source=source) for row, source in zip(both.summary, sources, strict=True)]
+    assert words.legend(replace(both, summary=tuple(rows))) == (
+        "held: every judged point inside, against the first reference with a value (a, then b); by all: against each"
+    )
+    known = record_of_blocks(record_of, held(one))
+    assert words.legend(known) == "held: every judged point inside, against coolprop"
 
 
 def test_what_is_left_out_is_named_once_and_kept_apart(block, record_of):
@@ -89,3 +112,19 @@ def test_a_worst_point_of_a_single_phase_names_temperature_and_pressure(block, r
     record = replace(record_of([one]), display={"temperature": "degC", "pressure": "bar"})
     line = FailingRows(record, ["outside"]).line(record.summary[0])
     assert line.endswith("at worst +5 % at 10 degC and 5 bar (limit 2 %)")
+
+
+def test_reasons_and_causes_are_told_whole_up_to_a_few(block, record_of):
+    """The remedy stands at the end of a reason, so nothing of it may be cut."""
+    record = record_of_blocks(record_of, held(block(states=3)))
+    reasons = tuple((f"lab{i}.csv", f"reason {i} " + "why " * 40 + "declare a unit") for i in range(5))
+    cause = ("alphane", "saturation_pressure", f"{CAUSE_FOUND}lab.csv: " + "x " * 60 + "gauge stored as absolute")
+    text = terminal_summary(replace(record, left_out=reasons, conflicts=(cause,)), None, 72)
+    joined = " ".join(text.split())
+    assert [f"lab{i}.csv: reason {i} " + "why " * 40 + "declare a unit" in joined for i in range(5)] == [True] * 3 + [
+        False,
+        False,
+    ]
+    assert "2 more in manifest.json" in joined
+    assert cause[2] in joined
+    assert max(map(len, text.split("\n"))) <= 72

@@ -11,6 +11,7 @@ import pytest
 
 from eosmuster.errors import InputError
 from eosmuster.record import Region, Ring, SummaryRow
+from eosmuster.report.sizes import blocks_by_key, passing_limit
 from eosmuster.report.views import overviews
 from eosmuster.report.workbook import cell_text, write_workbook
 
@@ -35,10 +36,11 @@ def rows(sheet):
 
 def test_the_summary_is_that_of_the_record(record, book):
     found = rows(book(record)["summary"])
-    assert list(found[0]) == [field.name for field in fields(SummaryRow)]
+    names = [field.name for field in fields(SummaryRow)]
+    assert list(found[0])[: len(names)] == names
     for shown, row in zip(found, record.summary, strict=True):
-        for name, value in shown.items():
-            held = getattr(row, name)
+        for name in names:
+            value, held = shown[name], getattr(row, name)
             if isinstance(held, str):
                 assert (value or "") == held
             elif math.isnan(held):
@@ -54,6 +56,25 @@ def test_the_answer_counts_what_the_views_count(record, book):
         assert (shown["property"], shown["candidate"]) == (label, standing.candidate)
         assert (shown["held"], shown["points inside"]) == (standing.held, standing.inside)
         assert shown["unavailable"] == len(standing.fluids["unavailable"])
+        assert shown["not judged"] == len(standing.fluids["unjudged"])
+
+
+def test_what_is_read_in_a_unit_of_its_own_is_told_in_it(record, book):
+    opened = book(record)
+    for shown in rows(opened["answer"]):
+        in_kelvin = shown["property"] == "boiling temperature"
+        assert shown["its unit"] == (("K" if in_kelvin else "%") if shown["largest deviation"] is not None else None)
+        standing = next(
+            s for v in overviews(record) if v.label == shown["property"] for s in v.standings
+            if s.candidate == shown["candidate"]
+        )  # fmt: skip
+        if shown["largest deviation"] is not None:
+            assert shown["largest deviation"] == pytest.approx(standing.largest, rel=1e-15)
+    blocks = blocks_by_key(record.blocks)
+    for shown, row in zip(rows(opened["summary"]), record.summary, strict=True):
+        assert shown["unit of these"] == ("K" if row.property == "boiling_temperature" else "%")
+        wanted = passing_limit(blocks, row, "guarded")
+        assert shown["passing limit"] == (None if math.isnan(wanted) else pytest.approx(wanted, rel=1e-15))
 
 
 def test_names_never_become_formulas_links_or_numbers(block, record_of, nasty_names, book):

@@ -8,11 +8,11 @@ from typing import NamedTuple, TypeVar
 
 import numpy as np
 
-from eosmuster.quantities import PROPERTIES, from_si
+from eosmuster.quantities import PROPERTIES
 from eosmuster.record import POINT_VERDICTS, Block, Record, Region, SummaryRow, WindowRow
 from eosmuster.report import words
+from eosmuster.report.sizes import blocks_by_key
 from eosmuster.report.text import list_within, number, one_line, some
-from eosmuster.report.views import blocks_by_key
 
 _MOST_WINDOWS = 4
 _LABEL = 13
@@ -45,12 +45,16 @@ class FailingRows:
     ----------
     record : the run
     fail_on : verdicts of points, and ``unavailable``, that fail
+
+    Attributes
+    ----------
+    blocks : those of the record, by component, property and reference source
     """
 
     def __init__(self, record: Record, fail_on: Sequence[str]) -> None:
         self._record = record
         self._fail_on = tuple(fail_on)
-        self._blocks = blocks_by_key(record)
+        self.blocks = blocks_by_key(record.blocks)
         self._windows = _by_key(record.windows)
         self._regions = _by_key(record.regions)
 
@@ -111,7 +115,7 @@ class FailingRows:
         block, candidate, state = place
         at, reduced, predicted, reference, unit, deviation, limit, _ = words.point(self._record, row, place)
         pressure = float(block.pressure[state])
-        under = "" if np.isnan(pressure) else f", {self._pressure(pressure)}"
+        under = "" if np.isnan(pressure) else f", {words.shown_pressure(self._record, pressure, 6)}"
         yield (
             "worst point",
             f"at {at.partition(' (')[0]} {words.temperature_unit(self._record)} (T/Tc {reduced}){under}",
@@ -130,10 +134,6 @@ class FailingRows:
         if note:
             yield "note", note
 
-    def _pressure(self, pascal: float) -> str:
-        unit = self._record.display.get("pressure", "Pa")
-        return f"{number(from_si(pascal, unit, 'pressure'), 6)} {unit}"
-
     def _without_value(self, row: SummaryRow) -> Iterator[tuple[str, str]]:
         """Say where failing points have no deviation, and why."""
         block, candidate = self._of(row)
@@ -149,10 +149,7 @@ class FailingRows:
                 yield verdict.replace("_", " "), f"{some(states.size, 'point')} {span} {unit}: {why}"
 
     def _where_inside(self, row: SummaryRow) -> str:
-        unit = words.temperature_unit(self._record)
-        regions = [
-            f"{words.region_span(self._record, region)}, {unit}" for region in self._regions.get(_key(row), ())
-        ]
+        regions = [words.region_span(self._record, region) for region in self._regions.get(_key(row), ())]
         found = regions or [self._window(window) for window in self._windows.get(_key(row), ())]
         more = [f"{len(found) - _MOST_WINDOWS} more windows"] if len(found) > _MOST_WINDOWS else []
         counted = f"at {row.inside} of {some(row.points, 'state')}" if row.inside else "at none of the states"
@@ -164,7 +161,7 @@ class FailingRows:
         return f"{' to '.join(ends)} {words.temperature_unit(self._record)} (ends: {why})"
 
     def _of(self, row: SummaryRow) -> tuple[Block, int]:
-        block = self._blocks[row.component, row.property, row.reference_source]
+        block = self.blocks[row.component, row.property, row.reference_source]
         return block, block.candidates.index(row.candidate)
 
     def _worst(self, row: SummaryRow) -> Place | None:

@@ -22,13 +22,13 @@ from eosmuster.report.manifest import NAME as MANIFEST
 from eosmuster.report.manifest import file_hash, manifest, manifest_text
 from eosmuster.report.markdown import summary_markdown
 from eosmuster.report.points import write_points
+from eosmuster.report.record_file import NAME as RECORD
 from eosmuster.report.regions import write_regions, write_regions_json
 from eosmuster.report.tables import write_summary, write_windows
+from eosmuster.report.workbook import NAME as WORKBOOK
 
 POINTS = "points.csv"
 DOSSIER = "dossier.html"
-WORKBOOK = "results.xlsx"
-RECORD = "record.npz"  # of a part of a run: all parts together give the whole
 
 View = Callable[[Record, BinaryIO], None]
 
@@ -71,9 +71,14 @@ VIEWS: dict[str, View] = {
 A view that needs a heavy library, or is rarely asked for, is a function here that imports it when called.
 """
 
+
+def _has_regions(record: Record) -> bool:
+    return record.regions_asked and any(block.property in SINGLE_PHASE for block in record.blocks)
+
+
 ONLY_IF: dict[str, Callable[[Record], bool]] = {
-    "regions.csv": lambda record: any(block.property in SINGLE_PHASE for block in record.blocks),
-    "regions.json": lambda record: any(block.property in SINGLE_PHASE for block in record.blocks),
+    "regions.csv": _has_regions,
+    "regions.json": _has_regions,
     RECORD: lambda record: record.part is not None,
 }
 """Files that not every record has: name -> whether this one does. Any other view is always written."""

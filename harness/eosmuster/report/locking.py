@@ -12,6 +12,7 @@ import errno
 import hashlib
 import os
 import socket
+import threading
 import time
 from collections.abc import Iterator
 from datetime import UTC, datetime
@@ -38,6 +39,7 @@ _UNFINISHED = 60.0  # seconds after which a mark without a name in it is nobody'
 _UNKNOWN_THERE = {errno.ENOLCK, errno.ENOSYS, errno.ENOTSUP, errno.EOPNOTSUPP, errno.EINVAL}
 
 _held: set[Path] = set()  # marks of this process
+_marking = threading.Lock()  # a thread sees a mark and its entry there, or neither
 
 
 def hidden(target: Path, kind: str) -> Path:
@@ -136,36 +138,55 @@ def _flock(file: Path) -> int | None:
 
 def _mark(file: Path) -> int | None:
     """Try to set a mark; gives its descriptor, None if another's is there."""
+    with _marking:
+        try:
+            lock = os.open(file, os.O_CREAT | os.O_EXCL | os.O_WRONLY, 0o666)
+        except FileExistsError:
+            if _is_dead(file, file):
+                with contextlib.suppress(OSError):  # where that is forbidden while it is held open, its holder lives
+                    _bury(file)
+            return None
+        _held.add(file)
     try:
-        lock = os.open(file, os.O_CREAT | os.O_EXCL | os.O_WRONLY, 0o666)
-    except FileExistsError:
-        if _is_dead(file):
-            with contextlib.suppress(OSError):  # where that is forbidden while it is held open, its holder lives
-                file.unlink()
-        return None
-    _held.add(file)
-    try:
-        _sign(lock, file)
+        _write_holder(lock)
     except BaseException:
         _give_back(lock, file, kept=False)
         raise
     return lock
 
 
+def _bury(file: Path) -> None:
+    """Take a dead mark away, under a name of this thread's own.
+
+    Another that waits may have seen the same dead mark, and have set its own in its place by now. So what was taken
+    is looked at again where nobody else does, and a living one is put back, though never over a third one's.
+    """
+    own = file.with_name(f"{file.name}-{os.getpid()}-{threading.get_ident()}")
+    file.rename(own)
+    try:
+        if not _is_dead(own, file):
+            os.link(own, file)
+    finally:
+        own.unlink()
+
+
 def _give_back(lock: int, file: Path, kept: bool) -> None:
     """Take the file away while it is still locked, so that nobody waits on one that is gone; then unlock."""
+    there = True
     try:
         with contextlib.suppress(OSError):
             if kept:
                 fcntl.flock(lock, fcntl.LOCK_EX | fcntl.LOCK_NB)  # no news to its holder; nobody else goes on
-                if _is_still(file, lock) and _is_ours(file):
-                    file.unlink()
+            there = _is_still(file, lock)  # a mark may have been deleted by hand, and be another's now
+            if kept and there and _is_ours(file):
+                file.unlink()
     finally:
         os.close(lock)
     if not kept:
-        _held.discard(file)
-        with contextlib.suppress(OSError):
-            file.unlink()
+        with _marking, contextlib.suppress(OSError):
+            _held.discard(file)
+            if there:
+                file.unlink()
 
 
 def _tidy(file: Path) -> None:
@@ -194,8 +215,12 @@ def _sign(lock: int, file: Path) -> None:
     """Write into an open lock file who holds it."""
     if not _is_ours(file):
         raise FileExistsError(errno.EEXIST, f"{file.name} is in the way")
-    now = datetime.now(UTC).isoformat(timespec="seconds")
     os.ftruncate(lock, 0)
+    _write_holder(lock)
+
+
+def _write_holder(lock: int) -> None:
+    now = datetime.now(UTC).isoformat(timespec="seconds")
     os.write(lock, f"{_SIGNATURE}process {os.getpid()} on {socket.gethostname()} since {now}\n".encode())
 
 
@@ -215,8 +240,8 @@ def _holder(file: Path) -> tuple[str, int, str]:
     return "another process", 0, ""
 
 
-def _is_dead(file: Path) -> bool:
-    """Tell whether a mark's process is no more; when in doubt, it is alive."""
+def _is_dead(file: Path, mark: Path) -> bool:
+    """Tell whether the process of a mark, now called `file`, is no more; when in doubt, it is alive."""
     _, process, host = _holder(file)
     if not process:
         with contextlib.suppress(OSError):
@@ -225,7 +250,7 @@ def _is_dead(file: Path) -> bool:
     if host != socket.gethostname():
         return False
     if process == os.getpid():
-        return file not in _held  # an earlier process of that number
+        return mark not in _held  # an earlier process of that number
     return os.name != "posix" or not is_running(process)
 
 

@@ -4,21 +4,22 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 
-from eosmuster.record import Record, SummaryRow
-from eosmuster.report import words
+from eosmuster.record import Record, SummaryRow, WindowRow
+from eosmuster.report import mdremarks, words
+from eosmuster.report.answer import answer
+from eosmuster.report.coverage import judged_span
 from eosmuster.report.mdtable import Room, escaped, table
-from eosmuster.report.text import list_within, number
-from eosmuster.report.views import (
-    Cell,
-    Overview,
-    Standing,
+from eosmuster.report.rows import worst_rows
+from eosmuster.report.sizes import (
+    Blocks,
     blocks_by_key,
-    overviews,
+    deviation_unit,
+    passing_limit,
     signed_maximum,
-    unavailable_reasons,
-    unsolved_reasons,
-    worst_rows,
+    surely_passing_limit,
 )
+from eosmuster.report.text import list_within, number
+from eosmuster.report.views import Cell, Overview, Standing, overviews
 
 LIMIT = 2**20
 """Bytes a CI step summary may have; `summary_markdown` stays below."""
@@ -57,12 +58,14 @@ def _sections(record: Record, room: Room) -> Iterator[str]:
     yield from _largest_deviations(record, views, room)
     yield from _not_held(record, views, room)
     yield from _windows(record, views, room)
-    yield from _failures(record, room)
-    yield from _remarks(record, room)
+    yield from mdremarks.unsolved(record, room)
+    yield from mdremarks.no_reference(record, room)
+    yield from mdremarks.unavailable(record, room)
+    yield from mdremarks.remarks(record, room)
 
 
 def _answer(record: Record, view: Overview) -> Iterator[str]:
-    heading, *sentences = (escaped(line, 600) for line in words.answer(record, view, 400))
+    heading, *sentences = (escaped(line, 600) for line in answer(record, view, 400))
     yield f"**{heading}**\n"
     yield from (f"- {sentence}" for sentence in sentences)
     yield ""
@@ -78,7 +81,9 @@ def _tolerances(record: Record, room: Room) -> Iterator[str]:
 def _coverage(record: Record, view: Overview, room: Room) -> Iterator[str]:
     yield f"\n## {escaped(view.label)}: candidates, worst first\n"
     sources = escaped(list_within(view.sources, 400) or "none")
-    yield f"References: {sources}; {view.limit_text}. {words.legend(record)}.\n"
+    said = (view.limit_text, words.legend(record, view.name))
+    limit, legend = (escaped(text, 600) for text in said)
+    yield f"References: {sources}; {limit}. {legend}. {words.RISK}.\n"
     headers = [
         "candidate",
         "held",
@@ -90,6 +95,7 @@ def _coverage(record: Record, view: Overview, room: Room) -> Iterator[str]:
         "points",
         "points inside",
         "unsolved",
+        "risk, %",
     ]
     rows = [_coverage_row(standing, room) for standing in view.standings]
     yield from table(
@@ -111,6 +117,7 @@ def _coverage_row(standing: Standing, room: Room) -> list[str]:
         str(standing.points),
         words.percent(standing.share) if standing.points else "-",
         str(standing.unsolved),
+        words.risk(standing.risk),
         words.largest(standing),
         escaped(standing.worst.component if standing.worst else "-", room.text),
         escaped(list_within(standing.fluids["inside"], room.text)),
@@ -132,7 +139,8 @@ def _matrix(view: Overview, room: Room) -> Iterator[str]:
     yield from table(["fluid", *(escaped(name, room.text) for name in shown)], rows, room.rows, "summary.csv")
     if len(best_first) > len(shown):
         left = len(best_first) - len(shown)
-        yield f"The {left} candidates that hold the fewest fluids are left out; all are in summary.csv.\n"
+        which = "candidate that holds" if left == 1 else f"{left} candidates that hold"
+        yield f"The {which} the fewest fluids {'is' if left == 1 else 'are'} left out; all are in summary.csv.\n"
 
 
 def _mark(cell: Cell | None) -> str:
@@ -147,13 +155,14 @@ def _mark(cell: Cell | None) -> str:
 def _largest_deviations(record: Record, views: Sequence[Overview], room: Room) -> Iterator[str]:
     yield "## Largest deviations\n"
     yield "The worst point of each candidate over all fluids.\n"
-    blocks = blocks_by_key(record)
+    blocks = blocks_by_key(record.blocks)
     rows: list[list[str]] = []
     for view in views:
-        worst = [standing.worst for standing in view.standings if standing.worst is not None]
+        worst = sorted((s for s in view.standings if s.worst is not None), key=lambda s: -s.largest)
         rows += [
-            [*_names(row, room), *words.point(record, row, signed_maximum(blocks, row))]
-            for row in sorted(worst, key=lambda row: -abs(row.max_pct))
+            [*_names(s.worst, room), *words.point(record, s.worst, signed_maximum(blocks, s.worst))]
+            for s in worst
+            if s.worst is not None
         ]
     unit = words.temperature_unit(record)
     headers = ["property", "fluid", "candidate", "reference", f"at, {unit}", "T/Tc", "predicted", "reference value"]
@@ -164,32 +173,39 @@ def _largest_deviations(record: Record, views: Sequence[Overview], room: Room) -
 def _not_held(record: Record, views: Sequence[Overview], room: Room) -> Iterator[str]:
     yield "## Rows that do not hold, worst first\n"
     yield "Deviations in %; the AAD goes with the grid beside it. A bias as large as the AAD marks a pure offset.\n"
+    yield f"{words.PASSING}.\n"
     unit = words.temperature_unit(record)
     headers = ["property", "fluid", "candidate", "reference", "points", f"from, {unit}", f"to, {unit}", "AAD", "bias"]
     headers += ["RMS", "median", "P95", "maximum", f"at, {unit}", "inside", "undecided", "outside", "unsolved"]
-    headers += ["passes at limit", "verdict"]
+    headers += ["no reference"]
+    blocks = blocks_by_key(record.blocks)
     for view in views:
-        worst = worst_rows(row for row in record.summary if row.property == view.name and row.verdict != "inside")
-        if worst:
-            rows = [_statistics(record, row, room) for row in worst[: room.rows // 4 + 1]]
+        of_view = (row for row in record.summary if row.property == view.name and row.verdict != "inside")
+        if worst := worst_rows(of_view, blocks):
+            own, _ = deviation_unit(view.name)
+            last = [f"passes at limit, {own}", f"surely at, {own}", "risk, %", "verdict"]
+            rows = [_statistics(record, blocks, row, room) for row in worst[: room.rows // 4 + 1]]
             rows += [[]] * (len(worst) - len(rows))
-            yield from table(headers, rows, room.rows // 4 + 1, "summary.csv", numbers_from=4)
+            yield from table([*headers, *last], rows, room.rows // 4 + 1, "summary.csv", numbers_from=4)
 
 
 def _names(row: SummaryRow, room: Room) -> list[str]:
-    return [escaped(n, room.text) for n in (row.property, row.component, row.candidate, row.reference_source)]
+    names = (words.property_label(row.property), row.component, row.candidate, row.reference_source)
+    return [escaped(n, room.text) for n in names]
 
 
-def _statistics(record: Record, row: SummaryRow, room: Room) -> list[str]:
+def _statistics(record: Record, blocks: Blocks, row: SummaryRow, room: Room) -> list[str]:
     deviations = (row.aad_pct, row.bias_pct, row.rms_pct, row.median_pct, row.p95_pct, row.max_pct)
     return [
         *_names(row, room),
         str(row.points),
-        *(number(words.shown_temperature(record, t), 5) for t in (row.from_K, row.to_K)),
+        *(number(words.shown_temperature(record, t), 5) for t in judged_span(blocks, row)),
         *(number(float(d), 3) for d in deviations),
         number(words.shown_temperature(record, row.max_at_K), 5),
-        *(str(n) for n in (row.inside, row.undecided, row.outside, row.unsolved)),
-        number(float(row.passing_limit_pct), 3),
+        *(str(n) for n in (row.inside, row.undecided, row.outside, row.unsolved, row.no_reference)),
+        number(passing_limit(blocks, row, record.decision.get("rule")), 3),
+        number(surely_passing_limit(blocks, row), 3),
+        words.risk(row.false_acceptance_pct),
         row.verdict,
     ]
 
@@ -202,7 +218,7 @@ def _windows(record: Record, views: Sequence[Overview], room: Room) -> Iterator[
     windows = [w for w in record.windows if (w.property, w.candidate) in best]
     rows = [
         [
-            *(escaped(n, room.text) for n in (w.property, w.candidate, w.component, w.reference_source)),
+            *(escaped(n, room.text) for n in _of_window(w)),
             *(number(words.shown_temperature(record, t), 5) for t in (w.from_K, w.to_K)),
             *(escaped(end.replace("_", " ")) for end in (w.from_end, w.to_end)),
         ]
@@ -212,62 +228,5 @@ def _windows(record: Record, views: Sequence[Overview], room: Room) -> Iterator[
     yield from table(headers, rows, room.rows, "windows.csv", numbers_from=4)
 
 
-def _failures(record: Record, room: Room) -> Iterator[str]:
-    yield "## Unsolved points\n"
-    unsolved = [
-        [
-            *(escaped(text, room.text) for text in (prop, candidate)),
-            escaped(note or "no reason given"),
-            str(points),
-            escaped(list_within(fluids, 2 * room.text)),
-        ]
-        for prop, candidate, note, points, fluids in unsolved_reasons(record)
-    ]
-    if unsolved:
-        headers = ["property", "candidate", "why", "points", "fluids"]
-        yield from table(headers, unsolved, room.rows, "points.csv", numbers_from=5)
-    else:
-        yield "None.\n"
-    yield "## Unavailable\n"
-    yield "What a candidate cannot do at all for a fluid.\n"
-    unavailable = [
-        [
-            escaped(candidate, room.text),
-            escaped(why or "no reason given"),
-            str(len(f)),
-            escaped(list_within(f, 2 * room.text)),
-        ]
-        for candidate, why, f in unavailable_reasons(record.summary)
-    ]
-    if unavailable:
-        yield from table(
-            ["candidate", "why", "fluids", "which"], unavailable, room.rows, "summary.csv", numbers_from=4
-        )
-    else:
-        yield "Nothing.\n"
-
-
-def _remarks(record: Record, room: Room) -> Iterator[str]:
-    yield "## Left out\n"
-    left_out = [[escaped(what, room.text), escaped(why, 2 * room.text)] for what, why in record.left_out]
-    if left_out:
-        yield from table(["what", "why"], left_out, room.rows, "manifest.json", numbers_from=2)
-    else:
-        yield "Nothing.\n"
-    if record.conflicts:
-        yield "## Contested references\n"
-        yield "References that disagree by more than they may; verdicts are given against each of them.\n"
-        conflicts = [[escaped(text, 6 * room.text) for text in conflict] for conflict in record.conflicts]
-        yield from table(
-            ["component", "property", "who stands alone"], conflicts, room.rows, "manifest.json", numbers_from=3
-        )
-    notes = [
-        [escaped(component, room.text), escaped(note, 3 * room.text)]
-        for component, constants in record.constants.items()
-        for note in constants.get("notes", ())
-    ]
-    if notes:
-        yield "## Notes on constants\n"
-        yield from table(["component", "note"], notes, room.rows, "manifest.json", numbers_from=2)
-    yield "## Cautions\n"
-    yield from (f"- {escaped(caution, 600)}" for caution in words.cautions(record))
+def _of_window(window: WindowRow) -> tuple[str, str, str, str]:
+    return words.property_label(window.property), window.candidate, window.component, window.reference_source

@@ -8,6 +8,8 @@ from dataclasses import dataclass
 
 from eosmuster.report.text import one_line, shortened
 
+_BREAK = "&#8203;"  # a space of no width: nothing is seen of it, and no address or mention reaches across it
+_LIVE = re.compile(r"(?i)(?<=:)(?=//)|(?<=www)(?=\.)|(?<=@)")
 # an underscore inside a word means nothing, so names of properties stay readable
 _SPECIAL = re.compile(r"([\\`*\[\]|~]|(?<![A-Za-z0-9])_|_(?![A-Za-z0-9]))")
 
@@ -26,11 +28,12 @@ def escaped(text: object, width: int = 200) -> str:
 
     Examples
     --------
-    >>> print(escaped("a|b\n<script>"))
-    a\|b &lt;script&gt;
+    >>> print(escaped("a|b\n<script>"), escaped("https://x.org"), escaped("@all"))
+    a\|b &lt;script&gt; https:&#8203;//x.org @&#8203;all
     """
     plain = shortened(one_line(text), width)
-    return _SPECIAL.sub(r"\\\1", plain.replace("&", "&amp;").replace("<", "&lt;").replace(">", "&gt;"))
+    inert = _SPECIAL.sub(r"\\\1", plain.replace("&", "&amp;").replace("<", "&lt;").replace(">", "&gt;"))
+    return _LIVE.sub(_BREAK, inert)
 
 
 def table(

@@ -40,12 +40,14 @@ _NOTES = {
     "number of times (even-odd rule), or if it lies on an edge. A candidate without a region is inside nowhere.",
     "share": "Part of the plan's rectangle of temperatures and pressures, by area; pressure by its logarithm where "
     "the plan spaces it so.",
-    "connected": "Number of separate regions; the one given is the largest.",
+    "connected": "Number of separate regions that were found; the one given is the largest. Islands and gaps smaller "
+    "than a cell of the plan's grid may be missed.",
     "reasons": {
         "limit": "the deviation reaches the limit",
         "limit_step": "the limit changes there",
         "undecided": "the uncertainty of the reference changes there",
         "phase_boundary": "the phase changes there",
+        "critical_point": "the critical temperature or pressure of the reference: beyond it there is no such phase",
         "reference_limit": "the range of the reference ends there",
         "no_reference": "the reference has no value beyond",
         "plan_limit": "the plan ends there",

@@ -7,14 +7,20 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
-from eosmuster.record import Record
+from eosmuster.record import CAUSE_FOUND, Record
 from eosmuster.report import words
+from eosmuster.report.answer import answer
+from eosmuster.report.coverage import silence_line, silences
+from eosmuster.report.rows import causes_first, left_out_reasons, unavailable_reasons, unsolved_reasons
 from eosmuster.report.text import cells_of, list_within, number, one_line, plain_table, shortened, some
-from eosmuster.report.views import Overview, Standing, overviews, unavailable_reasons, unsolved_reasons
+from eosmuster.report.views import Overview, Standing, overviews
 
 _MOST_CANDIDATES = 40
 _MOST_REASONS = 5
+_MOST_WHOLE = 3  # reasons that are shown whole
 _LONGEST_NAME = 30
+_NAME_IN_TABLE = 17  # columns a source keeps when a table is narrow: fewer would not tell the references apart
+_NAMES_HELD = 11  # columns below which a list of fluids says nothing
 
 
 @dataclass(frozen=True)
@@ -49,7 +55,7 @@ def terminal_summary(record: Record, folder: Path | None, width: int = 100) -> s
     views = overviews(record)
     lines = [one_line(record.plan_title or record.plan_name), *_wrapped(words.counts(record), width), ""]
     for view in views:
-        heading, *sentences = words.answer(record, view, width - 2)
+        heading, *sentences = answer(record, view, width - 2)
         lines += [heading, *(f"  {sentence}" for sentence in sentences)]
     for view in views:
         lines += ["", *_standings(view, width)]
@@ -72,7 +78,7 @@ def saturation_table(rows: Sequence[SaturationRow], headers: Sequence[str], widt
     ----------
     rows : one a model or reference
     headers : of the six columns before the note, with units, e.g. ``"p_sat, bar"``
-    width : no line is longer
+    width : no line is longer; columns that leave no room for the names are left out, the last first, and named below
 
     Examples
     --------
@@ -96,7 +102,22 @@ def saturation_table(rows: Sequence[SaturationRow], headers: Sequence[str], widt
         for row in rows
     ]
     footnotes = [line for i, note in enumerate(notes, 1) for line in _wrapped(f"[{i}] {note}", width, "    ")]
-    return "\n".join([plain_table([*headers, ""], body, width), *([""] if notes else []), *footnotes])
+    shown = _columns_within(headers, body, width)
+    if missing := [header.partition(",")[0] for header in headers[shown:]]:
+        footnotes += _wrapped(f"left out, for want of room: {', '.join(missing)}", width)
+    table = plain_table([*headers[:shown], ""], [[*row[:shown], row[-1]] for row in body], width)
+    return "\n".join([table, *([""] if footnotes else []), *footnotes])
+
+
+def _columns_within(headers: Sequence[str], body: Sequence[Sequence[str]], width: int) -> int:
+    """Count the columns that fit beside the names and the marks of the footnotes; two stay in any case."""
+    names = max((cells_of(row[0]) for row in body), default=0)
+    taken = min(names, _NAME_IN_TABLE) + 2 + max((len(row[-1]) for row in body), default=0)
+    for count, head in enumerate(headers[1:], 1):
+        taken += 2 + max(map(cells_of, [*(row[count] for row in body), *head.split()]))
+        if taken > width:
+            return max(count, 2)
+    return len(headers)
 
 
 def _values(row: SaturationRow) -> tuple[float, ...]:
@@ -119,10 +140,13 @@ def _standings(view: Overview, width: int) -> Iterator[str]:
     # a count that is nought for every candidate says less than the names it makes room for
     columns = {head: column for head, column in columns.items() if head == "held" or set(column) != {"0"}}
     taken = sum(2 + max(map(cells_of, [head, *column])) for head, column in columns.items())
-    columns["fluids held"] = [_which(s, width - taken) for s in shown]
+    if width - taken >= _NAMES_HELD:
+        columns["fluids held"] = [_which(s, width - taken) for s in shown]
     yield plain_table(list(columns), list(zip(*columns.values(), strict=True)), width)
     if len(shown) < len(view.standings):
-        yield f"{len(view.standings) - len(shown)} candidates that hold fewer fluids are left out; see summary.csv"
+        left = len(view.standings) - len(shown)
+        fewer = "1 candidate that holds" if left == 1 else f"{left} candidates that hold"
+        yield f"{fewer} fewer fluids {'is' if left == 1 else 'are'} left out; see summary.csv"
 
 
 def _which(standing: Standing, width: int) -> str:
@@ -145,8 +169,9 @@ def _failures(record: Record, width: int) -> Iterator[str]:
         yield f"unsolved: {some(sum(group[3] for group in unsolved), 'point')}"
         for prop, candidate, note, points, fluids in unsolved[:_MOST_REASONS]:
             names = list_within(fluids, 30)
-            yield "  " + one_line(f"{candidate} {prop}: {points} ({names}) {note}")
+            yield "  " + one_line(f"{candidate} {words.property_label(prop)}: {points} ({names}) {note}")
         yield from _more(len(unsolved), "points.csv")
+    yield from _wrapped(one_line(silence_line(silences(record))), width)
     unavailable = unavailable_reasons(record.summary)
     if unavailable:
         yield "unavailable, not judged:"
@@ -159,14 +184,26 @@ def _failures(record: Record, width: int) -> Iterator[str]:
     if contested:
         start = f"contested references, {some(len(contested), 'fluid')} (who stands alone: summary.md): "
         yield start + list_within([one_line(f) for f in contested], width - len(start))
+    causes = [s for c, _, s in causes_first(record) if c in swept and s.startswith(CAUSE_FOUND)]
+    yield from _in_whole(causes, width, "summary.md")
     if record.left_out:
         parts = list(dict.fromkeys(what for what, _ in record.left_out))
         yield f"left out: {list_within(parts, width - 30, '; ')} (why: manifest.json)"
+        whys = [f"{list_within(whats, width // 2, '; ')}: {why}" for why, whats in left_out_reasons(record)]
+        yield from _in_whole(whys, width, "manifest.json")
+
+
+def _in_whole(sentences: Sequence[str], width: int, where: str) -> Iterator[str]:
+    """Give the first sentences whole, since they end with what to do, and count the others."""
+    for sentence in sentences[:_MOST_WHOLE]:
+        yield from textwrap.wrap(one_line(sentence), width, initial_indent="  ", subsequent_indent="    ")
+    if len(sentences) > _MOST_WHOLE:
+        yield f"  {len(sentences) - _MOST_WHOLE} more in {where}"
 
 
 def _more(count: int, where: str) -> Iterator[str]:
     if count > _MOST_REASONS:
-        yield f"  {count - _MOST_REASONS} more groups in {where}"
+        yield f"  {some(count - _MOST_REASONS, 'more group')} in {where}"
 
 
 def _wrapped(text: str, width: int, indent: str = "  ") -> list[str]:

@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 import math
+import textwrap
 import unicodedata
 from collections.abc import Iterable, Sequence
 
 ELLIPSIS = "…"
 _NARROWEST = 6  # a name is shortened to this before numbers are
 _GAP = "  "
+_UNSEEN = ("Cc", "Cf", "Cs", "Zl", "Zp")  # controls, formats, lone surrogates, separators of lines
 _FALLBACK = str.maketrans({"…": "~", "°": "d", "–": "-", "−": "-"})
 
 
@@ -31,6 +33,23 @@ def one_line(text: object) -> str:
         elif category not in ("Cf", "Cs"):
             kept.append(character)
     return " ".join("".join(kept).split())
+
+
+def visible(text: str) -> str:
+    r"""Give text with an escape for each character that steers a terminal, turns the reading direction or is no text.
+
+    Unlike `one_line` it loses nothing, so that a path can still be recognized; line breaks stay.
+
+    Examples
+    --------
+    >>> print(visible("rows: a\x1b[31mb\udcff.csv\nrow"))
+    rows: a\x1b[31mb\udcff.csv
+    row
+    """
+    if text.replace("\n", "").isprintable():
+        return text
+    unseen = {c for c in text if c != "\n" and unicodedata.category(c) in _UNSEEN}
+    return text.translate({ord(c): c.encode("unicode_escape").decode("ascii") for c in unseen})
 
 
 def cells_of(text: str) -> int:
@@ -127,7 +146,8 @@ def plain_table(headers: Sequence[str], rows: Iterable[Sequence[object]], width:
     Parameters
     ----------
     headers, rows : a row has as many cells as there are headers; numbers are written as `number` does
-    width : no line is longer; the widest text is shortened first, numbers only if nothing else helps
+    width : no line is longer; headers of several words are broken over lines first, then the widest text is
+        shortened, numbers only if nothing else helps
 
     Returns
     -------
@@ -145,8 +165,11 @@ def plain_table(headers: Sequence[str], rows: Iterable[Sequence[object]], width:
     head = [one_line(h) for h in headers]
     columns = [list(c) for c in zip(head, *body, strict=True)]
     numeric = [all(_is_number(c) for c in column[1:]) and len(column) > 1 for column in columns]
-    widths = _fitted([max(map(cells_of, column)) for column in columns], numeric, width)
-    lines = [_row(row, widths, numeric) for row in [head, ["-" * w for w in widths], *body]]
+    full = [max(map(cells_of, column)) for column in columns]
+    if sum(full) + len(_GAP) * (len(full) - 1) > width:
+        full = [max(map(cells_of, [*column[1:], *column[0].split()]), default=0) for column in columns]
+    widths = _fitted(full, numeric, width)
+    lines = [_row(row, widths, numeric) for row in [*_broken(head, widths), ["-" * w for w in widths], *body]]
     return "\n".join(shortened(line, width) for line in lines)
 
 
@@ -185,6 +208,16 @@ def _fitted(widths: list[int], numeric: list[bool], width: int) -> list[int]:
                 break
             widths[widest] -= 1
     return widths
+
+
+def _broken(head: Sequence[str], widths: Sequence[int]) -> list[list[str]]:
+    """Put headers on as many lines as their widths need, the last words beside the rule."""
+    parts = [
+        textwrap.wrap(h, max(w, 1), break_long_words=False, break_on_hyphens=False)
+        for h, w in zip(head, widths, strict=True)
+    ]
+    deep = max([1, *map(len, parts)])
+    return [list(line) for line in zip(*([""] * (deep - len(part)) + part for part in parts), strict=True)]
 
 
 def _row(cells: Sequence[str], widths: Sequence[int], numeric: Sequence[bool]) -> str:

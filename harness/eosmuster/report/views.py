@@ -1,27 +1,31 @@
 """What the summary rows of a record say together, for every rendering of it.
 
 Nothing is predicted or judged here: verdicts and counts are those of the record. The answer for a fluid is given by
-the plan's first reference that knows it; what holds against every reference as well is counted beside.
+the plan's first reference that has a value for it; what holds against every reference as well is counted beside.
 """
 
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
-from typing import NamedTuple, TypeVar
+from typing import Any, NamedTuple, TypeVar
 
 import numpy as np
 
 from eosmuster.quantities import PROPERTIES
-from eosmuster.record import POINT_VERDICTS, SUMMARY_VERDICTS, Block, Record, SummaryRow
+from eosmuster.record import SUMMARY_VERDICTS, Block, Floats, Record, SummaryRow
+from eosmuster.report.coverage import States, states
+from eosmuster.report.rows import first_reference, has_value
+from eosmuster.report.sizes import Blocks, blocks_by_key, deviation_unit, largest, of_one_percent
+from eosmuster.report.text import list_within
 
 T = TypeVar("T")
 
-UNSOLVED = POINT_VERDICTS.index("unsolved")
+_LONGEST_LIMITS = 60  # characters of the limits that are named
 
 
 class Cell(NamedTuple):
-    """One candidate for one fluid, by the plan's first reference that knows it.
+    """One candidate for one fluid, by the plan's first reference that has a value for it.
 
     `by_all` tells whether every point is inside against every other reference source as well; `sources` are those
     of the first reference, which the verdict is given by.
@@ -55,7 +59,8 @@ class Standing:
     points, inside, unsolved : counts of points
     worst : the row with the largest deviation, None if there is no deviation at all
     held_by_all : fluids for which every point is inside against every reference source
-    largest : its largest deviation, in the unit of `deviation_unit`; NaN if there is none
+    largest : its largest deviation, in the unit of `eosmuster.report.sizes.deviation_unit`; NaN if there is none
+    risk : of false acceptance, percent, for the fluid where it is highest; NaN where it is known nowhere
     """
 
     candidate: str
@@ -66,6 +71,7 @@ class Standing:
     worst: SummaryRow | None
     held_by_all: int = 0
     largest: float = float("nan")
+    risk: float = float("nan")
 
     @property
     def held(self) -> int:
@@ -93,9 +99,10 @@ class Overview:
     standings : one a candidate, worst first
     fluids : worst first: those that the fewest candidates hold
     cells : (fluid, candidate) -> what the candidate does there
-    limits : smallest and largest limit, in the unit of `deviation_unit`; NaN if not known
-    reduced : smallest and largest reduced temperature; NaN if not known
-    sources : reference sources in order of appearance
+    limits : smallest and largest limit, in the unit of `eosmuster.report.sizes.deviation_unit`; NaN if not known
+    stated : the limits as the plan states them, where one of them has another unit; else empty
+    states : how many states of the references that answer were judged, and which reduced temperatures they span
+    sources : reference sources that gave a value, in order of appearance
     """
 
     name: str
@@ -103,7 +110,8 @@ class Overview:
     fluids: tuple[str, ...]
     cells: Mapping[tuple[str, str], Cell]
     limits: tuple[float, float]
-    reduced: tuple[float, float]
+    stated: tuple[str, ...]
+    states: States
     sources: tuple[str, ...]
 
     @property
@@ -114,7 +122,9 @@ class Overview:
 
     @property
     def limit_text(self) -> str:
-        """The limits in words, e.g. ``limit 0.5 K`` or ``limits 1 to 10 %``."""
+        """The limits in words, e.g. ``limit 0.5 K``, ``limits 1 to 10 %`` or ``limit 2 % of ln``."""
+        if self.stated:
+            return f"{'limit' if len(self.stated) == 1 else 'limits'} {list_within(self.stated, _LONGEST_LIMITS)}"
         low, high = (f"{limit:.3g}" for limit in self.limits)
         unit, _ = deviation_unit(self.name)
         if low == "nan":
@@ -135,49 +145,22 @@ class Overview:
         return tuple(fluid for fluid in self.fluids if fluid in silent - judged)
 
 
-def deviation_unit(name: str) -> tuple[str, float]:
-    """Give the unit in which people read deviations of a property, and how many of it make one SI unit.
-
-    Percent (and 1) but for properties that pass through zero, and temperatures.
-
-    Examples
-    --------
-    >>> deviation_unit("density"), deviation_unit("residual_enthalpy"), deviation_unit("joule_thomson_coefficient")
-    (('%', 1.0), ('J/mol', 1.0), ('K/bar', 100000.0))
-    """
-    known = PROPERTIES.get(name)
-    if known is None or not known.absolute:
-        return "%", 1.0
-    return ("K/bar", 1e5) if known.unit == "K/Pa" else (known.unit, 1.0)
-
-
 def overviews(record: Record) -> tuple[Overview, ...]:
     """Sum up a record property by property, in the order of its rows."""
     blocks = _grouped(record.blocks, "property")
     rows = _grouped(record.summary, "property")
-    return tuple(
-        _overview(name, rows.get(name, []), blocks.get(name, []), record.references) for name in {**rows, **blocks}
-    )
-
-
-def first_reference(rows: Sequence[SummaryRow], references: Sequence[str]) -> list[SummaryRow]:
-    """Pick the rows of the plan's first reference that has any (handbook sources are one); all if none is named."""
-    for reference in references:
-        of_one = [
-            r for r in rows if r.reference_source == reference or r.reference_source.startswith(f"{reference}:")
-        ]
-        if of_one:
-            return of_one
-    return list(rows)
+    return tuple(_overview(name, rows.get(name, []), blocks.get(name, []), record) for name in {**rows, **blocks})
 
 
 def together(rows: Sequence[SummaryRow]) -> Cell:
     """Take the rows of one fluid, candidate and property together, one a reference source.
 
     The verdict follows the rule of a summary row: `unavailable` if all are; `inside` if every point is;
-    `undecided` if nothing is outside or unsolved; `outside` if no point is inside; else `partly`.
+    `undecided` if nothing is outside or unsolved; `outside` if no point is inside; else `partly`. A source without a
+    value at any state says nothing beside one that has some.
     """
-    verdicts = {row.verdict for row in rows} - {"unavailable"}
+    heard = [row for row in rows if has_value(row)] or rows
+    verdicts = {row.verdict for row in heard} - {"unavailable"}
     inside = sum(row.inside for row in rows)
     if len(verdicts) <= 1:
         verdict = verdicts.pop() if verdicts else "unavailable"
@@ -189,61 +172,11 @@ def together(rows: Sequence[SummaryRow]) -> Cell:
     return Cell(verdict, judged, inside, sum(row.unsolved for row in rows))
 
 
-def worst_rows(rows: Iterable[SummaryRow]) -> list[SummaryRow]:
-    """Sort summary rows worst first; those inside come last, those of which nothing was judged not at all."""
-    order = {"outside": 0, "partly": 1, "undecided": 2, "inside": 3}
-    judged = [row for row in rows if row.verdict in order and row.points > row.no_reference]
-    return sorted(judged, key=lambda row: (order[row.verdict], row.share_inside, -_size(row)))
-
-
-def signed_maximum(blocks: Mapping[tuple[str, str, str], Block], row: SummaryRow) -> tuple[Block, int, int] | None:
-    """Find the point of the largest deviation of a row: block, candidate, state; None without points.
-
-    `blocks` is the record's, by component, property and reference source (`blocks_by_key`).
-    """
-    block = blocks.get((row.component, row.property, row.reference_source))
-    if block is None or row.candidate not in block.candidates:
-        return None
-    candidate = block.candidates.index(row.candidate)
-    size = np.abs(block.deviation_pct[candidate])
-    if deviation_unit(row.property)[0] != "%":
-        size = size * np.abs(block.reference)
-    return None if not size.size or np.isnan(size).all() else (block, candidate, int(np.nanargmax(size)))
-
-
-def blocks_by_key(record: Record) -> dict[tuple[str, str, str], Block]:
-    """Index the blocks by component, property and reference source."""
-    return {(b.component, b.property, b.reference_source): b for b in record.blocks}
-
-
-def unsolved_reasons(record: Record) -> list[tuple[str, str, str, int, tuple[str, ...]]]:
-    """Group the unsolved points: property, candidate, note, points, fluids; most points first."""
-    found: dict[tuple[str, str, str], dict[str, int]] = {}
-    for block in record.blocks:
-        candidate, state = np.nonzero(block.verdict == UNSOLVED)
-        counts = np.bincount(candidate * len(block.notes) + block.note[candidate, state])
-        for key in np.flatnonzero(counts).tolist():
-            (c, n), count = divmod(key, len(block.notes)), int(counts[key])
-            fluids = found.setdefault((block.property, block.candidates[c], block.notes[n]), {})
-            fluids[block.component] = fluids.get(block.component, 0) + count
-    groups = [(*key, sum(fluids.values()), tuple(fluids)) for key, fluids in found.items()]
-    return sorted(groups, key=lambda group: -group[3])
-
-
-def unavailable_reasons(rows: Iterable[SummaryRow]) -> list[tuple[str, str, tuple[str, ...]]]:
-    """Group what candidates cannot do at all: candidate, reason, fluids; most fluids first."""
-    found: dict[tuple[str, str], dict[str, None]] = {}
-    for row in rows:
-        if row.verdict == "unavailable":
-            found.setdefault((row.candidate, row.note), {})[row.component] = None
-    return sorted(((*key, tuple(fluids)) for key, fluids in found.items()), key=lambda group: -len(group[2]))
-
-
-def _overview(name: str, rows: Sequence[SummaryRow], blocks: Sequence[Block], references: Sequence[str]) -> Overview:
+def _overview(name: str, rows: Sequence[SummaryRow], blocks: Sequence[Block], record: Record) -> Overview:
     pairs: dict[tuple[str, str], list[SummaryRow]] = {}
     for row in rows:
         pairs.setdefault((row.component, row.candidate), []).append(row)
-    firsts = {pair: first_reference(of_pair, references) for pair, of_pair in pairs.items()}
+    firsts = {pair: first_reference(of_pair, record.references) for pair, of_pair in pairs.items()}
     cells = {
         pair: together(firsts[pair])._replace(
             by_all=together(of_pair).verdict == "inside", sources=tuple(row.reference_source for row in firsts[pair])
@@ -256,15 +189,44 @@ def _overview(name: str, rows: Sequence[SummaryRow], blocks: Sequence[Block], re
         of_fluid.setdefault(fluid, []).append(cell)
     fluids = _by_severity(of_fluid)
     place = {fluid: i for i, fluid in enumerate(fluids)}
-    sizes = _own_sizes(name, blocks)
+    by_key = blocks_by_key(blocks)
     standings = [
-        _standing(c, of_one, cells, place, sizes) for c, of_one in _grouped(rows_of_answer, "candidate").items()
+        _standing(c, of_one, cells, place, by_key) for c, of_one in _grouped(rows_of_answer, "candidate").items()
     ]
     # stable: of equals the plan's first comes last, where the best are
     standings.reverse()
-    standings.sort(key=lambda s: (s.held, s.share, -s.unsolved))
-    sources = {row.reference_source: None for row in rows if row.reference_source}
-    return Overview(name, tuple(standings), fluids, cells, _limits(name, blocks), _reduced(blocks), tuple(sources))
+    standings.sort(key=_goodness)
+    sources = {row.reference_source: None for row in rows if has_value(row) and row.reference_source}
+    answering = {(fluid, source) for (fluid, _), cell in cells.items() for source in cell.sources}
+    return Overview(
+        name,
+        tuple(standings),
+        fluids,
+        cells,
+        _span([b.limit_pct * of_one_percent(b) for b in blocks]),
+        _stated(name, record.decision),
+        states(b for b in blocks if (b.component, b.reference_source) in answering),
+        tuple(sources),
+    )
+
+
+def _goodness(standing: Standing) -> tuple[int, int, float, int, float]:
+    """Give what candidates are sorted by, the best last: fluids held, held by all, share inside, largest deviation.
+
+    Deviations that read the same are the same: rounding decides nothing. One that has no value somewhere comes before
+    its equals, since what it would deviate there nobody knows.
+    """
+    size = -np.inf if np.isnan(standing.largest) else -float(f"{standing.largest:.3g}")
+    return standing.held, standing.held_by_all, standing.share, -standing.unsolved, size
+
+
+def _stated(name: str, decision: Mapping[str, Any]) -> tuple[str, ...]:
+    """Give the limits of a property as the plan states them, if one is not in the unit deviations are read in."""
+    rules = [rule for rule in decision.get("tolerances", ()) if rule.get("property") == name]
+    unit, _ = deviation_unit(name)
+    if all(str(rule.get("limit", "")).partition(" ")[2] == unit for rule in rules):
+        return ()
+    return tuple(dict.fromkeys(str(rule.get("as_written") or rule.get("limit")) for rule in rules))
 
 
 def _by_severity(cells: Mapping[str, Sequence[Cell]]) -> tuple[str, ...]:
@@ -275,24 +237,12 @@ def _by_severity(cells: Mapping[str, Sequence[Cell]]) -> tuple[str, ...]:
     return tuple(sorted(cells, key=good))
 
 
-def _own_sizes(name: str, blocks: Sequence[Block]) -> dict[tuple[str, str, str], float]:
-    """Give the largest deviations in the property's own unit, by fluid, candidate and source; none in percent."""
-    unit, factor = deviation_unit(name)
-    found = {}
-    for block in blocks if unit != "%" else ():
-        size = np.abs(block.deviation_pct * block.reference) / 100.0 * factor
-        for candidate, one in zip(block.candidates, size, strict=True):
-            if not np.isnan(one).all():
-                found[block.component, candidate, block.reference_source] = float(np.nanmax(one))
-    return found
-
-
 def _standing(
     candidate: str,
     rows: Sequence[SummaryRow],
     cells: Mapping[tuple[str, str], Cell],
     place: Mapping[str, int],
-    sizes: Mapping[tuple[str, str, str], float],
+    blocks: Blocks,
 ) -> Standing:
     mine = {row.component: cells[row.component, candidate] for row in rows}
     ordered = sorted(mine, key=lambda fluid: (mine[fluid].share, place[fluid]))
@@ -300,33 +250,15 @@ def _standing(
     fluids = {verdict: tuple(f for f in judged if mine[f].verdict == verdict) for verdict in SUMMARY_VERDICTS}
     fluids["unjudged"] = tuple(fluid for fluid in ordered if mine[fluid].unjudged)
 
-    def size(row: SummaryRow) -> float:
-        return sizes.get((row.component, row.candidate, row.reference_source), -1.0) if sizes else _size(row)
-
-    worst = max(rows, key=size)
     points, inside, unsolved = (sum(getattr(c, n) for c in mine.values()) for n in ("points", "inside", "unsolved"))
     by_all = sum(cell.by_all for cell in mine.values())
-    known = size(worst) >= 0
-    largest = size(worst) if known else float("nan")
-    return Standing(candidate, fluids, points, inside, unsolved, worst if known else None, by_all, largest)
+    sizes = [(size, row) for row in rows if not np.isnan(size := largest(blocks, row))]
+    most, worst = max(sizes, key=lambda pair: pair[0], default=(float("nan"), None))
+    risk = max((row.false_acceptance_pct for row in rows if not np.isnan(row.false_acceptance_pct)), default=np.nan)
+    return Standing(candidate, fluids, points, inside, unsolved, worst, by_all, most, float(risk))
 
 
-def _size(row: SummaryRow) -> float:
-    return -1.0 if np.isnan(row.max_pct) else abs(row.max_pct)
-
-
-def _limits(name: str, blocks: Sequence[Block]) -> tuple[float, float]:
-    unit, factor = deviation_unit(name)
-    if unit == "%":
-        return _span([b.limit_pct for b in blocks])
-    return _span([b.limit_pct * np.abs(b.reference) / 100.0 * factor for b in blocks])
-
-
-def _reduced(blocks: Sequence[Block]) -> tuple[float, float]:
-    return _span([b.reduced_temperature for b in blocks])
-
-
-def _span(arrays: Sequence[np.ndarray[tuple[int, ...], np.dtype[np.float64]]]) -> tuple[float, float]:
+def _span(arrays: Sequence[Floats]) -> tuple[float, float]:
     known = np.concatenate([a[np.isfinite(a)] for a in arrays]) if arrays else np.array([])
     return (float(known.min()), float(known.max())) if known.size else (float("nan"), float("nan"))
 

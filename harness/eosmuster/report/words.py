@@ -1,106 +1,42 @@
-"""Sentences of a report: the answer, the decision rule, the cautions, units for people."""
+"""Words of a report: the decision rule, spans and shares, units for people."""
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator, Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from typing import Any
 
 import numpy as np
 
 from eosmuster.quantities import PROPERTIES, SINGLE_PHASE, UNITS, from_si
 from eosmuster.record import POINT_VERDICTS, Block, Record, Region, SummaryRow
-from eosmuster.report.text import list_within, number, one_line, shortened, some
-from eosmuster.report.views import Cell, Overview, Standing, deviation_unit
+from eosmuster.report import doubts
+from eosmuster.report.rows import answering_references, verdict_counts
+from eosmuster.report.sizes import deviation_unit
+from eosmuster.report.text import number, one_line, some
+from eosmuster.report.views import Standing
 
-_BEST = 5  # candidates named in the answer
-_FEW = 6  # fluids whose windows are named there
+RISK = (
+    "Risk: of false acceptance, the mean chance that a point counted as inside is not; of a candidate the highest of "
+    "any fluid"
+)
+PASSING = (
+    "Passes at limit: the smallest limit at which every point would be inside; surely at: inside by more than the "
+    "reference's uncertainty, where that is known at every point"
+)
 
-_NEAR_CRITICAL = 0.95
-_QUANTUM, _ASSOCIATING = "quantum gas", "associating"  # chemical classes that need a caution
 
+def at_states(sources: Sequence[str], inside: int, points: int) -> str:
+    """Say at how many states a candidate is inside, where nothing is known between them.
 
-def answer(record: Record, overview: Overview, width: int = 100) -> list[str]:
-    """Say which candidates hold the tolerance of a property, where the best fails, which fluids none holds.
-
-    Returns
-    -------
-    a heading and one to three sentences, each within `width`
+    >>> at_states(["measured:lab.csv"], 3, 4), at_states(["handbook:x"], 1, 1), at_states(["handbook:x"], 0, 9)
+    ('at 3 of 4 measured points', 'at 1 of 1 tabulated state', 'nowhere')
     """
-    judged = len(overview.fluids) - len(overview.unjudged)
-    count = some(judged, "fluid") + (" judged" if overview.unjudged else "")
-    reduced = "" if np.isnan(overview.reduced[0]) else ", T/Tc {:.3g} to {:.3g}".format(*overview.reduced)
-    heading = f"{overview.label}, {overview.limit_text}{reduced}"
-    best = [s for s in reversed(overview.standings) if s.held][:_BEST]
-    if not any(s.points for s in overview.standings):
-        why = "no reference has a value at any state" if overview.unjudged else "no candidate is available"
-        return [heading, f"nothing was judged: {why}"]
-    silent = [
-        _listed(f"nothing judged, no reference: {some(len(overview.unjudged), 'fluid')}", overview.unjudged, width)
-    ]
-    silent = silent if overview.unjudged else []
-    if not best:
-        nearest = overview.standings[-1]
-        near = f"; nearest: {one_line(nearest.candidate)}, {percent(nearest.share)} of its points inside"
-        none = f"no candidate holds it for {count}" if judged == 1 else f"no candidate holds it for any of {count}"
-        return [heading, shortened(none + near, width), *silent]
-    everywhere = [s.candidate for s in reversed(overview.standings) if s.held == judged]
-    if everywhere:
-        return [heading, _listed(f"holds for {'' if judged == 1 else 'all '}{count}", everywhere, width), *silent]
-    of = f"{judged} judged" if overview.unjudged else str(judged)
-    sentences = [_listed(f"fluids held, of {of}", [f"{s.candidate} {s.held}" for s in best], width)]
-    if len(best[0].failing) <= _FEW:
-        start = f"where {one_line(best[0].candidate)} is inside, {temperature_unit(record)}"
-        sentences.append(_listed(start, _where(record, overview), width))
-    if overview.unheld:
-        fluids = some(len(overview.unheld), "fluid")
-        sentences.append(_listed(f"no candidate holds {fluids}", overview.unheld, width))
-    return [heading, *sentences, *silent]
-
-
-def _listed(start: str, names: Sequence[str], width: int) -> str:
-    return f"{start}: {list_within(names, width - len(start) - 2)}"
-
-
-def _where(record: Record, overview: Overview) -> list[str]:
-    """Say for each fluid that the best candidate does not hold where it is inside all the same."""
-    best = overview.standings[-1]
-    if any(r.property == overview.name for r in record.regions):
-        return _where_in_plane(record, overview, best)
-    windows: dict[str, list[str]] = {fluid: [] for fluid in best.failing}
-    for w in record.windows:
-        if w.property != overview.name or w.candidate != best.candidate or w.component not in windows:
-            continue
-        answering = overview.cells[w.component, w.candidate].sources
-        if w.reference_source in answering:
-            span = " to ".join(number(shown_temperature(record, t), 5) for t in (w.from_K, w.to_K))
-            source = f" ({w.reference_source})" if len(answering) > 1 else ""
-            windows[w.component].append(span + source)
-    cells = overview.cells
-    spans = [
-        f"{fluid} {' and '.join(found) or _no_span(cells[fluid, best.candidate])}" for fluid, found in windows.items()
-    ]
-    return [*spans, *(f"{fluid} unavailable" for fluid in best.fluids["unavailable"])]
-
-
-def _where_in_plane(record: Record, overview: Overview, best: Standing) -> list[str]:
-    """Say for each fluid how much of the plane of temperature and pressure the largest region of the best takes."""
-    found = []
-    for fluid in best.failing:
-        answering = overview.cells[fluid, best.candidate].sources
-        mine = [
-            r
-            for r in record.regions
-            if (r.component, r.candidate, r.property) == (fluid, best.candidate, overview.name)
-            and r.reference_source in answering
-        ]
-        spans = " and ".join(region_span(record, r) for r in mine)
-        found.append(f"{fluid} {spans or _no_span(overview.cells[fluid, best.candidate])}")
-    return [*found, *(f"{fluid} unavailable" for fluid in best.fluids["unavailable"])]
-
-
-def _no_span(cell: Cell) -> str:
-    """Say where a candidate is inside that has neither window nor region: measured points span none."""
-    return "at some measured points" if cell.inside and all(map(measured, cell.sources)) else "nowhere"
+    if not inside:
+        return "nowhere"
+    what = "measured point" if all(map(measured, sources)) else "state"
+    if sources and all(source.startswith("handbook:") for source in sources):
+        what = "tabulated state"
+    return f"at {inside} of {some(points, what)}"
 
 
 def measured(source: str) -> bool:
@@ -112,32 +48,65 @@ def measured(source: str) -> bool:
     return source.partition(":")[0] == "measured"
 
 
+def region_ends(record: Record, region: Region) -> tuple[str, str]:
+    """Write between which temperatures and which pressures a region lies, without their units."""
+    unit = record.display.get("pressure", "Pa")
+    kelvin, pascal = region.outline.temperature, region.outline.pressure
+    warm = [number(shown_temperature(record, float(t)), 5) for t in (min(kelvin), max(kelvin))]
+    hard = [number(from_si(float(p), unit, "pressure"), 4) for p in (min(pascal), max(pascal))]
+    return " to ".join(warm), " to ".join(hard)
+
+
 def region_span(record: Record, region: Region) -> str:
-    """Write how far a region reaches in temperature, and its share of the plan's plane."""
-    span = " to ".join(
-        number(shown_temperature(record, float(t)), 5)
-        for t in (min(region.outline.temperature), max(region.outline.temperature))
-    )
-    return f"{span} ({percent(region.share)} of the plan's rectangle)"
+    """Write how much of the plan's plane a region takes, if that is known, and between which states it lies."""
+    warm, hard = region_ends(record, region)
+    span = f"{warm} {temperature_unit(record)}, {hard} {record.display.get('pressure', 'Pa')}"
+    return f"part of {span}" if np.isnan(region.share) else f"{percent(region.share)} of the plane, {span}"
 
 
-def legend(record: Record) -> str:
-    """Say what it takes to be held."""
-    first, *others = record.references or ("the reference",)
-    also = f"; by all: against {', '.join(others)} as well" if others else ""
-    return f"held: every point inside, against {first}{also}"
+def property_label(name: str) -> str:
+    """Give what people call a property.
+
+    >>> property_label("liquid_density"), property_label("of_somebody")
+    ('saturated liquid density', 'of somebody')
+    """
+    return PROPERTIES[name].label if name in PROPERTIES else name.replace("_", " ")
+
+
+def legend(record: Record, name: str = "") -> str:
+    """Say what it takes to be held, and by the references that gave values: of one property, or of all."""
+    answering, others = ([one_line(one) for one in names] for names in answering_references(record, name))
+    as_well = ", ".join(others)
+    if len(answering) > 1:
+        order, each = ", then ".join(answering), f"each, and {as_well}" if others else "each"
+        against = f", against the first reference with a value ({order}); by all: against {each}"
+    else:
+        against = "".join(f", against {first}" for first in answering)
+        against += f"; by all: against {as_well} as well" if others else ""
+    return f"held: every judged point inside{against}"
 
 
 def percent(share: float) -> str:
-    """Write a share in whole percent; neither 0 nor 100 unless it is exactly that.
+    """Write a share in whole percent; neither 0 nor 100 unless it is exactly that, "-" if it is not known.
 
     Examples
     --------
-    >>> percent(0.999), percent(0.001), percent(1.0), percent(0.625)
-    ('99 %', '1 %', '100 %', '62 %')
+    >>> percent(0.999), percent(0.001), percent(1.0), percent(0.625), percent(float("nan"))
+    ('99 %', '1 %', '100 %', '62 %', '-')
     """
+    if np.isnan(share):
+        return "-"
     whole = round(100.0 * share)
     return f"{whole if share in (0.0, 1.0) else min(max(whole, 1), 99)} %"
+
+
+def risk(percent: float) -> str:
+    """Write a risk of false acceptance, in percent, to 0.001 %.
+
+    >>> risk(2.345), risk(1e-10), risk(float("nan"))
+    ('2.3', '0', '-')
+    """
+    return number(round(float(percent), 3), 2) if np.isfinite(percent) else "-"
 
 
 def largest(standing: Standing) -> str:
@@ -150,14 +119,12 @@ def largest(standing: Standing) -> str:
 
 def counts(record: Record) -> str:
     """Count everything: fluids, candidates, points by verdict, and what is unavailable."""
-    total = np.zeros(len(POINT_VERDICTS), dtype=np.int64)
-    for block in record.blocks:
-        total += np.bincount(block.verdict.ravel(), minlength=len(POINT_VERDICTS))
+    found = verdict_counts(record)
+    unavailable = found.pop("unavailable")
     fluids, candidates = ({getattr(row, name) for row in record.summary} for name in ("component", "candidate"))
-    each = ", ".join(f"{n} {v.replace('_', ' ')}" for v, n in zip(POINT_VERDICTS, total.tolist(), strict=True) if n)
-    unavailable = sum(row.verdict == "unavailable" for row in record.summary)
+    each = ", ".join(f"{n} {verdict.replace('_', ' ')}" for verdict, n in found.items() if n)
     return (
-        f"{some(len(fluids), 'fluid')}, {some(len(candidates), 'candidate')}, {some(int(total.sum()), 'point')}"
+        f"{some(len(fluids), 'fluid')}, {some(len(candidates), 'candidate')}, {some(sum(found.values()), 'point')}"
         + (f": {each}" if each else "")
         + (f"; {some(unavailable, 'row')} unavailable" if unavailable else "")
     )
@@ -165,7 +132,7 @@ def counts(record: Record) -> str:
 
 def decision(rule: Mapping[str, Any]) -> list[str]:
     """Say the decision rule in words, then everything else the record says about it but the tolerances."""
-    k, ratio = (number(rule.get(name, "?")) for name in ("coverage_factor", "unfit_ratio"))
+    k, ratio = number(rule.get("coverage_factor", "?")), _fraction(rule.get("unfit_ratio", "?"))
     name = rule.get("rule", "?")
     words = {
         "guarded": f"Guarded rule: U is the expanded uncertainty of the reference (coverage factor {k}). A point is "
@@ -179,13 +146,21 @@ def decision(rule: Mapping[str, Any]) -> list[str]:
         "remembered": "Uncertainties noted down from memory count as well as those that were read in a source.",
         "assumed": "Where no uncertainty is stated, an assumed default of the chemical class stands in.",
     }
-    told = ("rule", "coverage_factor", "unfit_ratio", "tolerances", "uncertainty")
+    told = ("rule", "coverage_factor", "unfit_ratio", "tolerances", "uncertainty", *doubts.KEYS)
     origin = [origins[rule["uncertainty"]]] if rule.get("uncertainty") in origins else []
     return [
         words.get(str(name), f"Rule: {name}."),
         *origin,
+        *doubts.sentences(rule),
         *(f"{k}: {number(v)}" for k, v in rule.items() if k not in told),
     ]
+
+
+def _fraction(ratio: object) -> str:
+    """Write a share of the limit: a third, a half and a quarter in words."""
+    known = {"a third": 1.0 / 3.0, "half": 0.5, "a quarter": 0.25}
+    found = (word for word, value in known.items() if isinstance(ratio, float) and abs(ratio - value) < 1e-9)
+    return next(found, number(ratio))
 
 
 def tolerances(rule: Mapping[str, Any]) -> list[tuple[str, str, str, str]]:
@@ -196,7 +171,8 @@ def tolerances(rule: Mapping[str, Any]) -> list[tuple[str, str, str, str]]:
         where = [tolerance.get("component", ""), tolerance.get("class", "")]
         where += [f"T/Tc from {above:g}" if above else "", "" if below is None else f"T/Tc below {below:g}"]
         applies = ", ".join(part for part in where if part) or "everywhere"
-        rows.append((tolerance["property"], tolerance["limit"], applies, tolerance.get("rationale", "")))
+        limit = tolerance.get("as_written") or tolerance["limit"]
+        rows.append((property_label(tolerance["property"]), limit, applies, tolerance.get("rationale", "")))
     return rows
 
 
@@ -210,17 +186,17 @@ def shown_temperature(record: Record, kelvin: float) -> float:
     return round(from_si(kelvin, temperature_unit(record), "temperature"), 2)
 
 
-def shown_pressure(record: Record, pascal: float) -> str:
+def shown_pressure(record: Record, pascal: float, digits: int = 4) -> str:
     """Write a pressure in the unit people read, with the unit."""
     unit = record.display.get("pressure", "Pa")
-    return f"{number(from_si(pascal, unit, 'pressure'), 4)} {unit}"
+    return f"{number(from_si(pascal, unit, 'pressure'), digits)} {unit}"
 
 
 def point(record: Record, row: SummaryRow, place: tuple[Block, int, int] | None) -> list[str]:
     """Write the point of a row's largest deviation as cells.
 
     Temperature, reduced temperature, predicted, reference, their unit, deviation, limit, verdict, all in the units
-    people read; deviation and limit in that of `eosmuster.report.views.deviation_unit`.
+    people read; deviation and limit in that of `eosmuster.report.sizes.deviation_unit`.
     """
     if place is None:  # the record holds no such point
         at = number(shown_temperature(record, row.max_at_K), 5)
@@ -257,41 +233,3 @@ def _for_people(record: Record, row: SummaryRow, unit: str) -> tuple[str, Callab
     if dimension == "density" and wanted in UNITS["mass_density"] and molar_mass:
         return wanted, lambda value: from_si(value * molar_mass, wanted, "mass_density")
     return unit, lambda value: value
-
-
-def cautions(record: Record) -> Iterator[str]:
-    """Say what a reader must not read into the results, with the fluids concerned."""
-    yield (
-        "Pure components only, for now: nothing here says how a model does for mixtures, where the combining "
-        "and mixing rules decide."
-    )
-    if any(np.any(b.reduced_temperature > _NEAR_CRITICAL) for b in record.blocks):
-        yield (
-            "Near the critical point (T/Tc above 0.95) cubic equations and references are both at their weakest, "
-            "and densities change steeply with temperature."
-        )
-    yield (
-        "Nothing is judged below the triple point or outside the range of a reference; correlations are never "
-        "extrapolated."
-    )
-    for what, fluids in _families(record).items():
-        if fluids:
-            yield f"{what}: {list_within(fluids, 400)}."
-    yield "The AAD depends on the grid: read it together with the points and the temperatures printed beside it."
-    yield (
-        "Results support, and do not replace, the judgement of a licensed engineer; relief, safety and "
-        "custody-transfer calculations follow local codes."
-    )
-
-
-def _families(record: Record) -> dict[str, list[str]]:
-    quantum = "Quantum gases, for which alpha functions fitted to ordinary fluids are not made"
-    associating = "Associating fluids, whose hydrogen bonds a cubic equation does not know"
-    found: dict[str, list[str]] = {quantum: [], associating: []}
-    for component, constants in record.constants.items():
-        family = str(constants.get("class", ""))
-        if family == _QUANTUM:
-            found[quantum].append(component)
-        elif family == _ASSOCIATING:
-            found[associating].append(component)
-    return found

@@ -16,7 +16,9 @@ from eosmuster.errors import InputError
 from eosmuster.record import Record, Region, SummaryRow, WindowRow
 from eosmuster.report import words
 from eosmuster.report.cells import encoded
-from eosmuster.report.text import one_line
+from eosmuster.report.rows import causes_first
+from eosmuster.report.sizes import blocks_by_key, deviation_unit, largest, passing_limit, surely_passing_limit
+from eosmuster.report.text import one_line, some
 from eosmuster.report.views import Standing, overviews
 
 if TYPE_CHECKING:
@@ -37,7 +39,8 @@ Cells = Sequence[object]
 def write_workbook(record: Record, file: BinaryIO) -> None:
     """Write the answer, the summary, windows, regions, constants and sources, a sheet each.
 
-    Numbers are those of the CSV files, in SI. Needs xlsxwriter (``pip install 'eosmuster[workbook]'``).
+    Numbers are those of the CSV files, in SI, but for columns with a unit of their own. Needs xlsxwriter
+    (``pip install 'eosmuster[workbook]'``).
 
     Raises
     ------
@@ -85,7 +88,7 @@ class _Writer:
             for column, value in enumerate(row):
                 self._cell(sheet, last, column, value)
         if left:
-            sheet.write_string(_MOST_ROWS + 1, 0, f"{left} more rows are left out; all are in the CSV files")
+            sheet.write_string(_MOST_ROWS + 1, 0, f"{some(left, 'more row')} left out; all are in the CSV files")
         if last:
             sheet.autofilter(0, 0, min(last, _MOST_ROWS), len(headers) - 1)
 
@@ -114,26 +117,35 @@ def _sheets(record: Record) -> Iterator[tuple[str, Sequence[str], Iterable[Cells
     yield "answer", _ANSWER, _answer(record)
     yield "decision", ("decision rule", ""), ((line, "") for line in words.decision(record.decision))
     yield "limits", ("property", "limit", "where", "why"), words.tolerances(record.decision)
-    yield from _fields("summary", SummaryRow, record.summary)
-    yield from _fields("windows", WindowRow, record.windows)
+    names = [field.name for field in fields(SummaryRow)]
+    yield "summary", (*names, *_OWN_UNIT), _summary(record, names)
+    names = [field.name for field in fields(WindowRow)]
+    yield "windows", names, ([getattr(row, name) for name in names] for row in record.windows)
     if record.regions:
         yield "regions", _REGION, (_region(region) for region in record.regions)
-    yield "contested", ("component", "property", "who stands alone"), record.conflicts
+    yield "contested", ("component", "property", "who stands alone"), causes_first(record)
     yield "left out", ("what", "why"), record.left_out
+    if record.notes:
+        yield "notes", ("file", "note"), record.notes
     yield "constants", ("component", "constant", "value", "unit", "source"), _constants(record)
     yield "sources", ("key", "reference"), record.citations.items()
 
 
-def _fields(
-    name: str, kind: type[SummaryRow | WindowRow], rows: Sequence[object]
-) -> Iterator[tuple[str, Sequence[str], Iterable[Cells]]]:
-    names = [field.name for field in fields(kind)]
-    yield name, names, ([getattr(row, field) for field in names] for row in rows)
+_OWN_UNIT = ("largest deviation", "passing limit", "surely passing limit", "unit of these")
+
+
+def _summary(record: Record, names: Sequence[str]) -> Iterator[Cells]:
+    """Give the rows of summary.csv, and behind them what percent does not tell of a property read in its own unit."""
+    blocks, rule = blocks_by_key(record.blocks), record.decision.get("rule")
+    for row in record.summary:
+        own = (largest(blocks, row), passing_limit(blocks, row, rule), surely_passing_limit(blocks, row))
+        yield [*(getattr(row, name) for name in names), *own, deviation_unit(row.property)[0]]
 
 
 _ANSWER = (
     *("property", "candidate", "fluids", "held", "held by all", "undecided", "partly", "outside", "unavailable"),
-    *("points", "points inside", "share inside", "unsolved", "largest deviation, %", "in"),
+    *("not judged", "points", "points inside", "share inside", "unsolved", "highest risk of false acceptance, %"),
+    *("largest deviation", "its unit", "in"),
 )
 
 
@@ -145,7 +157,7 @@ def _answer(record: Record) -> Iterator[Cells]:
 
 
 def _standing(standing: Standing) -> list[object]:
-    verdicts = ("undecided", "partly", "outside", "unavailable")
+    verdicts = ("undecided", "partly", "outside", "unavailable", "unjudged")
     worst = standing.worst
     return [
         standing.held,
@@ -155,7 +167,9 @@ def _standing(standing: Standing) -> list[object]:
         standing.inside,
         standing.share if standing.points else math.nan,
         standing.unsolved,
-        worst.max_pct if worst else math.nan,
+        standing.risk,
+        standing.largest,
+        deviation_unit(worst.property)[0] if worst else "",
         worst.component if worst else "",
     ]
 

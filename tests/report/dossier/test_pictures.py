@@ -111,6 +111,56 @@ def test_repeated_temperatures_are_points_not_a_zigzag(smooth):
     assert all("h0" in d and "l" not in d for d in lines(figures.deviations(twice, [], {}, scale)))
 
 
+def states(block, chosen):
+    """Keep some states of a block."""
+    kept = ("temperature", "pressure", "reduced_temperature", "reference", "reference_uncertainty_pct", "limit_pct")
+    wide = ("predicted", "deviation_pct", "probability_inside", "verdict", "note")
+    return replace(
+        block,
+        **{name: getattr(block, name)[chosen] for name in kept},
+        **{name: getattr(block, name)[:, chosen] for name in wide},
+    )
+
+
+def test_a_state_alone_has_a_mark_for_every_candidate_a_tick_and_its_uncertainty(smooth):
+    one = replace(states(smooth, [7]), reference_uncertainty_pct=np.array([0.4]))
+    scale = figures.scale_of("saturation_pressure", [one])
+    drawing = figures.deviations(one, [], {"PR": 0, "SRK": 1}, scale)
+    marks = dict(re.findall(r'<path class="k c\d (dot|mark)" d="([^"]+)"', drawing))
+    assert marks.keys() == {"dot", "mark"}  # the shape tells them apart, also in grey
+    _, height = map(int, re.match(r"M(\d+) (\d+)h0", marks["dot"]).groups())
+    assert height == round(float(scale.y(one.deviation_pct[0, 0])))
+    middle = float(scale.x(one.reduced_temperature[0]))
+    ticks = re.findall(r'<text x="(\d+)" y="\d+" class="m">([^<]*)', drawing)
+    assert ticks == [(f"{middle:.0f}", f"{one.reduced_temperature[0]:.3g}")]
+    top, foot = re.search(r'class="whisker" d="M\d+ (\d+)h8m-4 0V(\d+)', drawing).groups()
+    assert [int(top), int(foot)] == [round(float(scale.y(np.array(u)))) for u in (0.4, -0.4)]
+
+
+def test_measured_points_are_marked_and_a_state_without_neighbours_as_well(smooth):
+    measured = replace(smooth, reference_source="measured:lab.csv")
+    scale = figures.scale_of("saturation_pressure", [measured])
+    assert "l" not in "".join(lines(figures.deviations(measured, [], {"PR": 0, "SRK": 3}, scale)))
+    deviation = smooth.deviation_pct.copy()
+    deviation[0, [10, 12]] = np.nan
+    drawing = figures.deviations(replace(smooth, deviation_pct=deviation), [], {"PR": 0, "SRK": 1}, scale)
+    alone = re.findall(r'<path class="k c0 dot" d="M(\d+) (\d+)h0">', drawing)
+    wanted = scale.x(smooth.reduced_temperature[11]), scale.y(deviation[0, 11])
+    assert alone == [tuple(f"{float(v):.0f}" for v in wanted)]
+
+
+def test_the_limits_are_numbered_beside_the_axis(smooth):
+    scale = figures.scale_of("saturation_pressure", [smooth])
+    drawing = figures.deviations(smooth, [], {}, scale)
+    numbered = {words: float(y) - 6 for y, words in re.findall(r'y="(\d+)" class="e lim">([^<]*)', drawing)}
+    limits = sorted(set(smooth.limit_pct.tolist()))
+    assert numbered.keys() == {f"{sign}{limit:g}" for limit in limits for sign in "+−"}
+    for limit in limits:
+        assert numbered[f"+{limit:g}"] == pytest.approx(float(scale.y(np.array(limit))), abs=0.5)
+    heights = sorted(float(y) for y in re.findall(r'y="(\d+)" class="e(?: lim)?"', drawing))
+    assert min(np.diff(heights)) >= 17.0  # the height of the type; positions are rounded
+
+
 def test_a_bar_is_as_long_as_its_window():
     track = bars.Track(200.0, 400.0)
     window = WindowRow("a", "PR", "p", "r", 250.0, 300.0, "limit", "unsolved")
@@ -146,15 +196,29 @@ def test_a_region_is_where_its_corners_are(plane_record, read_page):
 def test_states_and_regions_are_listed_beside_their_pictures(plane_record, read_page):
     page = read_page(plane_record)
     assert page.one("table", id="areas-0").rows() == [
-        ["PR", "alphane", "coolprop", "liquid", "41 %", "2", "1", "-33.15 to 76.85 (41 % of the plan's rectangle)"]
+        ["PR", "alphane", "coolprop", "liquid", "41 %", "2", "1", "-33.15 to 76.85", "1 to 60"]
     ]
     captions = [f.one("figcaption").text for f in page.one("section", id="regions").all("figure")]
-    assert captions[0] == "PR -33.15 to 76.85 (41 % of the plan's rectangle); 1 smaller not drawn"
+    assert captions[0] == "PR 41 % of the plane, -33.15 to 76.85 degC, 1 to 60 bar; 1 smaller not drawn"
     assert captions[1] == "SRK inside nowhere"
     block = plane_record.blocks[0]
     picture = page.all("svg", class_="reg")[1]
     assert picture.one("path", class_="pi").attributes["d"].count("M") == int((block.verdict[1] == 0).sum())
     assert picture.one("path", class_="u").attributes["d"].count("M") == int((block.verdict[1] == 4).sum())
+
+
+def test_no_region_covers_the_unit_of_the_pressure(plane_record, read_page):
+    picture = read_page(plane_record).all("svg", class_="reg")[0]
+    unit = next(text for text in picture.all("text") if text.text.startswith("p, "))
+    heights = [float(y) for y in re.findall(r" (\d+)", picture.one("path", class_="area").attributes["d"])]
+    axes = regions.plane(np.array([230.0, 400.0]), np.array([1.0, 100.0]))
+    assert float(unit.attributes["y"]) < min([*heights, float(axes.y(np.array(100.0)))])
+
+
+def test_a_plane_of_one_state_has_it_in_the_middle():
+    axes = regions.plane(np.array([300.0]), np.array([20.0]))
+    middle = float(axes.x(np.array(300.0))), float(axes.y(np.array(20.0)))
+    assert middle == pytest.approx(((62 + 400) / 2, (28 + 294) / 2))
 
 
 @pytest.mark.parametrize(("low", "high"), [(0.0, 1.0), (-45.0, 55.0), (1e5, 3e7), (3.0, 3.0), (0.45, 0.99)])

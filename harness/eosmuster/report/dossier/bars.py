@@ -28,7 +28,12 @@ class Track:
 
 
 def bar(
-    track: Track, judged: tuple[float, float], windows: Sequence[WindowRow], divisor: float, label: str
+    track: Track,
+    judged: tuple[float, float],
+    windows: Sequence[WindowRow],
+    divisor: float,
+    label: str,
+    states: Sequence[float] = (),
 ) -> svg.Markup:
     """Draw the windows of one fluid and candidate over the range that was judged.
 
@@ -38,6 +43,8 @@ def bar(
     judged : first and last judged temperature, K
     divisor : K; 1, or the critical temperature where the axis is a reduced one
     label : the same in words
+    states : single temperatures at which the candidate is inside, K: of a table or of measurements, that tell nothing
+        of what lies between them
     """
     low, high = (track.x(value / divisor) for value in judged)
     parts = [f'<path class="track" d="M{low:.0f} 11H{high:.0f}"/>']
@@ -46,6 +53,9 @@ def bar(
         right = max(right, left + 1.5)
         parts.append(f'<path class="win" d="M{left:.1f} 5h{right - left:.1f}v12H{left:.1f}z"/>')
         parts += [_end(x, end) for x, end in ((left, window.from_end), (right, window.to_end)) if end in _MARKED]
+    if states:
+        places = dict.fromkeys(f"{track.x(value / divisor):.0f}" for value in states)
+        parts.append(f'<path class="at" d="{"".join(f"M{x} 11h0" for x in places)}"/>')
     return svg.picture(WIDTH, HEIGHT, label, parts, "bar")
 
 

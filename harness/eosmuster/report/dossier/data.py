@@ -13,7 +13,8 @@ import numpy as np
 
 from eosmuster.quantities import PROPERTIES
 from eosmuster.record import Block, Record, Region, SummaryRow, WindowRow
-from eosmuster.report.views import Overview, first_reference, overviews
+from eosmuster.report.rows import first_reference
+from eosmuster.report.views import Overview, overviews
 
 T = TypeVar("T", SummaryRow, Block, WindowRow, Region)
 
@@ -40,7 +41,7 @@ class Subject:
     ----------
     place : counts the properties; anchors are made of it
     view : what its rows say together
-    answers : fluid -> blocks of the plan's first reference that knows it, the one with most states first
+    answers : fluid -> blocks of the plan's first reference that has a value for it, the one with most states first
     others : fluid -> the other blocks
     rows : the summary rows of the answering blocks, in the order of the record
     windows : their windows

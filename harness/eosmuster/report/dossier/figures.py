@@ -13,11 +13,15 @@ import numpy as np
 
 from eosmuster.record import POINT_VERDICTS, Block, Floats
 from eosmuster.report.dossier import svg
+from eosmuster.report.dossier.regions import nice_ticks, plain
+from eosmuster.report.sizes import deviation_unit
 from eosmuster.report.text import number
-from eosmuster.report.views import deviation_unit
+from eosmuster.report.words import measured
 
-WIDTH, HEIGHT = 420, 290
-_LEFT, _RIGHT, _TOP, _BOTTOM = 58, 20, 10, 42
+WIDTH, HEIGHT = 420, 308
+_LEFT, _RIGHT, _TOP, _BOTTOM = 58, 20, 28, 42
+_APART = 18.0  # numbers beside the axis that are closer cannot be read
+_MOST_LIMITS = 3
 _UNSOLVED = POINT_VERDICTS.index("unsolved")
 _STEPS = (1.0, 2.0, 5.0)
 
@@ -31,7 +35,7 @@ class Scale:
     low, high : reduced temperatures at the ends
     linear : deviation up to which the scale is nearly linear: the smallest limit
     end : deviation at the ends
-    unit : of deviations, that of `eosmuster.report.views.deviation_unit`
+    unit : of deviations, that of `eosmuster.report.sizes.deviation_unit`
     """
 
     low: float
@@ -41,9 +45,11 @@ class Scale:
     unit: str
 
     def x(self, reduced: Floats) -> Floats:
-        """Place reduced temperatures."""
+        """Place reduced temperatures; where all are one, it stands in the middle."""
         width = WIDTH - _LEFT - _RIGHT
-        return np.asarray(_LEFT + width * (reduced - self.low) / ((self.high - self.low) or 1.0))
+        if self.high == self.low:
+            return np.asarray(_LEFT + width / 2.0 + 0.0 * reduced)
+        return np.asarray(_LEFT + width * (reduced - self.low) / (self.high - self.low))
 
     def y(self, deviation: Floats) -> Floats:
         """Place deviations; beyond the ends they are drawn at the ends."""
@@ -90,6 +96,9 @@ def deviations(
 ) -> svg.Markup:
     """Draw all candidates of one block, the better ones on top.
 
+    A line joins the states of a sweep; measured points, several states of one temperature and a state alone are
+    marked one by one, since nothing is known of what lies between.
+
     Parameters
     ----------
     block : against the reference that answers
@@ -101,27 +110,49 @@ def deviations(
     order = np.argsort(block.reduced_temperature, kind="stable")
     unit = per_percent(block)[order]
     x = scale.x(block.reduced_temperature[order])
-    repeated = len(np.unique(x)) < len(x)
-    parts = [*_band(x, scale, block.limit_pct[order] * np.abs(unit), "band", repeated)]
-    parts += _band(x, scale, block.reference_uncertainty_pct[order] * np.abs(unit), "doubt", repeated)
-    parts += _axes(scale, axis)
+    apart = measured(block.reference_source) or len(np.unique(x)) < max(len(x), 2)
+    limits = block.limit_pct[order] * np.abs(unit)
+    doubt = block.reference_uncertainty_pct[order] * np.abs(unit)
+    parts = _band(x, scale, limits, "band", apart)
+    parts += _whiskers(x, scale, doubt) if apart else _band(x, scale, doubt, "doubt", apart)
+    parts += _axes(scale, axis, limits)
     parts += _other_references(block, others, scale)
     by_rank = sorted(range(len(block.candidates)), key=lambda i: -places.get(block.candidates[i], 0))
-    for i in by_rank:
+    beside = _beside(len(by_rank)) if scale.high == scale.low else np.zeros(len(by_rank))
+    for i, shift in zip(by_rank, beside[::-1], strict=True):
         y = scale.y(block.deviation_pct[i, order] * unit)
-        line = svg.dots(x, y) if repeated else svg.path(x, y)
-        kind = f"k c{places.get(block.candidates[i], 0)}{' r' if repeated else ''}"
-        if line:
-            title = svg.attribute(svg.isolated(block.candidates[i]))
-            parts.append(f'<path class="{kind}" d="{line}"><title>{title}</title></path>')
+        parts += _candidate(x + shift, y, block.candidates[i], places.get(block.candidates[i], 0), apart)
     parts += _unsolved(block, order, x, by_rank)
     return svg.picture(WIDTH, HEIGHT, _label(block, scale), parts, "dev")
+
+
+def _beside(count: int) -> Floats:
+    """Spread marks of one temperature beside each other, best first: nothing else is on that axis."""
+    step = min(24.0, (WIDTH - _LEFT - _RIGHT - 20.0) / max(count, 1))
+    return np.asarray(step * (np.arange(count) - (count - 1) / 2.0))
+
+
+def _candidate(x: Floats, y: Floats, name: str, place: int, apart: bool) -> list[str]:
+    """Draw one candidate: its line, and a mark at every state that no line reaches."""
+    title = svg.attribute(svg.isolated(name))
+    marked = np.isfinite(x) & np.isfinite(y)
+    parts = []
+    if not apart:
+        if line := svg.path(x, y):
+            parts.append(f'<path class="k c{place}" d="{line}"><title>{title}</title></path>')
+        beside = np.pad(marked, 1)
+        marked &= ~(beside[:-2] | beside[2:])
+    if marked.any():
+        kind, marks = svg.marks(x[marked], y[marked], place)
+        parts.append(f'<path class="k c{place} {kind}" d="{marks}"><title>{title}</title></path>')
+    return parts
 
 
 def _label(block: Block, scale: Scale) -> str:
     """Say in words what the picture shows: the reader who cannot see it finds the numbers in the tables."""
     known = block.reduced_temperature[np.isfinite(block.reduced_temperature)]
-    span = f" for T/Tc {number(float(known.min()), 3)} to {number(float(known.max()), 3)}" if known.size else ""
+    ends = [number(float(value), 3) for value in (known.min(), known.max())] if known.size else []
+    span = f" for T/Tc {' to '.join(dict.fromkeys(ends))}" if ends else ""
     return (
         f"{svg.isolated(block.component)}: deviation of {len(block.candidates)} candidates from "
         f"{svg.isolated(block.reference_source)}{span}, -{scale.end:g} to +{scale.end:g} {scale.unit}; "
@@ -129,15 +160,17 @@ def _label(block: Block, scale: Scale) -> str:
     )
 
 
-def _band(x: Floats, scale: Scale, half_width: Floats, kind: str, repeated: bool) -> list[str]:
-    """Draw a band around zero whose width may jump half way between two states."""
-    if repeated:  # the states are sorted, so several of one temperature agree in their limit
+def _band(x: Floats, scale: Scale, half_width: Floats, kind: str, apart: bool) -> list[str]:
+    """Draw a band around zero whose width may jump half way between two states; across it all for one alone."""
+    if apart:  # the states are sorted, so several of one temperature agree in their limit
         x, first = np.unique(x, return_index=True)
         half_width = half_width[first]
     if not np.isfinite(half_width).any():
         return []
     middle = (x[1:] + x[:-1]) / 2.0
     left, right = np.concatenate([x[:1], middle]), np.concatenate([middle, x[-1:]])
+    if len(x) == 1:
+        left, right = np.array([float(_LEFT)]), np.array([float(WIDTH - _RIGHT)])
     top, bottom = scale.y(half_width), scale.y(-half_width)
     runs = _equal_runs(half_width)
     boxes = "".join(
@@ -150,6 +183,14 @@ def _band(x: Floats, scale: Scale, half_width: Floats, kind: str, repeated: bool
         for a, b, same in runs
     )
     return [f'<path class="{kind}" d="{boxes}"/>']
+
+
+def _whiskers(x: Floats, scale: Scale, half_width: Floats) -> list[str]:
+    """Draw the uncertainty of every state for itself, around zero; of equal temperatures only the widest shows."""
+    known = np.isfinite(half_width)
+    ends = zip(x[known], scale.y(half_width[known]), scale.y(-half_width[known]), strict=True)
+    bars = "".join(f"M{a - 4:.0f} {top:.0f}h8m-4 0V{foot:.0f}m-4 0h8" for a, top, foot in ends)
+    return [f'<path class="whisker" d="{bars}"/>'] if bars else []
 
 
 def _equal_runs(values: Floats) -> list[tuple[int, int, bool]]:
@@ -171,32 +212,44 @@ def _equal_runs(values: Floats) -> list[tuple[int, int, bool]]:
     return runs
 
 
-def _axes(scale: Scale, axis: str) -> list[str]:
-    ticks = [0.0]
-    for decade in range(-3, 7):
-        value = 10.0**decade
-        if scale.linear * 0.7 <= value <= scale.end:
-            ticks += [value, -value]
-    if scale.end not in ticks:
-        near = max(ticks)
-        if scale.y(np.array(near)) - scale.y(np.array(scale.end)) > 20:
-            ticks += [scale.end, -scale.end]
-    across = "".join(f"M{_LEFT} {float(scale.y(np.array(t))):.0f}H{WIDTH - _RIGHT}" for t in ticks)
+def _axes(scale: Scale, axis: str, limits: Floats) -> list[str]:
+    ticks = deviation_ticks(scale, limits)
+    heights = scale.y(np.array([value for value, _ in ticks]))
+    across = "".join(f"M{_LEFT} {y:.0f}H{WIDTH - _RIGHT}" for y in heights)
     zero = float(scale.y(np.array(0.0)))
     parts = [f'<path class="grid" d="{across}"/><path class="zero" d="M{_LEFT} {zero:.0f}H{WIDTH - _RIGHT}"/>']
-    for tick in ticks:
-        words = "0" if tick == 0.0 else f"{tick:+g}".replace("-", "−")
-        parts.append(svg.text(_LEFT - 6, float(scale.y(np.array(tick))) + 6, words, "e"))
-    span = scale.high - scale.low
-    step = next((s for s in (0.02, 0.05, 0.1, 0.2, 0.5, 1.0) if span / s <= 6), 5.0)
-    marks = np.arange(np.ceil(scale.low / step - 1e-9), np.floor(scale.high / step + 1e-9) + 1) * step
-    places = scale.x(marks)
+    for (value, limit), y in zip(ticks, heights, strict=True):
+        words = "0" if value == 0.0 else f"{value:+.3g}".replace("-", "−")
+        parts.append(svg.text(_LEFT - 6, y + 6, words, "e lim" if limit else "e"))
+    marks = nice_ticks(scale.low, scale.high) if scale.high > scale.low else [float(f"{scale.low:.3g}")]
+    places = scale.x(np.array(marks))
     bottom = HEIGHT - _BOTTOM
     parts.append(f'<path class="zero" d="{"".join(f"M{x:.0f} {bottom}v5" for x in places)}"/>')
-    parts += [svg.text(x, bottom + 23, f"{mark:.3g}", "m") for x, mark in zip(places, marks, strict=True)]
+    parts += [svg.text(x, bottom + 23, plain(mark), "m") for x, mark in zip(places, marks, strict=True)]
     parts.append(svg.text(WIDTH - 2, HEIGHT - 2, axis, "e"))
-    parts.append(svg.text(_LEFT + 6, _TOP + 17, scale.unit, "s"))
+    parts.append(svg.text(2, 15, f"deviation, {scale.unit}"))
     return parts
+
+
+def deviation_ticks(scale: Scale, limits: Floats) -> list[tuple[float, bool]]:
+    """Choose the ticks of the deviations, and tell which are limits: these, and zero, go before any round number.
+
+    Examples
+    --------
+    >>> [value for value, _ in deviation_ticks(Scale(0.5, 1.0, 1.5, 20.0, "%"), np.array([1.5, np.nan, 1.5]))]
+    [0.0, 1.5, -1.5, 20.0, -20.0, 10.0, -10.0, 5.0, -5.0]
+    """
+    known = np.unique([float(f"{limit:.3g}") for limit in limits[np.isfinite(limits) & (limits > 0.0)]]).tolist()
+    if len(known) > _MOST_LIMITS:  # a limit in other units slides: its ends are enough
+        known = [known[0], known[-1]]
+    round_numbers = [step * 10.0**decade for step in (1.0, 5.0, 2.0) for decade in range(6, -4, -1)]
+    offered = [(limit, True) for limit in known] + [(value, False) for value in (scale.end, *round_numbers)]
+    ticks = [(0.0, False)]
+    for value, limit in offered:
+        near = [float(abs(scale.y(np.array(value)) - scale.y(np.array(abs(tick))))) for tick, _ in ticks]
+        if value <= scale.end and min(near) >= _APART:
+            ticks += [(value, limit), (-value, limit)]
+    return ticks
 
 
 def _other_references(block: Block, others: Sequence[Block], scale: Scale) -> list[str]:

@@ -111,4 +111,5 @@ def legend() -> list[tuple[Mark, str]]:
         *steps,
         (Mark("s3 u", "60!", ""), "with unsolved points, which count as not inside"),
         (Mark("na", "n/a", ""), "unavailable: the model has no parameters for the fluid or does not exist for it"),
+        (Mark("na", "–", ""), "no reference has a value at any state: nothing was judged"),
     ]

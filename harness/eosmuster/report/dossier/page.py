@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING, BinaryIO
 
 from eosmuster.record import Record
 from eosmuster.report import words
+from eosmuster.report.cautions import cautions
 from eosmuster.report.cells import encoded
 from eosmuster.report.dossier import colours, data, maps, regions, remarks, svg, tables
 from eosmuster.report.dossier.data import Subject
@@ -41,19 +42,20 @@ def page(record: Record) -> str:
     digest = base64.b64encode(hashlib.sha256(script.encode()).digest()).decode()
     return environment.get_template("page.html").render(
         title=svg.name(record.plan_title or record.plan_name or "Results", 300),
-        service=data.service(record.plan_text),
+        service=_service(record),
         counts=words.counts(record),
         part=record.part,
         decision=[svg.name(line, 1000) for line in words.decision(record.decision)],
-        legend=words.legend(record),
-        first=svg.name(record.references[0]) if record.references else "the reference",
-        references=[svg.name(reference) for reference in record.references],
+        legend=svg.name(words.legend(record), 1000),
+        risk=words.RISK,
+        passing=words.PASSING,
         sections=[section(record, subject, places, len(shown)) for subject in shown],
         left_properties=_left_properties(record, shown),
         mark_legend=maps.legend(),
         edge_legend=list(regions.EDGES.items()),
+        regions_asked=record.regions_asked,
         tables=_tables(record, shown),
-        cautions=[svg.name(line, 1000) for line in words.cautions(record)],
+        cautions=[svg.name(line, 1000) for line in cautions(record)],
         identification=_identification(record),
         plan_text=_plan_text(record),
         style=svg.Markup(_style(environment, len(places))),
@@ -61,6 +63,12 @@ def page(record: Record) -> str:
         policy=f"default-src 'none'; style-src 'unsafe-inline'; script-src 'sha256-{digest}'; img-src data:; "
         "base-uri 'none'; form-action 'none'",
     )
+
+
+def _service(record: Record) -> str:
+    """Give the plan's service as it is shown; nothing if it states none."""
+    stated = data.service(record.plan_text)
+    return svg.name(stated, 300) if stated.strip() else ""
 
 
 def _environment() -> jinja2.Environment:
@@ -96,8 +104,10 @@ def _tables(record: Record, shown: Sequence[Subject]) -> dict[str, tables.Table]
         "statements": remarks.statements(record),
         "conflicts": remarks.conflicts(record),
         "unsolved": remarks.unsolved(record),
+        "no_reference": remarks.no_reference(record),
         "unavailable": remarks.unavailable(record),
         "left_out": remarks.left_out(record),
+        "notes": remarks.notes(record),
         "constants": remarks.constants(record),
         "models": remarks.models(record),
         "citations": remarks.citations(record),

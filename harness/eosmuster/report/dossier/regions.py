@@ -13,8 +13,8 @@ import numpy as np
 from eosmuster.record import POINT_VERDICTS, REGION_EDGES, Block, Floats, Region, Ring
 from eosmuster.report.dossier import svg
 
-WIDTH, HEIGHT = 420, 320
-_LEFT, _RIGHT, _TOP, _BOTTOM = 62, 20, 10, 44
+WIDTH, HEIGHT = 420, 338
+_LEFT, _RIGHT, _TOP, _BOTTOM = 62, 20, 28, 44
 _MOST_STATES = 900
 _DECADES = 20.0  # pressures that span more than this factor are drawn by their logarithm
 _CROSSED = tuple(POINT_VERDICTS.index(verdict) for verdict in ("unsolved",))
@@ -41,15 +41,19 @@ class Plane:
 
     def x(self, temperature: Floats) -> Floats:
         """Place temperatures."""
-        low, high = self.temperatures
-        return np.asarray(_LEFT + (WIDTH - _LEFT - _RIGHT) * (temperature - low) / ((high - low) or 1.0))
+        return _LEFT + (WIDTH - _LEFT - _RIGHT) * _part(temperature, *self.temperatures)
 
     def y(self, pressure: Floats) -> Floats:
         """Place pressures."""
         low, high = self.pressures
         if self.logarithmic:
             low, high, pressure = np.log(low), np.log(high), np.log(np.clip(pressure, low * 1e-3, None))
-        return np.asarray(_TOP + (HEIGHT - _TOP - _BOTTOM) * (1.0 - (pressure - low) / ((high - low) or 1.0)))
+        return _TOP + (HEIGHT - _TOP - _BOTTOM) * (1.0 - _part(pressure, low, high))
+
+
+def _part(value: Floats, low: float, high: float) -> Floats:
+    """Give how far along an axis a value lies, 0 to 1; the middle where the axis has one value alone."""
+    return np.asarray((value - low) / (high - low) if high > low else 0.5 + 0.0 * value)
 
 
 def plane(temperature: Floats, pressure: Floats) -> Plane:
@@ -143,7 +147,7 @@ def _axes(shown: Plane, units: tuple[str, str]) -> list[str]:
         y = float(shown.y(np.array(value)))
         parts.append(f'<path class="frame" d="M{_LEFT} {y:.0f}h-5"/>{svg.text(_LEFT - 9, y + 6, plain(value), "e")}')
     parts.append(svg.text(WIDTH - _RIGHT, HEIGHT - 4, f"T, {units[0]}", "e"))
-    parts.append(svg.text(_LEFT + 6, _TOP + 16, f"p, {units[1]}", "s"))
+    parts.append(svg.text(2, 15, f"p, {units[1]}"))  # above the plane: a region would cover it
     return parts
 
 

@@ -9,10 +9,11 @@ import numpy as np
 
 from eosmuster.record import POINT_VERDICTS, Block, Record
 from eosmuster.report import words
+from eosmuster.report.coverage import silences
 from eosmuster.report.dossier.svg import name
 from eosmuster.report.dossier.tables import Table, cut
+from eosmuster.report.rows import causes_first, unavailable_reasons, unsolved_reasons
 from eosmuster.report.text import list_within, number
-from eosmuster.report.views import unavailable_reasons, unsolved_reasons
 
 STATEMENTS = ("pass", "conditional pass", "conditional fail", "fail", "U not known", "no deviation")
 """The statements of ILAC-G8:09/2019, section 4.2.3, for a guard band of U; then what they say nothing about."""
@@ -40,7 +41,7 @@ def statements(record: Record) -> Table:
     for prop, found in counted.items():
         for verdict, counts in zip(POINT_VERDICTS, found.reshape(len(POINT_VERDICTS), -1).tolist(), strict=True):
             if any(counts):
-                rows.append([prop.replace("_", " "), verdict.replace("_", " "), *(str(n) for n in counts)])
+                rows.append([words.property_label(prop), verdict.replace("_", " "), *(str(n) for n in counts)])
     caption = "Points by verdict of this record and by statement of ILAC-G8:09/2019, against all references"
     return Table("ilac-table", caption, ("property", "verdict here", *STATEMENTS), "wwnnnnnn", rows)
 
@@ -64,7 +65,7 @@ def tolerances(record: Record) -> Table:
 
 def conflicts(record: Record) -> Table:
     """Give the references that disagree among themselves."""
-    rows = [[name(c), name(p.replace("_", " ")), name(s, _NOTE)] for c, p, s in record.conflicts]
+    rows = [[name(c), name(words.property_label(p)), name(s, _NOTE)] for c, p, s in causes_first(record)]
     headers = ["fluid", "property", "who stands alone"]
     return cut("contested-table", "References that disagree", headers, "ttt", rows, 300, "manifest.json")
 
@@ -73,7 +74,7 @@ def unsolved(record: Record) -> Table:
     """Give the unsolved points by their reason."""
     rows = [
         [
-            name(p.replace("_", " ")),
+            name(words.property_label(p)),
             name(c),
             name(why, _NOTE) if why else "no reason given",
             str(n),
@@ -83,6 +84,23 @@ def unsolved(record: Record) -> Table:
     ]
     headers = ["property", "candidate", "why", "points", "fluids"]
     return cut("unsolved-table", "Unsolved points, most first", headers, "tttnl", rows, 300, "points.csv")
+
+
+def no_reference(record: Record) -> Table:
+    """Give the states at which a reference has no value, by fluid and reason."""
+    rows = [
+        [
+            name(group.component),
+            name(group.source),
+            name(group.why, _NOTE) if group.why else "no reason given",
+            f"{group.states} of {group.of}",
+            list_within([words.property_label(prop) for prop in group.properties], _LIST),
+        ]
+        for group in silences(record)
+    ]
+    headers = ["fluid", "reference", "why", "states", "properties"]
+    caption = "States without a reference value, most first"
+    return cut("silent-table", caption, headers, "tttwl", rows, 300, "points.csv", printed=60)
 
 
 def unavailable(record: Record) -> Table:
@@ -99,6 +117,12 @@ def left_out(record: Record) -> Table:
     """Give what was not used at all."""
     rows = [[name(what), name(why, _NOTE)] for what, why in record.left_out]
     return cut("left-table", "Left out", ["what", "why"], "tt", rows, 500, "manifest.json")
+
+
+def notes(record: Record) -> Table:
+    """Give what was found out or marked in reading measured files."""
+    rows = [[name(what), name(note, _NOTE)] for what, note in record.notes]
+    return cut("notes-table", "Notes on measured files", ["file", "note"], "tt", rows, 500, "manifest.json")
 
 
 def constants(record: Record) -> Table:

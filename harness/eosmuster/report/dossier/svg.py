@@ -104,6 +104,21 @@ def dots(x: Floats, y: Floats) -> str:
     return "".join(f"M{a} {u}h0" for a, u in dict.fromkeys(zip(across, up, strict=True)))
 
 
+def marks(x: Floats, y: Floats, place: int) -> tuple[str, str]:
+    """Give class and ``d`` of marks whose shape tells three neighbours in rank apart, also in grey.
+
+    Examples
+    --------
+    >>> [marks(np.array([9.0]), np.array([9.0]), place) for place in range(3)]
+    [('dot', 'M9 9h0'), ('mark', 'M9 3v12m-6-6h12'), ('mark', 'M4 4h10v10h-10z')]
+    """
+    if place % 3 == 0:
+        return "dot", dots(x, y)
+    dx, dy, shape = (0, 6, "v12m-6-6h12") if place % 3 == 1 else (5, 5, "h10v10h-10z")
+    at = dict.fromkeys(zip(np.rint(x).astype(int).tolist(), np.rint(y).astype(int).tolist(), strict=True))
+    return "mark", "".join(f"M{a - dx} {b - dy}{shape}" for a, b in at)
+
+
 def polygon(x: Sequence[float] | Floats, y: Sequence[float] | Floats) -> str:
     """Give the ``d`` of a closed line."""
     corners = " ".join(f"{a:.0f} {b:.0f}" for a, b in zip(x, y, strict=True))

@@ -10,16 +10,22 @@ import numpy as np
 from eosmuster.quantities import from_si
 from eosmuster.record import Block, Record, SummaryRow
 from eosmuster.report import words
+from eosmuster.report.coverage import judged_span
 from eosmuster.report.dossier import data
 from eosmuster.report.dossier.data import Subject
 from eosmuster.report.dossier.svg import name
-from eosmuster.report.text import list_within, number
-from eosmuster.report.views import (
-    Standing,
+from eosmuster.report.rows import worst_rows
+from eosmuster.report.sizes import (
+    Blocks,
     blocks_by_key,
+    deviation_unit,
+    largest,
+    passing_limit,
     signed_maximum,
-    worst_rows,
+    surely_passing_limit,
 )
+from eosmuster.report.text import list_within, number, some
+from eosmuster.report.views import Standing
 
 
 @dataclass(frozen=True)
@@ -83,7 +89,7 @@ def standings(subject: Subject, record: Record) -> Table:
     headers += ["largest deviation", "in", "held", "not held, worst first"]
     return Table(
         subject.anchor("all"),
-        f"{view.label}: candidates, worst first ({words.legend(record)})",
+        f"{view.label}: candidates, worst first ({words.legend(record, view.name)})",
         tuple(headers),
         "tnnnnnnnnnwtll",
         rows,
@@ -114,7 +120,7 @@ def best(subject: Subject, most: int = 6) -> Table:
     view = subject.view
     rows = []
     for s in list(reversed(view.standings))[:most]:
-        judged = len(view.fluids) - len(s.fluids["unavailable"])
+        judged = len(view.fluids) - len(s.fluids["unavailable"]) - len(s.fluids["unjudged"])
         rows.append(
             [
                 name(s.candidate),
@@ -124,17 +130,18 @@ def best(subject: Subject, most: int = 6) -> Table:
                 str(len(s.fluids["undecided"])),
                 str(s.unsolved),
                 f"{words.largest(s)}{f' ({name(s.worst.component, 40)})' if s.worst else ''}",
+                words.risk(s.risk),
                 str(len(s.fluids["unavailable"])) if s.fluids["unavailable"] else "-",
             ]
         )
     headers = ["candidate", "fluids held", "held against every reference", "points inside", "fluids undecided"]
-    headers += ["points unsolved", "largest deviation", "fluids n/a"]
+    headers += ["points unsolved", "largest deviation", "risk, %", "fluids n/a"]
     caption = f"{view.label}: the best candidates"
     return Table(
         subject.anchor("best"),
         caption,
         tuple(headers),
-        "tnnnnntn",
+        "tnnnnntnn",
         rows,
         max(len(view.standings) - most, 0),
         "the tables below",
@@ -143,7 +150,8 @@ def best(subject: Subject, most: int = 6) -> Table:
 
 def summary(subject: Subject, record: Record, most: int) -> Table:
     """Give the summary rows of the references that answer, worst first, then what is unavailable."""
-    rows = worst_rows(subject.rows)
+    blocks = blocks_by_key(record.blocks)
+    rows = worst_rows(subject.rows, blocks)
     listed = {id(row) for row in rows}
     rows += [row for row in subject.rows if id(row) not in listed]
     unit = words.temperature_unit(record)
@@ -159,13 +167,16 @@ def summary(subject: Subject, record: Record, most: int) -> Table:
         "RMS, %",
     ]
     headers += ["median, %", "P95, %", "max, %", f"at, {unit}", "inside", "undecided", "outside", "unsolved"]
-    headers += ["passes at limit, %", "verdict"]
+    silent = any(row.no_reference for row in rows)  # a column of noughts would only take paper
+    headers += ["no reference"] if silent else []
+    own, _ = deviation_unit(subject.view.name)
+    headers += [f"passes at limit, {own}", f"surely at, {own}", "risk, %", "verdict"]
     return cut(
         subject.anchor("rows"),
         f"{subject.view.label}: every fluid and candidate against the reference that answers, worst first",
         headers,
-        "tttnnnnnnnnnnnnnnnw",
-        [_summary_row(row, record) for row in rows[:most]] + [[]] * max(len(rows) - most, 0),
+        f"ttt{'n' * (len(headers) - 4)}w",
+        [_summary_row(row, record, blocks, silent=silent) for row in rows[:most]] + [[]] * max(len(rows) - most, 0),
         most,
         "summary.csv",
         printed=40,
@@ -173,7 +184,7 @@ def summary(subject: Subject, record: Record, most: int) -> Table:
     )
 
 
-def _summary_row(row: SummaryRow, record: Record) -> list[str]:
+def _summary_row(row: SummaryRow, record: Record, blocks: Blocks, *, silent: bool) -> list[str]:
     def degrees(kelvin: float) -> str:
         return number(words.shown_temperature(record, kelvin), 5)
 
@@ -181,12 +192,14 @@ def _summary_row(row: SummaryRow, record: Record) -> list[str]:
     return [
         *(name(n, 60) for n in (row.component, row.candidate, row.reference_source)),
         str(row.points),
-        degrees(row.from_K),
-        degrees(row.to_K),
+        *(degrees(kelvin) for kelvin in judged_span(blocks, row)),
         *(number(float(d), 3) for d in deviations),
         degrees(row.max_at_K),
         *(str(n) for n in (row.inside, row.undecided, row.outside, row.unsolved)),
-        number(float(row.passing_limit_pct), 3),
+        *([str(row.no_reference)] if silent else []),
+        number(passing_limit(blocks, row, record.decision.get("rule")), 3),
+        number(surely_passing_limit(blocks, row), 3),
+        words.risk(row.false_acceptance_pct),
         row.verdict,
     ]
 
@@ -220,37 +233,40 @@ def regions(subject: Subject, record: Record, most: int) -> Table:
             words.percent(r.share) if np.isfinite(r.share) else "-",
             str(r.connected),
             str(len(r.holes)),
-            words.region_span(record, r),
+            *words.region_ends(record, r),
         ]
         for r in sorted(subject.regions, key=lambda r: -r.share if np.isfinite(r.share) else 0.0)
     ]
     headers = ["candidate", "fluid", "reference", "phase", "share of the rectangle", "separate regions", "holes"]
-    headers += [f"temperatures, {words.temperature_unit(record)}"]
+    headers += [f"temperatures, {words.temperature_unit(record)}", f"pressures, {pressure_unit(record)}"]
     caption = f"{subject.view.label}: regions of temperature and pressure, the largest first"
     return cut(
-        subject.anchor("areas"), caption, headers, "tttwnnnw", rows, most, "regions.csv", printed=40, sortable=True
+        subject.anchor("areas"), caption, headers, "tttwnnnww", rows, most, "regions.csv", printed=40, sortable=True
     )
 
 
 def worst(shown: Sequence[Subject], record: Record, most: int = data.MOST_WORST) -> Table:
     """Give the worst points: of every candidate and property the fluids it does worst for, one point each."""
-    blocks = blocks_by_key(record)
+    blocks = blocks_by_key(record.blocks)
     candidates = sum(len(subject.view.standings) for subject in shown)
     each = max(most // max(candidates, 1), 1)
     found: list[tuple[float, list[str]]] = []
+    fluids = 0
     for subject in shown:
         taken: dict[str, int] = {}
-        known = [row for row in subject.rows if np.isfinite(row.max_pct)]
-        for row in sorted(known, key=lambda row: -abs(row.max_pct)):
+        sizes = [(largest(blocks, row), row) for row in subject.rows]
+        for _, row in sorted((pair for pair in sizes if np.isfinite(pair[0])), key=lambda pair: -pair[0]):
             taken[row.candidate] = taken.get(row.candidate, 0) + 1
             if taken[row.candidate] <= each:
                 found.append(_worst_row(record, subject, row, signed_maximum(blocks, row)))
+        fluids = max(fluids, len({row.component for size, row in sizes if np.isfinite(size)}))
     found.sort(key=lambda pair: -pair[0])
     unit = words.temperature_unit(record)
     headers = ["property", "fluid", "candidate", "reference", f"at, {unit}", "T/Tc", f"p, {pressure_unit(record)}"]
     headers += ["predicted", "reference value", "unit", "deviation", "limit", "verdict"]
     which = "fluid" if each == 1 else f"{each} fluids"
-    caption = f"Worst points: of each candidate and property the {which} with the largest deviation, one point each; "
+    which = f"the {which} with the largest deviation" if fluids > each else some(fluids, "fluid")
+    caption = f"Worst points: of each candidate and property {which}, one point each; "
     caption += "those that exceed their limit most come first"
     rows = [cells for _, cells in found]
     return cut("worst", caption, headers, "wtttnnnnnwnnw", rows, most, "points.csv", printed=60, sortable=True)
