@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import csv
 from collections.abc import Callable
-from dataclasses import fields
+from dataclasses import fields, replace
 from pathlib import Path
 from typing import Any
 
@@ -96,12 +96,14 @@ def test_names_aliases_and_cas_numbers(name: str) -> None:
         (("propan", "PR"), {"temperature": 300.0}, ("'propan' is unknown", "nearest: propan")),
         (("R410A", "PR"), {"temperature": 300.0}, ("left out", "a blend")),
         (("propane", "PR87"), {"temperature": 300.0}, ("'PR87'", "nearest: PR78")),
+        (("propane", ["PR", "SRK"]), {"temperature": 300.0}, ("unknown model a list",)),
+        ((["propane"], "PR"), {"temperature": 300.0}, ("component = a list", "neither a name nor a Component")),
         (("helium", "PR-Twu91"), {"temperature": 4.0}, ("PR-Twu91 is unavailable for Helium", "no parameters")),
         (("propane", "PR"), {"temperature": "hot"}, ("temperature = 'hot' is not a number",)),
         (("propane", "PR"), {"pressure": [[1.0], [1.0, 2.0]]}, ("pressure = ", "not a number or an array")),
     ],
 )
-def test_bad_calls(arguments: tuple[str, str], keywords: dict[str, Any], fragments: tuple[str, ...]) -> None:
+def test_bad_calls(arguments: tuple[Any, Any], keywords: dict[str, Any], fragments: tuple[str, ...]) -> None:
     with pytest.raises(em.InputError) as caught:
         em.saturate(*arguments, **keywords)
     message = str(caught.value)
@@ -158,6 +160,14 @@ def test_tables_have_the_columns_of_the_files(plan_file: PlanFile, tmp_path: Pat
     assert list(results.summary) == [field.name for field in fields(SummaryRow)]
     assert list(results.windows) == [field.name for field in fields(WindowRow)]
     assert set(results.points["verdict"]) <= set(POINT_VERDICTS)
+
+
+def test_a_part_with_nothing_to_do_has_empty_tables(plan_file: PlanFile) -> None:
+    part, whole = (em.sweep(replace(read_plan(plan_file()), part=part)) for part in ((2, 2), None))
+    assert part.record.blocks == ()
+    for name in ("points", "summary", "windows"):
+        assert getattr(part, name).empty
+        assert list(getattr(part, name)) == list(getattr(whole, name))
 
 
 def test_results_are_saved_whole_and_never_over_others_by_accident(plan_file: PlanFile, tmp_path: Path) -> None:

@@ -10,7 +10,7 @@ import re
 import subprocess
 import sys
 import time
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Iterator, Mapping
 from pathlib import Path
 from typing import NamedTuple
 
@@ -115,6 +115,38 @@ def test_points_can_be_left_out(command: Command, plan_file: PlanFile) -> None:
     assert json.loads((folder / "manifest.json").read_text())["points"] == {"rows": 4, "written": False}
 
 
+PUMP = """
+components = ["propane", "ammonia"]
+models = ["PR", "SRK"]
+properties = ["density"]
+[states.single_phase]
+temperature = ["-20 degC", "0 degC", "20 degC"]
+pressure = ["15 bar", "25 bar", "40 bar"]
+phase = "liquid"
+[tolerance]
+density = "15 %"
+"""
+
+
+def test_regions_can_be_left_out(command: Command, tmp_path: Path) -> None:
+    plan = tmp_path / "pump.toml"
+    plan.write_text(PUMP)
+    assert command("sweep", plan, "--out", "with").status == 0
+    assert command("sweep", plan, "--out", "without", "--regions", "no").status == 0
+    plan.write_text(PUMP.replace("[tolerance]", 'regions = "no"\n[tolerance]'))
+    assert command("sweep", plan, "--out", "again", "--regions", "yes").status == 0
+    has = {"regions.csv", "regions.json"}
+    names = {place: {path.name for path in Path(place).iterdir()} for place in ("with", "without", "again")}
+    assert names == {"with": CONTRACT_FILES | has, "without": CONTRACT_FILES, "again": CONTRACT_FILES | has}
+    asked = {place: json.loads(Path(place, "manifest.json").read_text())["regions"] for place in names}
+    assert asked == {"with": {"rows": 3}, "without": {"rows": 0, "asked": False}, "again": {"rows": 3}}
+    for name in ("summary.md", "dossier.html"):
+        said = [place for place in names if "not asked for" in Path(place, name).read_text()]
+        assert said == ["without"], name
+    assert Path("with/points.csv").read_bytes() == Path("without/points.csv").read_bytes()
+    assert command("replay", "without").status == 0
+
+
 def test_a_second_run_replaces_the_first_and_nothing_else(command: Command, plan_file: PlanFile) -> None:
     command("sweep", plan_file("a"))
     command("sweep", plan_file("b"))
@@ -196,6 +228,14 @@ def test_help_and_version(capsys: pytest.CaptureFixture[str]) -> None:
     assert "Exit status: 0 done; 1 gate not met, or drift; 2 bad plan" in " ".join(capsys.readouterr().out.split())
 
 
+def test_the_help_of_list_says_what_each_topic_is(capsys: pytest.CaptureFixture[str]) -> None:
+    with pytest.raises(SystemExit):
+        cli.main(["list", "--help"])
+    said = " ".join(capsys.readouterr().out.split())
+    for topic in ("models", "components", "references", "properties", "plans"):
+        assert f"{topic}: " in said
+
+
 # ---------------------------------------------------------------- exit statuses 1, 3 and 4
 
 
@@ -214,6 +254,18 @@ def test_a_gate_that_is_not_met(command: Command, plan_file: PlanFile) -> None:
 
 def test_a_gate_that_is_met(command: Command, plan_file: PlanFile) -> None:
     assert command("sweep", plan_file(tail=HUGE_LIMIT), "--gate").status == 0
+
+
+def test_a_gate_that_nothing_was_judged_of_is_not_met(command: Command, plan_file: PlanFile) -> None:
+    """No reference knows the plan's own component; the pytest plugin fails its item as well."""
+    plan = plan_file(components='["propane"]', models='["PR"]', tail=f"{HUGE_LIMIT}\n{OWN_COMPONENT}")
+    done = command("sweep", plan, "--gate")
+    assert done.status == 1
+    first, named = done.err.splitlines()
+    assert first == "eosmuster: the gate is not met: 1 not judged at all"
+    assert named.startswith("  nothing was judged of 1 that the gate asks: ")
+    assert named.endswith(" | PR | saturation_pressure")
+    assert command("sweep", plan).status == 0
 
 
 def test_an_internal_failure(command: Command, plan_file: PlanFile, monkeypatch: pytest.MonkeyPatch) -> None:
@@ -238,11 +290,15 @@ def test_states_above_the_critical_point_cannot_be_judged(
     assert done.status == 4
     assert done.err.startswith("eosmuster: nothing could be judged: no ")
     assert done.err.count("\n") == 1
+    # what has a record is written, and what has none says so
+    written = Path("eosmuster-results/small/manifest.json").exists()
+    assert done.err.endswith("; no results folder is written\n") != written
 
 
 def test_own_components_alone_cannot_be_judged(command: Command, plan_file: PlanFile) -> None:
     done = command("sweep", plan_file(components="", tail=OWN_COMPONENT))
-    sentence(done, 4, "nothing could be judged", "no reference has a value")
+    sentence(done, 4, "nothing could be judged", "no reference has a value", "; no results folder is written")
+    assert not Path("eosmuster-results").exists()
 
 
 def test_a_model_without_parameters_cannot_be_judged(command: Command, plan_file: PlanFile) -> None:
@@ -539,12 +595,98 @@ def _read(descriptor: int) -> bytes:
 # ---------------------------------------------------------------- where the output goes
 
 
-def test_a_pipe_that_closes_early_is_no_error(python: str, environment: Mapping[str, str]) -> None:
+@pytest.fixture
+def nobody_reads(monkeypatch: pytest.MonkeyPatch) -> Iterator[None]:
+    """Let stdout be a pipe whose reader has gone."""
+    reading, writing = os.pipe()
+    os.close(reading)
+    with os.fdopen(writing, "w", encoding="utf-8") as stream:
+        monkeypatch.setattr(sys, "stdout", stream)
+        yield
+
+
+@pytest.mark.usefixtures("nobody_reads")
+@pytest.mark.parametrize(
+    ("arguments", "status", "said"),
+    [
+        (("sweep", "vdw.toml", "--gate"), 1, "eosmuster: the gate is not met: 4 outside\n  n-Propane, vdW"),
+        (("sweep", "vdw.toml"), 0, ""),
+        (("saturate", "propane", "-T", "400 K", "-m", "PR"), 4, "eosmuster: no model has a saturated state there\n"),
+        (("list", "plans"), 0, ""),
+    ],
+    ids=lambda value: " ".join(value) if isinstance(value, tuple) else None,
+)
+def test_a_reader_that_has_gone_does_not_change_the_status(
+    tmp_path: Path,
+    monkeypatch: pytest.MonkeyPatch,
+    capsys: pytest.CaptureFixture[str],
+    plan_file: PlanFile,
+    arguments: tuple[str, ...],
+    status: int,
+    said: str,
+) -> None:
+    plan_file("vdw", models='["vdW"]')
+    monkeypatch.chdir(tmp_path)
+    assert cli.main(arguments) == status
+    assert capsys.readouterr().err.startswith(said)
+    assert ("sweep" in arguments) == Path("eosmuster-results/vdw/summary.csv").exists()
+
+
+@pytest.mark.usefixtures("nobody_reads")
+def test_files_are_written_though_nobody_reads_what_is_printed(plan_file: PlanFile, tmp_path: Path) -> None:
+    place = str(tmp_path / "results")
+    assert cli.main(["sweep", str(plan_file()), "--out", place, "--dossier", "no"]) == 0
+    assert cli.main(["drift", place, place, "--csv", str(tmp_path / "rows.csv")]) == 0
+    assert (tmp_path / "rows.csv").exists()
+
+
+def test_complaints_need_no_reader_either(
+    monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    reading, writing = os.pipe()
+    os.close(reading)
+    with os.fdopen(writing, "w", encoding="utf-8") as stream:
+        monkeypatch.setattr(sys, "stderr", stream)
+        assert cli.main(["saturate", "propan", "-T", "300"]) == 2
+        assert cli.main(["saturate", "propan", "-T", "300", "--debug"]) == 2
+
+
+@pytest.mark.skipif(not Path("/dev/full").exists(), reason="no device here that is always full")
+def test_what_cannot_be_printed_is_said(monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]) -> None:
+    with Path("/dev/full").open("w", encoding="utf-8") as full:
+        monkeypatch.setattr(sys, "stdout", full)
+        assert cli.main(["list", "plans"]) == 2
+    said = "eosmuster: what is to be printed cannot be written: No space left on device\n"
+    assert capsys.readouterr().err == said
+
+
+def test_without_any_stdout_the_work_is_done(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(sys, "stdout", None)  # as Python has it where the process was started without one
+    assert cli.main(["list", "plans"]) == 0
+
+
+@pytest.mark.parametrize("name", ["\x1b[31mred", "\u202eturned"])
+def test_names_do_not_steer_the_terminal(command: Command, name: str) -> None:
+    for arguments in (
+        ("sweep", f"{name}.toml"),
+        ("combine", name),
+        ("replay", name),
+        ("sweep", "--out", name, "x.t"),
+    ):
+        done = command(*arguments)
+        assert done.status == 2
+        assert done.err.rstrip("\n").isprintable()
+
+
+@pytest.mark.parametrize("arguments", [("list", "components"), ("--help",)], ids=" ".join)
+def test_a_pipe_that_closes_early_is_no_error(
+    python: str, environment: Mapping[str, str], arguments: tuple[str, ...]
+) -> None:
     reading, writing = os.pipe()
     os.close(reading)
     try:
         done = subprocess.run(
-            [python, "-m", "eosmuster", "list", "components"],
+            [python, "-m", "eosmuster", *arguments],
             stdout=writing,
             stderr=subprocess.PIPE,
             env=dict(environment),

@@ -34,6 +34,7 @@ plant cut 7,420,2.75,571
 propane,300,998,490
 n-butane,310,3.5,560
 nobody knows,300,1,500
+n-butane,330,6.1,535
 """
 
 MEASURED = """

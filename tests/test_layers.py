@@ -33,6 +33,7 @@ FLOORS = (
     {"plan"},
     {"models"},
     {"components"},
+    {"reference_rows"},
     {"quantities", "paths"},
     {"errors", "progress"},
 )
@@ -44,7 +45,7 @@ ONLY = {
     "diagnose": {"record", "components", "quantities", "errors"},
     "record": set(),
     "progress": set(),
-    "sources": {"components", "quantities", "paths", "errors", "progress"},
+    "sources": {"components", "reference_rows", "quantities", "paths", "errors", "progress"},
     "saturation": {"models", "quantities", "errors"},
     "singlephase": {"models", "quantities", "errors"},
     "drifting": {"report", "record", "quantities", "paths", "errors"},

@@ -26,11 +26,13 @@ def test_how_many_fluids_have_something_of_each_property() -> None:
     """The least that a survey of all classes of fluids needs: our own numbers."""
     columns = {name: list(map(int, row(TEXT.partition("\n\n")[0], name)[1:])) for name in listing.BY_FLUID}
     known = {c.property: c for c in handbook.coverage()}
-    for name, (equation, correlations, tables, either, uncertainty) in columns.items():
+    for name, (equation, correlations, tables, either, uncertainty, read) in columns.items():
         assert equation == len(catalogue())
         assert (correlations, tables, either) == (known[name].correlations, known[name].tables, known[name].either)
         asked = "saturation_pressure" if name == "boiling_temperature" else name
         assert uncertainty == sum(bool(stated.statements(c, asked)) for c in catalogue())
+        noted = [s for c in catalogue() for s in stated.statements(c, asked) if "memory" not in s.how_read]
+        assert read == len({s.component for s in noted})
     assert columns["saturation_pressure"][1] >= 95
     assert columns["liquid_density"][1] >= 75
     assert columns["enthalpy_of_vaporization"][1] >= 70

@@ -10,7 +10,10 @@ import numpy as np
 import pytest
 
 from eosmuster.components import catalogue, find
+from eosmuster.models.catalogue import CATALOGUE
+from eosmuster.models.records import Tabulated
 from eosmuster.paths import references_folder
+from eosmuster.sources.bibliography import bibliography
 from eosmuster.sources.library import saturation
 from eosmuster.sources.library_gate import limits
 
@@ -43,6 +46,16 @@ def test_the_generator_writes_the_committed_tables(tmp_path):
     generator["main"]()
     for name in FILES:
         assert (tmp_path / name).read_bytes() == (folder / "parameters" / name).read_bytes(), name
+
+
+@pytest.mark.parametrize("record", CATALOGUE.values(), ids=CATALOGUE)
+def test_a_model_names_every_publication_that_its_table_came_from(record):
+    """By the first author's family name; a table of our own calculation has none."""
+    parameters = [*record.parameters.values(), getattr(record.translation, "shift", None)]
+    files = {p.file for p in parameters if isinstance(p, Tabulated)}
+    for key in {row["source"] for name in files for row in rows(name)}:
+        first = bibliography()[key].partition(":")[0].split(", ")[0].split()[-1]
+        assert first in record.source, (record.name, key)
 
 
 def bell_2018():

@@ -242,11 +242,11 @@ def test_a_sweep_that_breaks_is_shown_once_and_not_repeated(run: Run, monkeypatc
 
 
 def test_a_plan_found_wrong_by_its_sweep_is_an_error_of_one_sentence(run: Run) -> None:
-    """The constants of a table that does not exist: known only to the sweep."""
-    result = run(GATED + '[constants]\nsource = "crc-59"\n')
+    """Measured files that do not exist: known only to the sweep."""
+    result = run(GATED.replace('["handbook"]', '["handbook"]\nfiles = ["lab/*.csv"]'))
     result.assert_outcomes(errors=2)
     shown = result.stdout.str()
-    assert "crc-59" in shown
+    assert "lab/*.csv" in shown
     assert "Traceback" not in shown
     assert ".py" not in shown
 
@@ -257,6 +257,7 @@ def test_a_plan_found_wrong_by_its_sweep_is_an_error_of_one_sentence(run: Run) -
 @pytest.mark.parametrize(
     ("plan", "sentence"),
     [
+        (PLAN + '[constants]\nsource = "crc-59"', "constants.source = 'crc-59' is unknown; nearest: crc-95"),
         (PLAN.replace('"vdW"', '"PR87"'), "models: unknown model 'PR87'; nearest: PR78"),
         (PLAN + '[gate]\ncandidates = ["PR78"]', "gate.candidates: 'PR78' is none of the plan's candidates"),
         ("", "is empty; a plan names at least its components and properties"),

@@ -19,7 +19,7 @@ from eosmuster.api import sweep
 from eosmuster.commands import replay as command
 from eosmuster.errors import InputError
 from eosmuster.plan.parts import plan_part
-from eosmuster.plan.reading import load_plan
+from eosmuster.plan.reading import load_plan, parse_plan
 from eosmuster.plan.schema import Plan
 from eosmuster.record import Record
 from eosmuster.replaying import Replay, replay, replay_text
@@ -36,34 +36,17 @@ temperature = ["280 K", "320 K", "360 K"]
 [references]
 use = ["coolprop"]
 files = ["lab/*.csv"]
-[[component]]
-name = "plant cut 7"
-critical_temperature = "540.2 K"
-critical_pressure = "27.4 bar"
-acentric_factor = 0.35
-molar_mass = "100.2 g/mol"
-source = "invented"
-[[model]]
-name = "my PR"
-form = "Peng-Robinson"
-alpha = "Soave"
-parameters = { m = [0.37464, 1.54226, -0.26992] }
-source = "invented"
-"""
-LAB = """substance,temperature [K],saturation pressure [kPa],u(saturation pressure) [kPa]
-plant cut 7,320,14.3,0.1
-plant cut 7,360,62.2,0.4
 """
 BUILT_IN = "ammonia-refrigeration"
 
 
 @pytest.fixture(scope="module")
-def original(tmp_path_factory: pytest.TempPathFactory) -> Path:
+def original(tmp_path_factory: pytest.TempPathFactory, plant_cut: str, lab: str) -> Path:
     """A plan with measured files, and its results beside it."""
     place = tmp_path_factory.mktemp("original")
     (place / "lab").mkdir()
-    (place / "lab" / "psat.csv").write_text(LAB, encoding="utf-8")
-    (place / "plan.toml").write_text(PLAN, encoding="utf-8")
+    (place / "lab" / "psat.csv").write_text(lab, encoding="utf-8")
+    (place / "plan.toml").write_text(PLAN + plant_cut, encoding="utf-8")
     sweep(place / "plan.toml").save(place / "results")
     return place
 
@@ -147,9 +130,9 @@ def test_an_output_that_was_cut_or_removed_is_named_and_the_plan_still_run(place
     assert cut.findings[0].startswith(f"{name} is not as its run wrote it")
 
 
-def test_a_measured_file_that_changed_is_named_and_moves_its_rows(place: Path) -> None:
+def test_a_measured_file_that_changed_is_named_and_moves_its_rows(place: Path, lab: str) -> None:
     file = place / "lab" / "psat.csv"
-    file.write_text(LAB.replace("62.2", "72.2"), encoding="utf-8")
+    file.write_text(lab.replace("62.2", "72.2"), encoding="utf-8")
     found = again(place)
     assert [s for s in found.findings if s.startswith("measured file lab/psat.csv has changed: SHA-256 ")]
     assert found.drift is not None
@@ -157,10 +140,26 @@ def test_a_measured_file_that_changed_is_named_and_moves_its_rows(place: Path) -
     assert {row.key.component for row in found.drift.rows} == {"plant cut 7"}
 
 
-def test_a_measured_file_that_is_new_is_named(place: Path) -> None:
-    (place / "lab" / "more.csv").write_text(LAB.replace("320,14.3", "330,20.5"), encoding="utf-8")
+def test_a_measured_file_that_is_new_is_named(place: Path, lab: str) -> None:
+    (place / "lab" / "more.csv").write_text(lab.replace("320,14.3", "330,20.5"), encoding="utf-8")
     found = again(place)
     assert any("measured file lab/more.csv" in sentence and "is new" in sentence for sentence in found.findings)
+
+
+def test_a_descriptor_that_changed_came_or_went_is_named(place: Path) -> None:
+    """It says how its file is read, so it is as much of the evidence as the file itself."""
+    file = place / "lab" / "psat.json"
+    file.write_text('{"fields": []}', encoding="utf-8")
+    [new] = again(place).findings
+    assert "measured file lab/psat.json: SHA-256 " in new
+    assert new.endswith(" is new")
+    sweep(place / "plan.toml").save(place / "results", overwrite=True)
+    assert again(place).same
+    file.write_text('{"fields": [], "method": "static"}', encoding="utf-8")
+    [changed] = again(place).findings
+    assert changed.startswith("measured file lab/psat.json has changed: SHA-256 ")
+    file.unlink()
+    assert again(place).findings == (f"measured file lab/psat.json is missing in {place}",)
 
 
 def test_measured_files_that_are_not_there_cannot_be_replayed(place: Path) -> None:
@@ -239,7 +238,7 @@ def test_a_manifest_that_says_otherwise_than_its_plan(place: Path) -> None:
     found = again(place)
     assert not found.same
     assert found.findings == (
-        "the manifest says otherwise than this run: constants of plant cut 7, acentric_factor: 0.36 -> 0.35",
+        "the manifest says otherwise than this run: constants, plant cut 7, acentric_factor, value: 0.36 -> 0.35",
     )
 
 
@@ -249,7 +248,7 @@ def test_a_manifest_that_says_otherwise_than_its_plan(place: Path) -> None:
         ({"text": "components = [", "name": "x"}, "is not valid TOML"),
         ({"text": 7, "name": "x"}, "plan has no text and name"),
         ({}, "plan has no text and name"),
-        ({"text": PLAN.replace("propane", "unobtainium"), "name": "x"}, "unobtainium"),
+        ({"text": 'components = ["unobtainium"]', "name": "x"}, "unobtainium"),
     ],
 )
 def test_a_plan_that_cannot_be_run(place: Path, plan: dict[str, Any], words: str) -> None:
@@ -274,11 +273,69 @@ def test_a_part_of_a_plan_is_run_again_as_that_part(place: Path, monkeypatch: py
         replay(place / "results", plan_folder=place)
 
 
-def test_a_manifest_of_an_earlier_version_may_say_less_of_a_model(place: Path) -> None:
-    remade(place, lambda m: m["models"]["PR"].pop("alpha"))
+def test_a_part_without_a_component_is_the_same_again(tmp_path: Path) -> None:
+    """It has no rows, which are none that cannot be read."""
+    one = 'components = ["propane"]\nmodels = ["PR"]\nproperties = ["saturation_pressure"]\n'
+    save(run(plan_part(parse_plan(one, "one", "one.toml"), 2, 2)), tmp_path / "results", overwrite=False)
+    found = replay(tmp_path / "results")
+    assert found.same
+    assert found.findings == found.different == ()
+    assert str(found).startswith("replay: the same; no drift: 0 rows unchanged")
+
+
+TAMPERED: dict[str, tuple[Callable[[dict[str, Any]], Any], str]] = {
+    "points": (lambda m: m["points"].update(rows=7), "points, rows: 7 -> "),
+    "points written": (lambda m: m["points"].update(written=False), "points, written: false -> true"),
+    "summary": (lambda m: m["summary"].pop("rows"), "summary, rows is new"),
+    "windows": (lambda m: m.pop("windows"), "windows is new"),
+    "a model": (lambda m: m["models"].pop("my PR"), "models, my PR is new"),
+    "a component": (lambda m: m["constants"].pop("n-Propane"), "constants, n-Propane is new"),
+    "a component too many": (lambda m: m["constants"].update(x={}), "constants, x has gone"),
+    "a citation": (lambda m: m["citations"].pop("coolprop"), "citations, coolprop is new"),
+    "a source": (
+        lambda m: m["constants"]["plant cut 7"]["molar_mass"].update(source="page 7"),
+        'constants, plant cut 7, molar_mass, source: "page 7" -> ',
+    ),
+    "a rationale": (lambda m: m["decision"]["tolerances"][0].update(rationale=""), "decision, tolerances, "),
+    "what was left out": (lambda m: m["left_out"].append({"what": "x", "why": "y"}), "left_out, {"),
+    "a title": (lambda m: m["plan"].update(title="approved"), 'plan, title: "approved" -> '),
+    "something new": (lambda m: m.update(approved="yes"), "approved has gone"),
+}
+
+
+def test_whatever_a_manifest_was_tampered_with_is_named(place: Path) -> None:
+    """Not a number of the run moves by it, and the outputs are as they were."""
+    for change, _ in TAMPERED.values():
+        remade(place, change)
+    found = again(place)
+    assert not found.same
+    assert found.different == ()
+    assert len(found.findings) == len(TAMPERED) + 1  # the rationale that was there is missing
+    for _, words in TAMPERED.values():
+        assert any(f"the manifest says otherwise than this run: {words}" in one for one in found.findings), words
+
+
+@pytest.mark.parametrize("name", ["points", "a model"])
+def test_one_thing_tampered_with_is_enough(place: Path, name: str) -> None:
+    change, words = TAMPERED[name]
+    remade(place, change)
+    [finding] = again(place).findings
+    assert words in finding
+
+
+def test_a_manifest_of_an_earlier_version_may_be_worded_otherwise(place: Path) -> None:
+    def earlier(content: dict[str, Any]) -> None:
+        content["volatile"]["versions"]["eosmuster"] = "0.0.1"
+        content["models"]["PR"].pop("alpha")
+
+    remade(place, earlier)
     found = again(place)
     assert found.same
-    assert "model PR, alpha: Soave is new" in found.remarks
+    assert "the manifest says otherwise than this run: models, PR, alpha is new" in found.remarks
+    remade(place, lambda m: m["models"].pop("PR"))
+    assert again(place).findings == ("the manifest says otherwise than this run: models, PR is new",)
+    remade(place, lambda m: m["constants"]["plant cut 7"]["acentric_factor"].update(value=0.36))
+    assert any("constants of plant cut 7, acentric_factor: 0.36 -> 0.35" in one for one in again(place).findings)
 
 
 def test_no_results_folder(tmp_path: Path) -> None:

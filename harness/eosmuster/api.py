@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, fields
 from functools import cached_property
 from pathlib import Path
+from types import MappingProxyType
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -85,8 +86,10 @@ def saturate(
             "give exactly one of temperature and pressure: by the phase rule a saturated pure substance has "
             "one degree of freedom, and the other follows"
         )
-    if model not in CATALOGUE:
-        raise InputError(f"unknown model {model!r}; {suggestion(model, CATALOGUE, most=30)}")
+    if not isinstance(model, str) or model not in CATALOGUE:
+        raise InputError(f"unknown model {shown(model)}; {suggestion(str(model), CATALOGUE, most=30)}")
+    if not isinstance(component, str | Component):
+        raise InputError(f"component = {shown(component)} is neither a name nor a Component")
     substance = find(component) if isinstance(component, str) else component
     bound = bind(CATALOGUE[model], [substance])
     check_bound(bound, substance)
@@ -130,10 +133,11 @@ class Results:
 
     @cached_property
     def points(self) -> pd.DataFrame:
-        """One row a point."""
+        """One row a point; none, but all columns, where the record has no block (a part with nothing to do)."""
         import pandas as pd
 
-        return pd.concat([_points(block) for block in self.record.blocks], ignore_index=True)
+        tables = [_points(block) for block in self.record.blocks]
+        return pd.concat(tables, ignore_index=True) if tables else pd.DataFrame(columns=list(_COLUMNS))
 
     @cached_property
     def summary(self) -> pd.DataFrame:
@@ -196,40 +200,57 @@ def read_plan(plan: str | os.PathLike[str] | None) -> Plan:
     return load_plan(path)
 
 
+def _states(name: str) -> Callable[[Block], NDArray[Any]]:
+    """Repeat what belongs to a state for every candidate."""
+    return lambda block: np.tile(getattr(block, name), len(block.candidates))
+
+
+def _candidates(name: str) -> Callable[[Block], NDArray[Any]]:
+    """Repeat what belongs to a candidate for every state."""
+    return lambda block: np.repeat(np.asarray(getattr(block, name), object), block.temperature.size)
+
+
+def _each(name: str) -> Callable[[Block], NDArray[Any]]:
+    """Give what belongs to a point, candidate by candidate."""
+    return lambda block: np.asarray(getattr(block, name).ravel())
+
+
+def _named(name: str, names: Callable[[Block], Sequence[str]]) -> Callable[[Block], NDArray[Any]]:
+    """Give the names that the numbers of points stand for."""
+    return lambda block: np.asarray(names(block), object)[getattr(block, name).ravel()]
+
+
+_COLUMNS: Mapping[str, Callable[[Block], NDArray[Any] | str]] = MappingProxyType(
+    {
+        "component": lambda block: block.component,
+        "cas": lambda block: block.cas,
+        "candidate": _candidates("candidates"),
+        "property": lambda block: block.property,
+        "temperature_K": _states("temperature"),
+        "pressure_Pa": _states("pressure"),
+        "phase": lambda block: block.phase,
+        "reduced_temperature": _states("reduced_temperature"),
+        "predicted": _each("predicted"),
+        "reference": _states("reference"),
+        "unit": lambda block: block.unit,
+        "reference_source": lambda block: block.reference_source,
+        "reference_uncertainty_pct": _states("reference_uncertainty_pct"),
+        "deviation_pct": _each("deviation_pct"),
+        "limit_pct": _states("limit_pct"),
+        "probability_inside": _each("probability_inside"),
+        "verdict": _named("verdict", lambda _block: POINT_VERDICTS),
+        "contested": lambda block: block.contested,
+        "independence": _candidates("independence"),
+        "note": _named("note", lambda block: block.notes),
+    }
+)
+"""Columns of the table of points, in the order of ``points.csv``."""
+
+
 def _points(block: Block) -> pd.DataFrame:
     import pandas as pd
 
-    m, n = block.verdict.shape
-
-    def states(values: Floats) -> Floats:
-        return np.tile(values, m)
-
-    def candidates(values: Sequence[str]) -> NDArray[Any]:
-        return np.repeat(np.asarray(values, object), n)
-
-    columns: dict[str, Any] = {
-        "component": block.component,
-        "cas": block.cas,
-        "candidate": candidates(block.candidates),
-        "property": block.property,
-        "temperature_K": states(block.temperature),
-        "pressure_Pa": states(block.pressure),
-        "phase": block.phase,
-        "reduced_temperature": states(block.reduced_temperature),
-        "predicted": block.predicted.ravel(),
-        "reference": states(block.reference),
-        "unit": block.unit,
-        "reference_source": block.reference_source,
-        "reference_uncertainty_pct": states(block.reference_uncertainty_pct),
-        "deviation_pct": block.deviation_pct.ravel(),
-        "limit_pct": states(block.limit_pct),
-        "probability_inside": block.probability_inside.ravel(),
-        "verdict": np.asarray(POINT_VERDICTS, object)[block.verdict.ravel()],
-        "contested": block.contested,
-        "independence": candidates(block.independence),
-        "note": np.asarray(block.notes, object)[block.note.ravel()],
-    }
-    return pd.DataFrame(columns)
+    return pd.DataFrame({name: column(block) for name, column in _COLUMNS.items()})
 
 
 def _rows(rows: Sequence[SummaryRow] | Sequence[WindowRow], kind: type[SummaryRow] | type[WindowRow]) -> pd.DataFrame:

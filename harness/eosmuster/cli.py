@@ -13,7 +13,7 @@ from typing import NoReturn
 
 from eosmuster import __version__
 from eosmuster.commands import COMMANDS
-from eosmuster.commands.exits import INTERNAL_FAILURE, INTERRUPTED, complain
+from eosmuster.commands.exits import INTERNAL_FAILURE, INTERRUPTED, complain, finish
 from eosmuster.errors import EosmusterError, InputError
 
 _SIGNED = ("-T", "--temperature", "-p", "--pressure")
@@ -38,13 +38,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
     given = list(sys.argv[1:] if arguments is None else arguments)
     debug = "--debug" in given
     try:
-        options = _parser().parse_args(_joined([a for a in given if a != "--debug"]))
-        status = int(options.command(options))
-        sys.stdout.flush()
-    except BrokenPipeError:
-        # the reader of a pipe has gone: no more can be said, and the interpreter must not try again at exit
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
-        return 0
+        return _run([argument for argument in given if argument != "--debug"])
     except KeyboardInterrupt:
         return _failed("interrupted; a results folder is written whole or not at all", INTERRUPTED, debug)
     except EosmusterError as error:
@@ -52,7 +46,14 @@ def main(arguments: Sequence[str] | None = None) -> int:
     except Exception as error:
         what = f"internal failure: {type(error).__name__}: {error} (run again with --debug for the traceback)"
         return _failed(what, INTERNAL_FAILURE, debug)
-    return status
+
+
+def _run(arguments: Sequence[str]) -> int:
+    try:
+        options = _parser().parse_args(_joined(arguments))
+        return int(options.command(options))
+    finally:
+        finish()  # after --help, too
 
 
 def _joined(arguments: Sequence[str]) -> list[str]:
@@ -67,9 +68,7 @@ def _joined(arguments: Sequence[str]) -> list[str]:
 
 
 def _failed(message: str, status: int, debug: bool) -> int:
-    if debug:
-        traceback.print_exc()
-    complain(message)
+    complain(message, before=traceback.format_exc() if debug else "")
     return status
 
 
@@ -80,7 +79,8 @@ def _parser() -> argparse.ArgumentParser:
         description="Sweep pure components through cubic equations of state, compare with cited references, and "
         "say where each model is inside a stated tolerance.",
         epilog="Exit status: 0 done; 1 gate not met, or drift; 2 bad plan, input or usage; 3 internal failure; "
-        "4 nothing could be judged. --debug shows the traceback of an error.",
+        "4 nothing could be judged: a run's folder is written all the same, unless no reference has anything to say. "
+        "--debug shows the traceback of an error.",
     )
     parser.add_argument("--version", action="version", version=f"eosmuster {__version__}")
     commands = parser.add_subparsers(title="commands", required=True, metavar="COMMAND", parser_class=_Parser)

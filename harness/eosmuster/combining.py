@@ -9,6 +9,7 @@ from dataclasses import dataclass, fields, replace
 from pathlib import Path
 from typing import Any
 
+from eosmuster.components import equation_citations
 from eosmuster.errors import InputError
 from eosmuster.plan.parts import MOST_PARTS
 from eosmuster.plan.reading import parse_plan
@@ -20,11 +21,10 @@ from eosmuster.report.manifest import manifest, read_manifest
 from eosmuster.report.record_file import NAME as RECORD_FILE
 from eosmuster.report.record_file import read_checked
 from eosmuster.report.text import list_within
+from eosmuster.sources.library_gate import LIBRARY
+from eosmuster.sweeping.measured import PREFIX as MEASURED
 from eosmuster.sweeping.ordering import by_component
 from eosmuster.sweeping.series import refuse_empty
-
-LIBRARY, MEASURED = "coolprop", "measured:"
-"""How the library and measured files are called among citations: they come behind what is sorted in front."""
 
 _OWN = (
     *("blocks", "summary", "windows", "regions", "left_out", "conflicts"),
@@ -179,31 +179,35 @@ def merge(plan: Plan, parts: Sequence[Part]) -> Record:
     for part in parts:
         _check_components(part, mine[part.number[0]])
 
-    def joined(name: str) -> tuple[Any, ...]:
-        return tuple(item for part in parts for item in getattr(part.record, name))
-
-    def shared(name: str) -> tuple[Any, ...]:
-        # what names no component is the same in all parts, what names one counts in the part that has it
-        common = [[item for item in getattr(part.record, name) if item[0] not in names] for part in parts]
-        for part, of_part in zip(parts, common, strict=True):
-            if of_part != common[0]:
-                raise InputError(f"{part.folder} and {parts[0].folder} differ in {name}; give the parts of one run")
-        own = (x for part in parts for x in getattr(part.record, name) if x[0] in mine[part.number[0]])
-        return (*common[0], *own)
-
     record = replace(
         parts[0].record,
         plan_title=plan.title,
         part=None,
-        blocks=joined("blocks"),
-        summary=joined("summary"),
-        windows=joined("windows"),
-        regions=joined("regions"),
-        left_out=shared("left_out"),
-        conflicts=shared("conflicts"),
+        blocks=_joined(parts, "blocks"),
+        summary=_joined(parts, "summary"),
+        windows=_joined(parts, "windows"),
+        regions=_joined(parts, "regions"),
+        left_out=_shared(parts, "left_out", names, mine),
+        conflicts=_shared(parts, "conflicts", names, mine),
         citations=_citations(part.record.citations for part in parts),
     )
     return by_component(record, names)
+
+
+def _joined(parts: Sequence[Part], name: str) -> tuple[Any, ...]:
+    return tuple(item for part in parts for item in getattr(part.record, name))
+
+
+def _shared(
+    parts: Sequence[Part], name: str, components: Collection[str], mine: Mapping[int, Collection[str]]
+) -> tuple[Any, ...]:
+    """Join what begins with a name: of no component, it is the same in all parts; else the part's that has it."""
+    common = [[item for item in getattr(part.record, name) if item[0] not in components] for part in parts]
+    for part, of_part in zip(parts, common, strict=True):
+        if of_part != common[0]:
+            raise InputError(f"{part.folder} and {parts[0].folder} differ in {name}; give the parts of one run")
+    own = (x for part in parts for x in getattr(part.record, name) if x[0] in mine[part.number[0]])
+    return (*common[0], *own)
 
 
 def _check_components(part: Part, mine: Collection[str]) -> None:
@@ -217,6 +221,10 @@ def _check_components(part: Part, mine: Collection[str]) -> None:
 
 
 def _citations(found: Iterable[Mapping[str, str]]) -> dict[str, str]:
-    """Join citations by key, in the order of a run: handbooks, the reference library, measured files."""
+    """Join citations by key, in the order of a run: handbooks, the library, its equations, measured files."""
     every = {key: text for citations in found for key, text in citations.items()}
-    return {key: every[key] for key in sorted(every, key=lambda key: (key.startswith(MEASURED), key == LIBRARY, key))}
+
+    def place(key: str) -> tuple[bool, bool, bool, str]:
+        return key.startswith(MEASURED), key in equation_citations(), key == LIBRARY, key
+
+    return {key: every[key] for key in sorted(every, key=place)}

@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
+from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -13,8 +13,12 @@ from eosmuster.models.model import BoundModel, bind
 from eosmuster.models.records import ModelRecord
 from eosmuster.saturation import solver
 from eosmuster.sources import handbook, library, library_gate
+from eosmuster.sources.cited import Correlation
+from eosmuster.sweeping.saturated import gate
 
 _NAN = float("nan")
+
+_CITED = ("saturation_pressure", "liquid_density", "vapor_density", "enthalpy_of_vaporization")
 
 STATUS_NOTES = {
     "above_critical": "above the model's own critical point (Tc {tc:.2f} K, pc {pc:.4g} bar): one phase only",
@@ -33,12 +37,12 @@ class Answer:
     ----------
     source : the model's or the reference's name
     kind : ``model`` or ``reference``
-    temperature, pressure : K, Pa; one of them was given
+    temperature, pressure : K, Pa; one of them was given, the other is NaN where the source does not tell it
     liquid_density, vapor_density : mol/m3
     enthalpy_of_vaporization : J/mol
     fugacity : Pa, equal in both phases
     status : a solver status, ``unavailable``, ``answered`` or ``refused``
-    note : why a number is missing
+    note : why all numbers are missing, or where those that there are were taken
     """
 
     source: str
@@ -76,7 +80,9 @@ def ask(
     if given is None:
         raise ValueError("one of temperature and pressure is needed")
     answers = [_of_model(CATALOGUE[name], component, given, by_pressure=by_pressure) for name in models]
-    return [*answers, *_of_library(component, given, by_pressure), *_of_handbook(component, given, by_pressure)]
+    of_library = list(_of_library(component, given, by_pressure))
+    boiling = _boiling(component, given, of_library) if by_pressure else ("", given)
+    return [*answers, *of_library, *_of_handbook(component, given, by_pressure, boiling)]
 
 
 def _of_model(record: ModelRecord, component: Component, given: float, *, by_pressure: bool) -> Answer:
@@ -136,22 +142,72 @@ def _range(component: Component) -> str:
     return "" if limits is None else f" ({limits.from_K:.2f} to {limits.to_K:.2f} K)"
 
 
-def _of_handbook(component: Component, given: float, by_pressure: bool) -> Iterator[Answer]:
-    """Answers of the vapour-pressure correlations; extrapolation is refused with the range."""
-    for c in handbook.correlations(component.cas, "saturation_pressure") if component.cas else ():
-        temperature = c.temperature_at(given) if by_pressure else given
-        pressure = given if by_pressure else float(c(np.array([given]))[0])
-        if np.isfinite(temperature) and np.isfinite(pressure):
-            densities = _handbook_value(component, "liquid_density", temperature)
-            enthalpy = _handbook_value(component, "enthalpy_of_vaporization", temperature)
-            yield Answer(c.source, "reference", temperature, pressure, densities, _NAN, enthalpy, status="answered")
-        else:
-            low, high = (f"{p / 1e5:.4g}" for p in c(np.array([c.from_K, c.to_K])))
-            where = f"{low} to {high} bar" if by_pressure else f"{c.from_K:.2f} to {c.to_K:.2f} K"
-            yield Answer(c.source, "reference", status="refused", note=f"extrapolation refused: valid from {where}")
+def _of_handbook(
+    component: Component, given: float, by_pressure: bool, boiling: tuple[str, float]
+) -> Iterator[Answer]:
+    """Answer by the handbook's correlations, source by source; vapor pressures come first.
+
+    What a source says nothing of is NaN. Where a pressure was given, a source without a boiling temperature of its
+    own is asked at another's: `boiling` is that, and who says so.
+    """
+    by_source: dict[str, dict[str, Correlation]] = {}
+    for name in _CITED:
+        for c in _correlations(component, name):
+            by_source.setdefault(c.source, {})[name] = c
+    for known in by_source.values():
+        yield _of_source(component, known, given, by_pressure, boiling)
 
 
-def _handbook_value(component: Component, name: str, temperature: float) -> float:
-    """Value of the first handbook correlation that covers the temperature, NaN if none does."""
-    values = (float(c(np.array([temperature]))[0]) for c in handbook.correlations(component.cas, name))
-    return next((v for v in values if np.isfinite(v)), _NAN)
+def _correlations(component: Component, name: str) -> Iterator[Correlation]:
+    """Give the correlations of a property, each in the range in which a sweep uses it."""
+    for c in handbook.correlations(component.cas, name) if component.cas else ():
+        low, high = gate(c, component)
+        yield replace(c, from_K=max(c.from_K, low * (1.0 - library_gate.ROUNDING)), to_K=high)
+
+
+def _of_source(
+    component: Component,
+    known: Mapping[str, Correlation],
+    given: float,
+    by_pressure: bool,
+    boiling: tuple[str, float],
+) -> Answer:
+    source = next(iter(known.values())).source
+    curve = known.get("saturation_pressure")
+    if by_pressure:
+        own = temperature = curve.temperature_at(given) if curve else _NAN
+        pressure, others = given, curve is None
+    else:
+        temperature, own, others = given, float(curve(given)) if curve else _NAN, False
+        pressure = own
+    at = boiling[1] if others else temperature
+    values = {name: float(c(at)) for name, c in known.items() if c is not curve}
+    if not np.isfinite([own, *values.values()]).any():
+        asked = (given, "Pa") if by_pressure and curve else (at, "K")
+        return Answer(source, "reference", status="refused", note=_refusal(component, known, asked))
+    note = f"at the boiling temperature by {boiling[0]}, {at:.2f} K" if others else ""
+    return Answer(source, "reference", temperature, pressure, **values, status="answered", note=note)
+
+
+def _refusal(component: Component, known: Mapping[str, Correlation], asked: tuple[float, str]) -> str:
+    """Say why a source has no number: extrapolation is refused with the range."""
+    first, (value, unit) = next(iter(known.values())), asked
+    if np.isnan(value):
+        return "no reference has a boiling temperature there at which to take it"
+    ends = np.array([first.from_K, first.to_K])
+    low, high = ends if unit == "K" else first(ends)
+    from_triple = np.isclose(first.from_K, component.triple_temperature or 0.0, rtol=1e-9, atol=0.0)
+    why = "below the triple point" if from_triple and value < low else "extrapolation refused"
+    valid = f"{round(low, 9):.2f} to {high:.2f} K" if unit == "K" else f"{low / 1e5:.4g} to {high / 1e5:.4g} bar"
+    return f"{why}: valid from {valid}"
+
+
+def _boiling(component: Component, pressure: float, answers: Sequence[Answer]) -> tuple[str, float]:
+    """Give who says where a component boils, and the temperature: the library, else the first correlation."""
+    for answer in answers:
+        if np.isfinite(answer.temperature):
+            return answer.source, answer.temperature
+    for c in _correlations(component, "saturation_pressure"):
+        if np.isfinite(temperature := c.temperature_at(pressure)):
+            return c.source, temperature
+    return "", _NAN

@@ -14,7 +14,7 @@ from eosmuster.models.catalogue import CATALOGUE
 from eosmuster.plan import builtin
 from eosmuster.quantities import PROPERTIES, to_si
 from eosmuster.report.terminal import SaturationRow, saturation_table
-from eosmuster.report.text import plain_table
+from eosmuster.report.text import number, plain_table
 
 
 def chosen_models(names: Sequence[str] | None) -> tuple[str, ...]:
@@ -46,7 +46,7 @@ def saturation_text(
     asked = (
         f"T = {temperature:.6g} K ({temperature - 273.15:.6g} degC)"
         if temperature is not None
-        else (f"p = {pressure:.6g} Pa ({(pressure or 0.0) / 1e5:.6g} bar)")
+        else f"p = {number(pressure, 6)} Pa ({number((pressure or 0.0) / 1e5, 6)} bar)"
     )
     tc, pc = component.critical_temperature, component.critical_pressure
     mass = component.molar_mass

@@ -12,11 +12,11 @@ from typing import Any
 
 from eosmuster.components import Component, catalogue, equation_citations, find
 from eosmuster.quantities import PROPERTIES
+from eosmuster.reference_rows import number_or_none, rows
 from eosmuster.report.text import plain_table, some
 from eosmuster.sources import critical, handbook, library_gate, stated
 from eosmuster.sources.bibliography import bibliography
 from eosmuster.sources.contested import Contested, contested
-from eosmuster.sources.rows import number_or_none, rows
 
 BY_FLUID: Mapping[str, str] = MappingProxyType(
     {
@@ -33,7 +33,8 @@ CONSTANTS = "critical_constants"
 
 MARKS = (
     "In the table by fluid a cell is the number of sources in use, the reference library among them; "
-    "u: an uncertainty is stated by at least one of them; !: they contradict each other; "
+    "u: an uncertainty is noted for at least one of them, mostly from memory (U read: the fluids for whose equation "
+    "one was read); !: they contradict each other; "
     "xN: N more are excluded, with their evidence. Vapor pressures give boiling points besides those printed. All "
     "other properties have the library alone. "
     "One fluid with its sources, ranges and evidence: eosmuster list references --component NAME."
@@ -145,7 +146,7 @@ def _asked(name: str) -> str:
 
 
 def _words(s: stated.Statement) -> str:
-    memory = ", from memory" if s.how_read.startswith("from memory") else ""
+    memory = ", from memory" if stated.remembered(s) else ""
     return f"{s.uncertainty_pct:g} % at {s.from_K:g}-{s.to_K:g} K{memory}"
 
 
@@ -242,13 +243,18 @@ def _by_property(width: int) -> str:
     known = {c.property: c for c in handbook.coverage()}
     body: list[list[object]] = []
     for name in BY_FLUID:
-        with_uncertainty = sum(bool(stated.statements(c.name, _asked(name))) for c in catalogue().values())
         c = known[name]
-        body.append([name, len(catalogue()), c.correlations, c.tables, c.either, with_uncertainty])
+        body.append([name, len(catalogue()), c.correlations, c.tables, c.either, *_with_uncertainty(name)])
     some_constants = sum(bool(critical.critical_constants(c.cas)) for c in catalogue().values() if c.cas)
-    body.append([CONSTANTS, len(catalogue()), 0, some_constants, some_constants, 0])
-    head = ["fluids that have", "equation", "correlation", "value", "either", "equation's U"]
+    body.append([CONSTANTS, len(catalogue()), 0, some_constants, some_constants, 0, 0])
+    head = ["fluids that have", "equation", "correlation", "value", "either", "equation's U", "U read"]
     return plain_table(head, body, width)
+
+
+def _with_uncertainty(name: str) -> tuple[int, int]:
+    """Count the fluids for whose equation an uncertainty is noted, and those for which one was read."""
+    noted = [stated.statements(c.name, _asked(name)) for c in catalogue().values()]
+    return sum(map(bool, noted)), sum(any(not stated.remembered(s) for s in found) for found in noted)
 
 
 def _by_source(width: int) -> str:

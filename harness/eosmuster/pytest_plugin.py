@@ -182,7 +182,7 @@ def _failure(key: Key, bad: list[Counted], rows: list[Counted], failing: Failing
     from eosmuster.report.text import list_within
     from eosmuster.sweeping.gate import worst_first
 
-    first, *others = (one.row for one in worst_first(bad))
+    first, *others = (one.row for one in worst_first(bad, failing.blocks))
     if first.verdict == "unavailable":
         return failing.line(first)
     against = f"{first.reference_source} and {len(others)} more" if others else first.reference_source

@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 import hashlib
+import json
 import os
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, replace
 from io import RawIOBase
 from pathlib import Path
@@ -14,28 +15,41 @@ from eosmuster.drifting.agreement import DEFAULT, Agreement
 from eosmuster.drifting.changes import CAUSES, Change
 from eosmuster.drifting.comparing import Drift, compare
 from eosmuster.drifting.evidence import evidence
-from eosmuster.drifting.sides import POINTS, Side, checked_manifest, outputs, read_side, sha256, side_of_record
+from eosmuster.drifting.manifests import Difference, differences
+from eosmuster.drifting.sides import (
+    POINTS,
+    Side,
+    checked_manifest,
+    outputs,
+    read_side,
+    sha256,
+    side_of_record,
+    versions,
+)
 from eosmuster.drifting.text import drift_text, headline, wrapped
 from eosmuster.errors import InputError
 from eosmuster.plan.parts import plan_part, read_part
 from eosmuster.plan.reading import parse_plan
 from eosmuster.plan.schema import Plan
+from eosmuster.plan.states import choose_regions
 from eosmuster.progress import Progress, silent
 from eosmuster.quantities import shown
 from eosmuster.record import Record
+from eosmuster.report.cells import encoded
 from eosmuster.report.folder import View, checked, save, written
 from eosmuster.report.manifest import NAME as MANIFEST
-from eosmuster.report.manifest import reference_hashes
+from eosmuster.report.manifest import manifest_text, reference_hashes
 from eosmuster.report.text import some
 from eosmuster.sweeping.run import run
 
 PLAN_FOLDER = "plan_folder"
 """Key of the manifest's ``volatile`` that says where the plan's file was: its measured files are found from there."""
 
-_VERSIONS = ("reference:library", "prediction:code", "")
-"""Causes of what differs by version, or moves no number: the results say whether it matters."""
+_BY_VERSION = ("reference:library", "prediction:code")
+"""Causes of what differs by version: the results say whether it matters."""
 
-_REFERENCE_FILE = "reference file "
+_REFERENCE_FILE, _MEASURED_FILE = "reference file ", "measured file "
+_OTHERWISE = "the manifest says otherwise than this run: "
 _MOST = 20
 
 
@@ -46,8 +60,8 @@ class Replay:
     Attributes
     ----------
     folder : as it was given
-    findings : what is not as the manifest says, one sentence each: outputs, reference files, measured files, and what
-        the manifest itself says of plan, constants and models
+    findings : what is not as the manifest says, one sentence each: outputs, reference files, measured files, and all
+        else that the manifest says, but for what is volatile
     remarks : what else a reader must know, e.g. another version of the reference library
     identical, different : outputs that came out again byte for byte, and those that did not
     drift : from the folder to this run; None if the folder's tables cannot be read any more
@@ -97,19 +111,21 @@ def replay(
     plan = _plan(path, content, plan_folder)
     found = [*_outputs(path, names), *_measured(plan, content)]
     altered = {name for name, _ in found}
-    old = _side(folder, content, altered)
+    tables = _tables(folder, altered)
+    old = Side(str(folder), content, {}, {}, None, path) if tables is None else tables
     record = run(plan, progress)
     new = side_of_record(record, "this run")
-    drift = compare(old, new, agreement) if old.rows else None
+    drift = None if tables is None else compare(tables, new, agreement)
     changes = drift.changes if drift else evidence(old, new).changes
     identical, different = _bytes(record, names)
     if place is not None:
         save(record, place, points=POINTS in names, overwrite=True)
     references = _references(content, changes)
+    unlike = list(differences(content, _as_written(new.manifest, names)))
     return Replay(
         str(folder),
-        (*(sentence for _, sentence in found), *references, *_contradictions(changes, altered)),
-        tuple(_remarks(content, changes)),
+        (*(sentence for _, sentence in found), *references, *_contradictions(changes, unlike, altered)),
+        tuple(_remarks(content, changes, unlike)),
         identical,
         different,
         drift,
@@ -130,6 +146,8 @@ def _plan(folder: Path, content: Mapping[str, Any], plan_folder: str | os.PathLi
         raise InputError(f"{folder / MANIFEST}: plan has no text and name, so it cannot be run again")
     where = f"{folder / MANIFEST}, plan"
     plan = parse_plan(text, name, where)
+    if content["regions"].get("asked") is False:
+        plan = choose_regions(plan, False)
     part = content.get("part")
     if isinstance(part, dict):
         plan = plan_part(plan, *read_part(f"{part.get('number')}/{part.get('of')}", where))
@@ -150,14 +168,14 @@ def _plan(folder: Path, content: Mapping[str, Any], plan_folder: str | os.PathLi
     return replace(plan, path=str(place / "plan.toml"))  # only its folder counts
 
 
-def _side(folder: str | os.PathLike[str], content: Mapping[str, Any], altered: set[str]) -> Side:
-    """Read the folder's tables; without rows if a file that was altered cannot be read any more."""
+def _tables(folder: str | os.PathLike[str], altered: set[str]) -> Side | None:
+    """Read the folder's tables; None if a file that was altered cannot be read any more."""
     try:
         side = read_side(folder)
     except InputError:
         if not altered:
             raise
-        return Side(str(folder), content, {}, {}, None, Path(folder))
+        return None
     return replace(side, points=None) if POINTS in altered else side
 
 
@@ -193,20 +211,42 @@ def _references(content: Mapping[str, Any], changes: tuple[Change, ...]) -> Iter
             yield f"reference file {name} has changed{meaning}"
 
 
-def _contradictions(changes: tuple[Change, ...], told: set[str]) -> Iterator[str]:
-    """Say where the manifest itself is not what the run gives; versions and what was told already apart."""
+def _as_written(content: Mapping[str, Any], names: Mapping[str, str]) -> dict[str, Any]:
+    """Give the manifest of a run as it reads back from a folder with the files named."""
+    counted = {**content["points"], "written": POINTS in names}
+    again: dict[str, Any] = json.loads(encoded(manifest_text({**content, "points": counted})))
+    return again
+
+
+def _contradictions(changes: Sequence[Change], unlike: Sequence[Difference], told: set[str]) -> Iterator[str]:
+    """Say where the manifest itself is not what the run gives.
+
+    The same versions give the same manifest. Other ones may word it otherwise, so then only what moves numbers, or
+    follows from the plan whatever version runs it, speaks against the manifest.
+    """
+    other = _other_versions(changes)
     for change in changes:
-        if change.cause not in _VERSIONS and not change.what.startswith(_REFERENCE_FILE) and change.what not in told:
-            yield f"the manifest says otherwise than this run: {change}"
+        measured = change.what.startswith(_MEASURED_FILE) and change.what not in told
+        moves = other and change.cause not in ("", *_BY_VERSION)
+        if measured or (moves and not change.what.startswith((_MEASURED_FILE, _REFERENCE_FILE))):
+            yield f"{_OTHERWISE}{change}"
+    yield from (f"{_OTHERWISE}{one}" for one in unlike if one.of_the_plan or not other)
 
 
-def _remarks(content: Mapping[str, Any], changes: tuple[Change, ...]) -> Iterator[str]:
+def _other_versions(changes: Sequence[Change]) -> bool:
+    return any(c.cause in _BY_VERSION and not c.what.startswith(_REFERENCE_FILE) for c in changes)
+
+
+def _remarks(content: Mapping[str, Any], changes: Sequence[Change], unlike: Sequence[Difference]) -> Iterator[str]:
     new = [name for name in reference_hashes() if name not in content["references"]]
     if new:
         yield f"new since then: {some(len(new), 'reference file')}, e.g. {new[0]}"
+    known = versions(content)
     for change in changes:
-        if change.cause in _VERSIONS and not change.what.startswith(_REFERENCE_FILE):
+        if change.what in known or (change.cause in _BY_VERSION and not change.what.startswith(_REFERENCE_FILE)):
             yield str(change)
+    if _other_versions(changes):
+        yield from (f"{_OTHERWISE}{one}" for one in unlike if not one.of_the_plan)
 
 
 class _Digest(RawIOBase):

@@ -66,10 +66,26 @@ def test_the_baseline_becomes_the_results_and_says_why(
         "- plan: plan\n",
         "CoolProp 8.",
         "- causes: tolerance 4 rows\n",
-        "- n-Propane \\| PR \\| saturation_pressure \\| coolprop: inside -&gt; partly\n",
+        "- n-Propane \\| PR \\| saturation pressure \\| coolprop: inside -&gt; partly\n",
     ):
         assert line in record
     assert "SHA-256 of manifest.json: " in record
+
+
+def test_without_a_name_in_the_environment_the_password_database_gives_it(
+    baseline: Path, results: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    pwd = pytest.importorskip("pwd")
+    for name in ("LOGNAME", "USER", "LNAME", "USERNAME"):
+        monkeypatch.delenv(name, raising=False)
+    monkeypatch.setattr(pwd, "getpwuid", lambda _uid: ("b.keeper", "x", 1, 1, "", "/", "/bin/sh"))
+    assert " by b.keeper\n" in adopt(baseline, results, REASON).entry
+
+    def unknown(_uid: int) -> None:
+        raise KeyError("no such uid")
+
+    monkeypatch.setattr(pwd, "getpwuid", unknown)
+    assert re.search(r"\n## [-\d]+T[:\d]+\+00:00\n", adopt(baseline, results, REASON).entry)
 
 
 def test_the_record_goes_on_over_further_adoptions(base: Path, baseline: Path, results: Path) -> None:

@@ -4,6 +4,8 @@ from __future__ import annotations
 
 import argparse
 import csv
+import json
+import os
 from collections.abc import Callable
 from pathlib import Path
 from typing import NamedTuple
@@ -94,6 +96,7 @@ def test_adopting(run: Callable[..., Done], base: Path, narrower: Path, copy_of:
         (["--csv", "nowhere/rows.csv"], "--csv: 'nowhere/rows.csv' cannot be written: there is no folder"),
         (["--markdown", "."], "--markdown: '.' is a folder"),
         (["--csv", "a\0b"], "--csv: 'a\\x00b'"),
+        (["--csv", "x", "--markdown", "./x"], "--csv and --markdown both name 'x'; name two files"),
     ],
 )
 def test_bad_options_are_one_sentence_and_nothing_is_touched(
@@ -107,6 +110,49 @@ def test_bad_options_are_one_sentence_and_nothing_is_touched(
     assert "\n" not in str(caught.value)
     assert {path.name: path.read_bytes() for path in baseline.iterdir()} == before
     assert list(Path.cwd().iterdir()) == []
+
+
+def test_a_file_that_cannot_be_written_does_not_hide_the_adoption(
+    run: Callable[..., Done],
+    base: Path,
+    narrower: Path,
+    copy_of: Folder,
+    monkeypatch: pytest.MonkeyPatch,
+    capsys: pytest.CaptureFixture[str],
+) -> None:
+    def fail(target: Path, _content: bytes, option: str) -> None:
+        raise InputError(f"{option}: {target} cannot be written: No space left on device")
+
+    monkeypatch.setattr("eosmuster.report.files.write_whole", fail)
+    baseline = copy_of(base)
+    with pytest.raises(InputError) as caught:
+        run(baseline, narrower, "--adopt", "--reason", "agreed on", "--csv", "rows.csv")
+    assert str(caught.value).endswith(f"No space left on device; {baseline} was adopted all the same")
+    assert f"adopted: {baseline}" in capsys.readouterr().out
+    assert run(baseline, narrower).status == 0
+
+
+def test_files_that_are_not_written_are_named(
+    run: Callable[..., Done], base: Path, narrower: Path, copy_of: Folder
+) -> None:
+    baseline = copy_of(base)
+    manifest = json.loads((baseline / "manifest.json").read_text(encoding="utf-8"))
+    (baseline / "manifest.json").write_text(json.dumps(manifest | {"record_version": 0}), encoding="utf-8")
+    done = run(baseline, narrower, "--adopt", "--reason", "x", "--csv", "rows.csv", "--markdown", "drift.md")
+    assert done.status == 0
+    assert "adopted: " in done.out
+    for option, line in zip(("--csv", "--markdown"), done.err.splitlines(), strict=True):
+        assert line.startswith(
+            f"eosmuster: {option}: nothing is written, since the drift from a baseline of another "
+        )
+    assert list(Path.cwd().iterdir()) == []
+
+
+def test_names_of_files_do_not_steer_the_terminal(run: Callable[..., Done], base: Path) -> None:
+    name = os.fsdecode(b"a\x1b[31m\xff.csv")
+    out = run(base, base, "--csv", name).out
+    assert "rows: a\\x1b[31m\\udcff.csv\n" in out
+    assert Path(name).exists()
 
 
 def test_no_file_is_written_into_a_results_folder(run: Callable[..., Done], base: Path, copy_of: Folder) -> None:

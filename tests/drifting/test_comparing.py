@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 from collections.abc import Callable
+from itertools import permutations
 from pathlib import Path
 from typing import Any
 
@@ -187,6 +188,19 @@ def test_another_measured_file_is_reference_drift(own_plan: str, lab: str, swept
     assert {row.worst.reference for row in found.rows if row.worst} == {(186e3, 196e3)}
 
 
+def test_another_descriptor_beside_a_measured_file_is_reference_drift(
+    own_plan: str, lab: str, swept_folder: Folder, tmp_path: Path
+) -> None:
+    (tmp_path / "lab").mkdir()
+    (tmp_path / "lab" / "psat.csv").write_text(lab, encoding="utf-8")
+    described = {"fields": [{"name": "saturation pressure [kPa]", "unit": "bar"}]}
+    (tmp_path / "lab" / "psat.json").write_text(json.dumps(described), encoding="utf-8")
+    (tmp_path / "plan.toml").write_text(own_plan, encoding="utf-8")
+    found = drift(swept_folder(own_plan), sweep(tmp_path / "plan.toml").save(tmp_path / "results"))
+    assert causes(found) == {"reference:measured", "uncertainty"}  # that of a value 100 times as large is smaller
+    assert [str(c) for c in found.changes if "lab/psat.json: SHA-256 " in str(c) and str(c).endswith(" is new")]
+
+
 @pytest.mark.parametrize("points", [True, False])
 def test_another_uncertainty_of_measured_points_is_an_uncertainty(
     own_plan: str, lab: str, swept_folder: Folder, points: bool
@@ -224,6 +238,48 @@ def test_another_decision_rule_is_the_plan_s(plan: str, swept_folder: Folder, po
     assert found
     assert causes(found) == {"plan"}
     assert any(c.what == "decision rule, rule" and (c.old, c.new) == ("guarded", "simple") for c in found.changes)
+    said = {row.key: row.note for row in found.rows}
+    assert all(said.values())  # what moved is said, also where no point did
+    density = said["n-Propane", "SRK", "liquid_density", "coolprop"]  # outside by far more than U, by either rule
+    assert density.startswith("limit at which it would pass ")
+    assert "AAD" not in density
+
+
+def test_another_threshold_of_contested_references_is_the_plan_s(plan: str, swept_folder: Folder) -> None:
+    told = plan.replace('["coolprop"]', '["coolprop"]\ncontested_above = "5 %"')
+    found = drift(swept_folder(plan), swept_folder(told))
+    [change] = [c for c in found.changes if "contested" in c.what]
+    assert (change.cause, change.what, change.old, change.new) == (
+        "plan",
+        "plan, references.contested_above",
+        "",
+        "5 %",
+    )
+    assert not found
+
+
+def test_another_reference_that_agrees_moves_no_row(plan: str, swept_folder: Folder) -> None:
+    more = plan.replace('["coolprop"]', '["coolprop", "handbook"]')
+    there, back = (drift(*pair) for pair in permutations([swept_folder(plan), swept_folder(more)]))
+    assert (there.states[UNCHANGED], there.states[APPEARED], there.states[MOVED]) == (ROWS, len(there.rows), 0)
+    assert there.remarks == (
+        f"{ROWS} rows are compared with another reference now, which agrees, and were not before",
+    )
+    assert (back.states[UNCHANGED], back.states[VANISHED]) == (ROWS, len(back.rows))
+    said = " ".join(str(back).split())
+    assert f"note: {ROWS} rows were compared with another reference before, which agreed, and are not now" in said
+
+
+@pytest.mark.parametrize(("was", "now"), [("no", "yes"), ("yes", "no"), ("", "yes")])
+def test_what_has_become_contested_is_told(
+    base: Path, copy_of: Callable[..., Path], edit: Any, was: str, now: str
+) -> None:
+    old, new = copy_of(base), copy_of(base, "new")
+    for folder, contested in ((old, was), (new, now)):
+        edit(folder / "summary.csv", lambda row, contested=contested: row.update(contested=contested))
+    found = drift(old, new)
+    assert found.states[MOVED] == ROWS
+    assert {row.note for row in found.rows} == {f"contested: {was or 'nothing'} -> {now}"}
 
 
 @pytest.mark.parametrize("points", [True, False])
@@ -251,7 +307,7 @@ def test_a_removed_model_and_a_removed_property(plan: str, swept_folder: Folder,
     assert causes(found) == {"plan"}
     assert {row.note for row in found.rows} == {
         "SRK is not in the new run",
-        "boiling_temperature is not in the new run",
+        "boiling temperature is not in the new run",
     }
 
 

@@ -3,10 +3,11 @@ from __future__ import annotations
 import re
 from collections.abc import Callable
 from functools import cache
+from pathlib import Path
 
 import pytest
 
-from eosmuster.drifting.comparing import Drift
+from eosmuster.drifting.comparing import Drift, drift
 from eosmuster.drifting.markdown import LIMIT, drift_markdown
 
 MANY = 3300  # more than any table shows
@@ -48,3 +49,11 @@ def test_no_drift_is_short(rendered: Callable[[int], str]) -> None:
     text = rendered(0)
     assert "**no drift: 3 rows unchanged**" in text
     assert "## Causes" not in text
+
+
+def test_properties_have_their_names_for_people(swept_folder: Callable[..., Path], plan: str, base: Path) -> None:
+    found = drift(base, swept_folder(plan + "[tolerance]\nsaturation_pressure = '0.1 %'\n"))
+    rows = [line for line in drift_markdown(found).split("\n") if line.startswith("| n-Propane")]
+    assert len(rows) == 2
+    assert all("| saturation pressure |" in row for row in rows)
+    assert not any("saturation_pressure" in row for row in rows)

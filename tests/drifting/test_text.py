@@ -52,3 +52,10 @@ def test_what_moves_no_number_is_only_named(invented: Invented) -> None:
     assert "moving no number: constants of cut, no. 7" in drift_text(invented(1))
     assert "without effect on any row" in drift_text(invented(0))
     assert "without effect" not in drift_text(invented(1))
+
+
+def test_at_a_hundred_columns_no_header_is_cut(invented: Invented) -> None:
+    lines = drift_text(invented(40), 100).split("\n")
+    rules = [i for i, line in enumerate(lines) if line.startswith("---")]
+    assert rules
+    assert not [line for i in rules for line in lines[max(i - 2, 0) : i] if "…" in line]

@@ -4,7 +4,12 @@ from __future__ import annotations
 
 import argparse
 
-from eosmuster.commands.outcome import add_results_options, conclude, views_asked_for
+from eosmuster.commands.outcome import (
+    add_results_options,
+    conclude,
+    views_asked_for,
+    what_has_no_record_is_not_written,
+)
 from eosmuster.errors import InputError
 
 HELP = "put the parts of a run together (sweep --part): the same results as of one run"
@@ -28,7 +33,8 @@ def run(options: argparse.Namespace) -> int:
     started = datetime.now(UTC)
     if options.out is not None:
         checked(options.out, overwrite=True)  # before the work begins
-    plan, record = combine(options.parts)
+    with what_has_no_record_is_not_written():
+        plan, record = combine(options.parts)
     target = checked(Path("eosmuster-results") / plan.name if options.out is None else options.out, overwrite=True)
     for part in options.parts:
         if Path(part).resolve() == target:

@@ -9,13 +9,22 @@ from eosmuster.errors import InputError
 
 HELP = "what is there: models, components, references, properties, plans"
 
-TOPICS = ("models", "components", "references", "properties", "plans")
+TOPICS = {
+    "models": "the equations of state",
+    "components": "the fluids, and what is left out",
+    "references": "the sources, with --component those of one fluid",
+    "properties": "what can be judged",
+    "plans": "those that are built in",
+}
 
 
 def add(parser: argparse.ArgumentParser) -> None:
     """Add the options."""
-    parser.add_argument("topic", choices=TOPICS)
-    parser.add_argument("--component", metavar="NAME", help="with references: all there is of one fluid")
+    topics = "; ".join(f"{topic}: {what}" for topic, what in TOPICS.items())
+    parser.add_argument("topic", choices=tuple(TOPICS), help=topics)
+    parser.add_argument(
+        "--component", metavar="NAME", help="with references: all there is of one fluid, by name, alias or CAS number"
+    )
 
 
 def run(options: argparse.Namespace) -> int:

@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 import argparse
-import sys
+from collections.abc import Iterator
+from contextlib import contextmanager
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 from eosmuster.commands.exits import GATE_NOT_MET, NOTHING_JUDGED, complain, show, width
+from eosmuster.errors import NothingJudged
 
 if TYPE_CHECKING:
     from eosmuster.plan.schema import Plan
@@ -16,7 +18,11 @@ if TYPE_CHECKING:
 
 def add_results_options(parser: argparse.ArgumentParser) -> None:
     """Add the options of everything that ends with a results folder: the gate, and what is written."""
-    parser.add_argument("--gate", action="store_true", help="exit with 1 if a verdict of the plan's [gate] occurs")
+    parser.add_argument(
+        "--gate",
+        action="store_true",
+        help="exit with 1 if a verdict of the plan's [gate] occurs, or nothing was judged of something it asks",
+    )
     parser.add_argument(
         "--points", choices=("all", "none"), default="all", help="write points.csv, or leave it out (default: all)"
     )
@@ -33,10 +39,19 @@ def views_asked_for(options: argparse.Namespace) -> dict[str, bool]:
     return {"points": options.points == "all", "dossier": options.dossier == "yes", "workbook": options.workbook}
 
 
+@contextmanager
+def what_has_no_record_is_not_written() -> Iterator[None]:
+    """Say so where a run ends without a record; whatever has one is written, even if nothing of it was judged."""
+    try:
+        yield
+    except NothingJudged as error:
+        raise NothingJudged(f"{error}; no results folder is written") from None
+
+
 def conclude(plan: Plan, record: Record, folder: Path, *, gate: bool) -> int:
     """Show the answer, hold it against the plan's gate if that is asked for, and give the exit status."""
     from eosmuster.report.terminal import terminal_summary
-    from eosmuster.sweeping.gate import gate_failures, nothing_judged, silent_line, worst_lines
+    from eosmuster.sweeping.gate import gate_failures, nothing_judged, worst_lines
 
     show(terminal_summary(record, folder, width()))
     if nothing_judged(record):
@@ -45,13 +60,11 @@ def conclude(plan: Plan, record: Record, folder: Path, *, gate: bool) -> int:
     if not gate:
         return 0
     failures = gate_failures(record, plan)
-    if failures:
-        complain(f"the gate is not met: {failures.counted}")
-        print("\n".join(f"  {line}" for line in worst_lines(record, failures)), file=sys.stderr)
-        return GATE_NOT_MET
-    if not failures.judged:
+    if not (failures.counts or failures.judged):
         complain("nothing could be judged of what the gate asks")
         return NOTHING_JUDGED
-    if failures.silent:
-        complain(silent_line(failures))
+    if failures:
+        worst = "\n".join(f"  {line}" for line in worst_lines(record, failures))
+        complain(f"the gate is not met: {failures.counted}", after=worst)
+        return GATE_NOT_MET
     return 0

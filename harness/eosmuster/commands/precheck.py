@@ -19,10 +19,10 @@ def add(parser: argparse.ArgumentParser) -> None:
 def run(options: argparse.Namespace) -> int:
     """Check, and show what was found."""
     from eosmuster.api import read_plan
-    from eosmuster.drifting.files import checked_file, write_whole
     from eosmuster.prechecks.checks import precheck
     from eosmuster.prechecks.text import csv_text, precheck_text
     from eosmuster.progress import Bar
+    from eosmuster.report.files import checked_file, write_whole
 
     plan = read_plan(options.plan)
     target = None if options.csv is None else checked_file(options.csv, "--csv")  # before the work begins
@@ -31,5 +31,5 @@ def run(options: argparse.Namespace) -> int:
     show(precheck_text(plan, findings, width()))
     if target:
         write_whole(target, csv_text(findings), "--csv")
-        print(f"\nfindings: {target}")
+        show(f"\nfindings: {options.csv}")
     return 0

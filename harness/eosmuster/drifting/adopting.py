@@ -7,6 +7,7 @@ since no run writes such a file, a sweep never replaces a folder that has one.
 from __future__ import annotations
 
 import contextlib
+import getpass
 import os
 import shutil
 from collections.abc import Iterator, Mapping
@@ -22,7 +23,7 @@ from eosmuster.drifting.text import brief, cause_counts, flip, headline, name_of
 from eosmuster.errors import InputError
 from eosmuster.report import destination, placing
 from eosmuster.report.cells import encoded
-from eosmuster.report.folder import VIEWS
+from eosmuster.report.folder import LITTER, VIEWS
 from eosmuster.report.locking import WAIT, locked
 from eosmuster.report.manifest import NAME as MANIFEST
 from eosmuster.report.manifest import read_manifest
@@ -35,8 +36,6 @@ LONGEST_REASON = 1000
 
 _MOST_FLIPS = 40
 _LARGEST = 64 * 2**20  # bytes: no record of adoptions grows so large
-_USER = ("LOGNAME", "USER", "LNAME", "USERNAME")
-_LITTER = {".DS_Store", "Thumbs.db", "desktop.ini"}  # what file managers leave in any folder
 _HEADING = """# Adoptions
 
 When this baseline was replaced, by whom and why; the latest comes last. `eosmuster drift BASELINE RESULTS --adopt` \
@@ -100,7 +99,7 @@ def adopt(
     """
     why = checked_reason(reason)
     source, content = checked_manifest(results)
-    known = {*VIEWS, MANIFEST, ADOPTIONS, *_LITTER, *outputs(content)}
+    known = {*VIEWS, MANIFEST, ADOPTIONS, *LITTER, *outputs(content)}
     target = _checked_target(baseline, source, known)
     new = read_side(results)
     _refuse_altered(new, source, outputs(content))
@@ -175,7 +174,7 @@ def _onto_the_disk(path: Path) -> None:
 
 def _entry(target: Path, new: Side, drift: Drift | None, reason: str, manifests: tuple[str, str]) -> Iterator[str]:
     """Write one adoption: when, by whom, why, what it is now, and the drift in short."""
-    user = next((os.environ[name] for name in _USER if os.environ.get(name)), "")
+    user = _user()
     by = f" by {escaped(brief(user))}" if user else ""
     yield f"\n## {datetime.now(UTC).isoformat(timespec='seconds')}{by}\n"
     yield f"Reason: {escaped(reason, 2 * LONGEST_REASON)}\n"
@@ -198,6 +197,14 @@ def _entry(target: Path, new: Side, drift: Drift | None, reason: str, manifests:
         yield f"- {escaped(name_of(row))}: {escaped(flip(row))}"
     if len(drift.flips) > _MOST_FLIPS:
         yield f"- and {some(len(drift.flips) - _MOST_FLIPS, 'more flipped verdict')}"
+
+
+def _user() -> str:
+    """Name whoever runs this: by the environment, else by the password database; "" if neither knows."""
+    try:
+        return getpass.getuser()
+    except (ImportError, KeyError, OSError):
+        return ""
 
 
 def _plan_name(content: Mapping[str, Any]) -> str:

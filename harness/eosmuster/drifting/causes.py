@@ -12,6 +12,7 @@ from eosmuster.drifting.changes import Key
 from eosmuster.drifting.evidence import Evidence
 from eosmuster.drifting.matching import Moved, coordinates
 from eosmuster.drifting.sides import Side, spelled
+from eosmuster.quantities import PROPERTIES
 from eosmuster.record import SummaryRow
 
 COUNTS = ("points", "inside", "undecided", "outside", "unsolved", "no_reference")
@@ -204,11 +205,23 @@ def _otherwise(setting: Setting, key: Key, flags: Flags, columns: tuple[str, ...
     words_alone = set(columns) <= set(_WORDS)
     if flags.known == "points" and not words_alone and not set(columns) & set(VIEWS):
         return ["code"]
-    found = _by_manifest(setting, key)
-    if words_alone:  # contested: another reference of the same fluid and property may have moved
-        found += [cause for cause in _OF_SOURCE.values() if setting.evidence.of(cause)]
-        found += ["plan"] if setting.evidence.of_plan("references", "constants") else []
+    found = [] if words_alone else _by_manifest(setting, key)
+    found += ["plan"] if "regions" in columns and setting.evidence.of_plan("regions") else []
+    if words_alone:
+        found += _of_words(setting, key)
     return list(dict.fromkeys(found)) or ["code" if flags.known == "points" or words_alone else "unexplained"]
+
+
+def _of_words(setting: Setting, key: Key) -> list[str]:
+    """Give the causes of words that moved without a number: any reference of the fluid may be behind `contested`."""
+    about, of = setting.evidence.about, setting.evidence.of
+    candidates = {
+        "prediction:constants": about("prediction:constants", key.component),
+        "prediction:model": about("prediction:model", key.candidate),
+        **{cause: of(cause) for cause in (*_OF_SOURCE.values(), "uncertainty")},
+        "plan": setting.evidence.of_plan("references", "constants", "uncertainty"),
+    }
+    return [cause for cause, changes in candidates.items() if changes]
 
 
 def _by_manifest(setting: Setting, key: Key) -> list[str]:
@@ -234,7 +247,8 @@ def of_lone_row(setting: Setting, key: Key) -> tuple[tuple[str, ...], str]:
     kinds = ("components", "models", "properties")
     for kind, name, known in zip(kinds, parts, setting.names[missing], strict=True):
         if name not in known:
-            note = f"{name} is not in the {'old' if there else 'new'} run"
+            label = PROPERTIES[name].label if name in PROPERTIES else name
+            note = f"{label} is not in the {'old' if there else 'new'} run"
             return (("plan",) if setting.evidence.of_plan(kind) else ("coverage",)), note
     unavailable = without.rows.get(key._replace(reference_source=""))
     if unavailable is not None and key.reference_source:

@@ -28,6 +28,8 @@ from eosmuster.drifting.regions import region_change
 from eosmuster.drifting.sides import POINTS, REGIONS, SUMMARY, WINDOWS, Side, read_side
 from eosmuster.drifting.table import COLUMNS, values
 from eosmuster.drifting.text import drift_text
+from eosmuster.record import SummaryRow
+from eosmuster.report.text import some
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -94,11 +96,17 @@ def compare(old: Side, new: Side, agreement: Agreement) -> Drift:
 
 def _unequal(setting: causes.Setting, key: Key) -> tuple[str, ...]:
     """Name the columns of summary.csv in which a row does not agree, and those of `causes.VIEWS` that do not."""
-    columns = tuple(setting.agreement.moved(setting.old.rows[key], setting.new.rows[key]))
+    old, new = setting.old.rows[key], setting.new.rows[key]
+    columns = [c for c in setting.agreement.moved(old, new) if c != "contested" or not _newly_compared(old, new)]
     before, now = (side.windows.get(key, ()) for side in (setting.old, setting.new))
     same = len(before) == len(now) and all(map(setting.agreement.windows, before, now))
     region = _region(setting, key)
     return (*columns, *(name for name, changed in zip(causes.VIEWS, (not same, region), strict=True) if changed))
+
+
+def _newly_compared(old: SummaryRow, new: SummaryRow) -> bool:
+    """Tell whether only one of two rows had another reference beside its own, which agrees: that moves nothing."""
+    return {old.contested, new.contested} == {"", "no"}
 
 
 def _region(setting: causes.Setting, key: Key) -> RegionChange | None:
@@ -152,3 +160,16 @@ def _remarks(setting: causes.Setting, changed: bool, with_points: bool) -> Itera
     without = [side.where for side in sides if side.points is None]
     if changed and without:
         yield f"causes are by the means of each row, since there is no {POINTS} in {' and '.join(without)}"
+    yield from _comparisons(setting)
+
+
+def _comparisons(setting: causes.Setting) -> Iterator[str]:
+    """Say how many rows can be compared with another reference in one of the runs alone, and are not contested."""
+    old, new = setting.old.rows, setting.new.rows
+    found = [new[key].contested for key in old if key in new and _newly_compared(old[key], new[key])]
+    if count := found.count("no"):
+        are, were = ("is", "was") if count == 1 else ("are", "were")
+        yield f"{some(count, 'row')} {are} compared with another reference now, which agrees, and {were} not before"
+    if count := found.count(""):
+        are, were = ("is", "was") if count == 1 else ("are", "were")
+        yield f"{some(count, 'row')} {were} compared with another reference before, which agreed, and {are} not now"

@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
 from eosmuster.drifting.changes import Change, Key
 from eosmuster.drifting.sides import Side, spelled, versions
+from eosmuster.report.cells import number_cell
 
 _LIBRARY = "CoolProp"
 _OF_FOLDER = {
@@ -24,6 +24,8 @@ _SELECTING = ("components", "models", "properties", "states", "references", "con
 """Keys of a plan that decide what is swept and against what."""
 
 _DECIDING = ("rule", "unfit_ratio")
+_TOLD_ELSEWHERE = ("tolerances", "contested_above_pct", "coverage_factor_unstated")
+"""Keys of a decision that are compared one by one, in the plan's own text, or as a file of the reference data."""
 _BAND = ("property", "component", "class", "above_reduced_temperature", "below_reduced_temperature", "level")
 _TOLD = ("source", "status", "note")
 """What is said about a model, and moves no number."""
@@ -136,7 +138,7 @@ def _short_hash(digest: str) -> str:
 
 
 def _decision(old: Mapping[str, Any], new: Mapping[str, Any]) -> Iterator[Change]:
-    plain = [{k: _text(v) for k, v in content.items() if k != "tolerances"} for content in (old, new)]
+    plain = [{k: _text(v) for k, v in content.items() if k not in _TOLD_ELSEWHERE} for content in (old, new)]
     for name, before, now in _unequal(*plain):
         subject = "decision" if name in _DECIDING else "uncertainty"
         yield Change("plan", subject, f"decision rule, {name}", before, now)
@@ -198,7 +200,10 @@ def _remaining(old: Mapping[str, Any], new: Mapping[str, Any]) -> Iterator[Chang
     parts = [_part(content.get("part")) for content in (old, new)]
     if parts[0] != parts[1]:
         yield Change("plan", "part", "part of the plan", *parts)
-    for name in ("contested", "left_out", "citations"):
+    asked = [_regions_asked(content.get("regions")) for content in (old, new)]
+    if asked[0] != asked[1]:
+        yield Change("plan", "regions", "regions", *asked)
+    for name in ("contested", "left_out", "notes", "citations"):
         lists = [[_text(x) for x in _listed(content.get(name))] for content in (old, new)]
         for gone in (x for x in lists[0] if x not in lists[1]):
             yield Change("", "", name.replace("_", " "), _cut(gone), "")
@@ -208,6 +213,10 @@ def _remaining(old: Mapping[str, Any], new: Mapping[str, Any]) -> Iterator[Chang
 
 def _part(entry: object) -> str:
     return f"{entry.get('number')}/{entry.get('of')}" if isinstance(entry, dict) else "the whole"
+
+
+def _regions_asked(entry: object) -> str:
+    return "not asked for" if isinstance(entry, dict) and entry.get("asked") is False else "asked for"
 
 
 def _listed(value: object) -> list[object]:
@@ -236,7 +245,7 @@ def _flat(value: Mapping[str, Any], above: str = "") -> dict[str, str]:
 def _text(value: object) -> str:
     """Write a value of a plan or a manifest for people, every digit of it: it may be the last that differs."""
     if isinstance(value, float):
-        return "" if math.isnan(value) else repr(value)
+        return number_cell(value)
     if isinstance(value, list):
         return ", ".join(_text(item) for item in value)
     return "" if value is None else str(value)

@@ -6,7 +6,7 @@ import math
 from collections.abc import Iterator, Sequence
 
 from eosmuster.drifting.changes import CAUSES, STATES, Comparison, RowChange
-from eosmuster.drifting.text import brief, cause_counts, flip, headline, in_words, place
+from eosmuster.drifting.text import brief, cause_counts, flip, headline, in_words, names, place
 from eosmuster.report.mdtable import Room, escaped, table
 from eosmuster.report.text import number
 
@@ -81,7 +81,7 @@ def _cells(row: RowChange, room: Room) -> list[str]:
         for side in (row.old, row.new)
     ]
     return [
-        *(escaped(brief(part, room.text), room.text) for part in row.key),
+        *(escaped(part, room.text) for part in names(row, room.text)),
         escaped(flip(row)),
         ", ".join(row.causes),
         escaped(brief(row.note, 2 * room.text), 2 * room.text),

@@ -18,20 +18,35 @@ _LABELS = {
     "mean_limit_pct": "mean limit",
     "mean_uncertainty_pct": "mean uncertainty",
 }
+_STATISTICS = {
+    "passing_limit_pct": "limit at which it would pass",
+    "surely_passing_limit_pct": "limit at which it would surely pass",
+    "false_acceptance_pct": "risk of false acceptance",
+    "aad_pct": "AAD",
+    "bias_pct": "bias",
+    "rms_pct": "RMS",
+    "median_pct": "median",
+    "p95_pct": "95th percentile",
+    "max_pct": "maximum",
+}
+"""Columns that follow from what is told of points or means, and are told where nothing else is."""
 
 
 def note(setting: Setting, key: Key, columns: Iterable[str], why: Iterable[str], points: Moved | None) -> str:
-    """Say what moved in a row that both runs have: counts, what is behind it, the worst point, windows."""
+    """Say what moved in a row that both runs have: what is behind it, counts, the worst point, windows.
+
+    Where none of these moved, it says which statistics did.
+    """
     columns = tuple(columns)
+    evidence = [*_evidence(setting, key, why)]
     said = [
-        *_evidence(setting, key, why),
         *_counts(setting, key, columns),
         *(_points(points) if points else _means(setting, key)),
         *_words(setting, key, columns),
         *(_windows(setting, key) if "windows" in columns else ()),
         *(_region(setting, key) if "regions" in columns else ()),
     ]
-    return "; ".join(said)
+    return "; ".join([*evidence, *(said or _statistics(setting, key, columns))])
 
 
 def _evidence(setting: Setting, key: Key, why: Iterable[str]) -> Iterator[str]:
@@ -50,6 +65,13 @@ def _counts(setting: Setting, key: Key, columns: tuple[str, ...]) -> Iterator[st
     for name in COUNTS:
         if name in columns:
             yield f"{name.replace('_', ' ')} {getattr(old, name)} -> {getattr(new, name)}"
+
+
+def _statistics(setting: Setting, key: Key, columns: tuple[str, ...]) -> Iterator[str]:
+    old, new = setting.old.rows[key], setting.new.rows[key]
+    for name, label in _STATISTICS.items():
+        if name in columns:
+            yield f"{label} {number(getattr(old, name), 6)} -> {number(getattr(new, name), 6)} %"
 
 
 def _means(setting: Setting, key: Key) -> Iterator[str]:

@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 
 from eosmuster.drifting.changes import Comparison, RowChange
-from eosmuster.report.cells import encoded, text_cell
+from eosmuster.report.cells import cell, encoded
 
 _STATISTICS = ("aad_pct", "bias_pct", "max_pct")
 
@@ -49,11 +49,5 @@ def values(row: RowChange) -> list[str | float]:
 
 def csv_text(drift: Comparison) -> bytes:
     """Write the rows that drifted as CSV, worst first; a number that is not known is an empty cell."""
-    lines = [",".join(COLUMNS), *(",".join(map(_cell, values(row))) for row in drift.rows)]
+    lines = [",".join(COLUMNS), *(",".join(map(cell, values(row))) for row in drift.rows)]
     return encoded("\n".join(lines) + "\n")
-
-
-def _cell(value: str | float) -> str:
-    if isinstance(value, str):
-        return text_cell(value)
-    return "" if math.isnan(value) else repr(value)

@@ -13,6 +13,7 @@ from eosmuster.drifting.changes import SEVERITY, Key
 from eosmuster.errors import InputError
 from eosmuster.quantities import shown
 from eosmuster.record import SummaryRow, WindowRow
+from eosmuster.report.text import some
 
 T = TypeVar("T")
 
@@ -76,7 +77,7 @@ def rows_of(path: Path, kind: type[T], rows: int | None = None) -> Iterator[tupl
             for cells in reader:
                 if len(cells) != len(header):
                     raise InputError(
-                        f"{path}: line {reader.line_num} has {len(cells)} cells, the header {len(header)}: "
+                        f"{path}: line {reader.line_num} has {some(len(cells), 'cell')}, the header {len(header)}: "
                         "the file is damaged or cut short"
                     )
                 count += 1

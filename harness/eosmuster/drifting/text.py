@@ -17,13 +17,15 @@ from eosmuster.drifting.changes import (
     RowChange,
     Run,
 )
-from eosmuster.report.text import list_within, number, one_line, plain_table, shortened, some
+from eosmuster.quantities import PROPERTIES
+from eosmuster.report.text import cells_of, list_within, number, one_line, plain_table, shortened, some
 
 _MOST_ROWS = 15
 _MOST_CHANGES = 20
 _MOST_NOTES = 3
 _LONGEST_NAME = 30
 _LONGEST_NOTE = 400
+_PROPERTY = 2  # place of the property in a row's key
 _HANDBOOK = "handbook:"  # the source behind it says enough
 
 
@@ -79,7 +81,18 @@ def brief(text: object, most: int = _LONGEST_NAME) -> str:
 
 def name_of(row: RowChange) -> str:
     """Name a row, each part cut to what can be shown."""
-    return " | ".join(filter(None, map(brief, row.key)))
+    return " | ".join(filter(None, names(row)))
+
+
+def names(row: RowChange, most: int = _LONGEST_NAME) -> list[str]:
+    """Give fluid, candidate, property and reference of a row in the words people read, each cut to `most`."""
+    return [_shown(row, i, most) for i in range(4)]
+
+
+def _shown(row: RowChange, part: int, most: int = _LONGEST_NAME) -> str:
+    name = row.key[part]
+    known = PROPERTIES.get(name) if part == _PROPERTY else None
+    return brief(known.label if known else name, most)
 
 
 def in_words(row: RowChange) -> str:
@@ -150,27 +163,47 @@ def _rows(drift: Comparison, state: str, width: int) -> Iterator[str]:
 
 def _moved(rows: Sequence[RowChange], width: int) -> Iterator[str]:
     shown = rows[:_MOST_ROWS]
-    # a name that is the same in every row says less in a column than in the heading
-    alike = [i for i in (2, 3) if len({row.key[i] for row in rows}) == 1]
-    named = ", ".join(filter(None, (brief(rows[0].key[i]) for i in alike)))
+    # what is the same in every row says less in a column than in the heading
+    alike = [i for i in range(4) if len({row.key[i] for row in rows}) == 1]
+    named = list(filter(None, (_shown(rows[0], i) for i in alike)))
     heads = ("fluid", "candidate", "property", "reference")
     columns = [
-        (head, [brief(row.key[i].removeprefix(_HANDBOOK)) for row in shown])
+        (head, [_shown(row, i).removeprefix(_HANDBOOK) for row in shown])
         for i, head in enumerate(heads)
         if i not in alike
     ]
     columns += _steps("verdict", [row.verdicts for row in shown])
-    for head, name in (("AAD", "aad_pct"), ("max", "max_pct")):
-        pairs = [(number(getattr(row.old, name)), number(getattr(row.new, name))) for row in shown]
-        columns += _steps(head, pairs)
-    if any(row.region for row in shown):
-        shares = [row.region.share if row.region else (math.nan, math.nan) for row in shown]
-        columns += _steps("region, %", [(number(100.0 * a), number(100.0 * b)) for a, b in shares])
-    columns.append(("causes", [", ".join(row.causes) for row in shown]))
-    yield f"{rows[0].state}: {some(len(rows), 'row')}{f' ({named})' if named else ''}, worst first; deviations in %"
-    yield plain_table([head for head, _ in columns], list(zip(*(cells for _, cells in columns), strict=True)), width)
+    mean, largest = (
+        _steps(head, [(number(getattr(row.old, name)), number(getattr(row.new, name))) for row in shown])
+        for head, name in (("AAD", "aad_pct"), ("max", "max_pct"))
+    )
+    others = _shares(shown)
+    if len({row.causes for row in rows}) == 1:
+        named.append(f"by {', '.join(rows[0].causes)}")
+    else:
+        others.append(("causes", [", ".join(row.causes) for row in shown]))
+    # the mean is the first to go where they do not fit: every row has its largest deviation as well
+    columns += [*(mean if _fits([*columns, *mean, *largest, *others], width) else ()), *largest, *others]
+    told = f" ({'; '.join(named)})" if named else ""
+    yield from wrapped(f"{rows[0].state}: {some(len(rows), 'row')}{told}, worst first; deviations in %", width)
+    heads_shown = [head for head, _ in columns]
+    yield plain_table(heads_shown, list(zip(*(cells for _, cells in columns), strict=True)), width)
     if len(rows) > len(shown):
         yield f"{some(len(rows) - len(shown), 'more row')}; --csv FILE or --markdown FILE has them"
+
+
+def _shares(rows: Sequence[RowChange]) -> list[tuple[str, list[str]]]:
+    """Give the shares of the regions, before and after, where there are any."""
+    if not any(row.region for row in rows):
+        return []
+    shares = [row.region.share if row.region else (math.nan, math.nan) for row in rows]
+    return _steps("region, %", [(number(100.0 * a), number(100.0 * b)) for a, b in shares])
+
+
+def _fits(columns: Sequence[tuple[str, list[str]]], width: int) -> bool:
+    """Tell whether columns fit with no cell cut, their headers broken between words."""
+    needed = [max(map(cells_of, [*head.split(), *cells])) for head, cells in columns]
+    return sum(needed) + 2 * (len(needed) - 1) <= width
 
 
 def _steps(head: str, pairs: Sequence[tuple[str, str]]) -> list[tuple[str, list[str]]]:
@@ -197,7 +230,7 @@ def _groups(rows: Sequence[RowChange]) -> list[list[object]]:
 
 def _common(rows: Sequence[RowChange]) -> list[str]:
     """Give the names that all rows of a group share; all their fluids if there are none."""
-    shared = [names.pop() for names in ({row.key[i] for row in rows} for i in range(4)) if len(names) == 1]
+    shared = [names.pop() for names in ({_shown(row, i) for row in rows} for i in range(4)) if len(names) == 1]
     return shared or list(dict.fromkeys(row.key.component for row in rows))
 
 
