@@ -22,7 +22,8 @@ from pathlib import Path
 from statistics import median
 
 THREADS = ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS", "VECLIB_MAXIMUM_THREADS")
-AS_STARTED = dict(os.environ)  # children that are whole commands run as a user's shell would run them
+# children that are whole commands run as a user's shell would run them, bytecode kept as an installation keeps it
+AS_STARTED = {name: value for name, value in os.environ.items() if name != "PYTHONDONTWRITEBYTECODE"}
 if "numpy" in sys.modules and any(os.environ.get(name) != "1" for name in THREADS):
     raise ImportError("import measuring before numpy: it sets the number of threads to one")
 os.environ.update(dict.fromkeys(THREADS, "1"))

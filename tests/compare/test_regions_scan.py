@@ -121,7 +121,7 @@ def test_it_costs_few_states_in_few_batches(world):
 
 
 @given(st.integers(0, 10_000), st.integers(4, 7), st.booleans())
-@settings(max_examples=10, deadline=None)
+@settings(max_examples=6, deadline=None)
 def test_no_region_crosses_itself(plane, smooth, seed, grid, boundary):
     rng = np.random.default_rng(seed)
     more = {}
@@ -181,7 +181,7 @@ def doubled_area(ring):
 
 
 @given(st.integers(0, 10_000), st.integers(4, 12), st.floats(0.25, 0.8))
-@settings(max_examples=15, deadline=None)
+@settings(max_examples=6, deadline=None)
 def test_no_node_that_is_outside_lies_in_a_region(plane, smooth, seed, grid, shortest):
     """Islands and holes smaller than a cell may be missed between nodes, at one they are not."""
     found = plane(*(smooth(np.random.default_rng(seed), shortest=shortest) for _ in range(2)), grid=grid)

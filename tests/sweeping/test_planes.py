@@ -26,6 +26,7 @@ temperature = [280.0, 300.0, 320.0, 340.0, 380.0, 420.0]
 pressure = ["1 bar", "8 bar", "20 bar", "60 bar"]
 phase = "{phase}"
 supercritical_alpha = "{rule}"
+regions = "no"
 [references]
 use = ["coolprop"]
 """
