@@ -52,13 +52,6 @@ def pytest_configure(config: pytest.Config) -> None:
     config.addinivalue_line("markers", "slow: takes several seconds (leave out with -m 'not slow')")
 
 
-def pytest_collection_modifyitems(items: list[pytest.Item]) -> None:
-    """Keep what needs the swept broad plan on one worker, which then sweeps it once for all."""
-    for item in items:
-        if "broad" in getattr(item, "fixturenames", ()):
-            item.add_marker(pytest.mark.xdist_group("broad"))
-
-
 @pytest.fixture(scope="session")
 def root() -> Path:
     """The checkout."""

@@ -82,7 +82,7 @@ def swept_folder(tmp_path_factory: pytest.TempPathFactory, lab: str) -> Iterator
             (place / "lab").mkdir()
             (place / "lab" / "psat.csv").write_text(lab, encoding="utf-8")
             (place / "plan.toml").write_text(text, encoding="utf-8")
-            known[key] = sweep(place / "plan.toml").save(place / "results", points=points)
+            known[key] = sweep(place / "plan.toml").save(place / "results", points=points, dossier=False)
         return known[key]
 
     yield folder

@@ -69,8 +69,9 @@ def test_noise_of_a_billionth_is_no_drift(
 def test_predictions_that_move_alone_are_a_change_of_code(
     swept_folder: Folder, base: Path, patched_predictions: Callable[[float], None], tmp_path: Path, points: bool
 ) -> None:
+    old = swept_folder(points=points)
     patched_predictions(1e-4)
-    found = drift(swept_folder(points=points), again(base, tmp_path / "new", points))
+    found = drift(old, again(base, tmp_path / "new", points))
     assert found.states[MOVED] + found.states[FLIPPED] == ROWS
     assert causes(found) == {"prediction:code"}
     assert all((row.worst is not None) == points for row in found.rows)
