@@ -135,7 +135,8 @@ class Overview:
     def unheld(self) -> tuple[str, ...]:
         """The fluids that no candidate holds, of those that were judged."""
         held = {fluid for standing in self.standings for fluid in standing.fluids["inside"]}
-        return tuple(fluid for fluid in self.fluids if fluid not in held and fluid not in self.unjudged)
+        neither = held.union(self.unjudged)  # asked for once: it goes through all cells
+        return tuple(fluid for fluid in self.fluids if fluid not in neither)
 
     @property
     def unjudged(self) -> tuple[str, ...]:
